@@ -1,0 +1,182 @@
+use super::Coherency;
+use super::nearest::{distance, nearest_of, realizable_spectrum};
+use crate::error::Result;
+use crate::linalg::HermitianEigen;
+use crate::mueller::Mueller;
+use crate::stats::NormalDraws;
+use crate::tolerance;
+
+/// How many measurements the test simulates.
+pub const SIMULATIONS: u32 = 999;
+
+/// Whether noise explains a violation.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Significance {
+    /// The squared distance to the nearest realizable matrix over σ².
+    pub statistic: f64,
+    /// The share of simulated measurements of a realizable sample that lie as far
+    /// out or farther: `(1 + count) / (1 + simulations)`.
+    pub p_value: f64,
+    /// How many were simulated.
+    pub simulations: u32,
+}
+
+/// The significance of a violation under one σ.
+///
+/// The reference distribution is simulated under the nearest realizable matrix in
+/// which every eigenvalue below three of its own standard errors is zero, the
+/// largest excepted (generalised moment selection, Andrews & Soares 2010).
+/// `None` where no realizable matrix has the exact M00, or none is near: then
+/// there is nothing to simulate.
+///
+/// # Errors
+/// As [`Coherency::eigen`].
+pub fn significance(
+    mueller: &Mueller,
+    m00_is_exact: bool,
+    sigma: f64,
+    seed: u64,
+) -> Result<Option<Significance>> {
+    let Some(test) = Test::new(mueller, m00_is_exact)? else {
+        return Ok(None);
+    };
+    let statistic = square_ratio(test.distance, sigma);
+    if test.distance == 0.0 {
+        return Ok(Some(Significance {
+            statistic,
+            p_value: 1.0,
+            simulations: 0,
+        }));
+    }
+    let mut draws = NormalDraws::new(seed);
+    let noise: Vec<_> = (0..SIMULATIONS).map(|_| draws.draw_matrix()).collect();
+    Ok(Some(Significance {
+        statistic,
+        p_value: test.p_value(sigma, &noise)?,
+        simulations: SIMULATIONS,
+    }))
+}
+
+/// The smallest σ, to one per cent, under which a violation is no longer
+/// significant. `None` where there is no violation, or no σ explains it.
+///
+/// # Errors
+/// As [`Coherency::eigen`].
+pub fn explaining_sigma(mueller: &Mueller, m00_is_exact: bool, seed: u64) -> Result<Option<f64>> {
+    let Some(test) = Test::new(mueller, m00_is_exact)? else {
+        return Ok(None);
+    };
+    // Beyond the range of a stated σ there is none to name.
+    if test.distance < 1.0 / tolerance::LARGEST_NUMBER {
+        return Ok(None);
+    }
+    // The same draws for every σ: the answer does not jitter.
+    let mut draws = NormalDraws::new(seed);
+    let noise: Vec<_> = (0..SIMULATIONS).map(|_| draws.draw_matrix()).collect();
+    let explains = |sigma: f64| Ok(test.p_value(sigma, &noise)? >= tolerance::SIGNIFICANCE);
+
+    // For a pure sample the 95 % point of distance / σ is near 3.3.
+    let mut high = test.distance / 3.3;
+    let mut low = high;
+    if explains(high)? {
+        for _ in 0..12 {
+            low /= 1.5;
+            if !explains(low)? {
+                break;
+            }
+            high = low;
+        }
+    } else {
+        for _ in 0..12 {
+            high *= 1.5;
+            if explains(high)? {
+                break;
+            }
+            low = high;
+        }
+    }
+    if low >= high || !explains(high)? {
+        return Ok(None);
+    }
+    while high > 1.01 * low {
+        let middle = (low * high).sqrt();
+        if explains(middle)? {
+            high = middle;
+        } else {
+            low = middle;
+        }
+    }
+    Ok(Some(high))
+}
+
+/// `se / σ` of a simple eigenvalue of H: ½ for sixteen equal errors, √3/4 where
+/// M00 is exact.
+pub(crate) fn eigenvalue_error(m00_is_exact: bool) -> f64 {
+    if m00_is_exact { 3f64.sqrt() / 4.0 } else { 0.5 }
+}
+
+struct Test {
+    /// Of the measured matrix.
+    eigen: HermitianEigen,
+    /// Of the nearest realizable one; the eigenvectors are the same.
+    nearest: [f64; 4],
+    distance: f64,
+    exact_m00: Option<f64>,
+}
+
+impl Test {
+    fn new(mueller: &Mueller, m00_is_exact: bool) -> Result<Option<Self>> {
+        let eigen = Coherency::from_mueller(mueller).eigen()?;
+        Ok(
+            nearest_of(mueller, &eigen, m00_is_exact).map(|nearest| Self {
+                nearest: nearest.eigenvalues,
+                distance: nearest.distance,
+                exact_m00: m00_is_exact.then(|| mueller.m00()),
+                eigen,
+            }),
+        )
+    }
+
+    fn p_value(&self, sigma: f64, noise: &[[f64; 16]]) -> Result<f64> {
+        // Work in units of σ: then nothing is too large or too small.
+        let null = self.null_spectrum(sigma).map(|value| value / sigma);
+        let sum = self.exact_m00.map(|m00| m00 / sigma);
+        let mean = Coherency::from_spectrum(&null, &self.eigen)
+            .mueller()
+            .row_major();
+        let observed = self.distance / sigma;
+        let mut beyond = 0_u32;
+        for draw in noise {
+            let mut elements: [f64; 16] = std::array::from_fn(|k| mean[k] + draw[k]);
+            if let Some(sum) = sum {
+                elements[0] = sum;
+            }
+            let values = Coherency::from_elements(&elements).eigen()?.values;
+            let simulated = distance(&values, &realizable_spectrum(&values, sum));
+            beyond += u32::from(simulated >= observed);
+        }
+        let simulations = u32::try_from(noise.len()).unwrap_or(u32::MAX);
+        Ok(f64::from(1 + beyond) / f64::from(1 + simulations))
+    }
+
+    fn null_spectrum(&self, sigma: f64) -> [f64; 4] {
+        let threshold =
+            tolerance::STANDARD_ERRORS * eigenvalue_error(self.exact_m00.is_some()) * sigma;
+        let mut spectrum = self.nearest;
+        for value in &mut spectrum[1..] {
+            if *value < threshold {
+                *value = 0.0;
+            }
+        }
+        let sum: f64 = spectrum.iter().sum();
+        match self.exact_m00 {
+            Some(m00) if sum > 0.0 => spectrum.map(|value| value * (m00 / sum)),
+            _ => spectrum,
+        }
+    }
+}
+
+/// `(a / b)²`, kept finite.
+fn square_ratio(a: f64, b: f64) -> f64 {
+    (a / b).powi(2).min(f64::MAX)
+}

@@ -1,0 +1,29 @@
+//! Guarded, bounded and sorted factorisations of small matrices.
+//!
+//! Only this folder calls nalgebra's iterations: they do not end on a NaN, come
+//! unsorted, and report failure as `None`.
+
+mod eigen;
+mod svd;
+
+pub use eigen::{HermitianEigen, SmallestEigenpair, hermitian_eigen, smallest_eigenpair};
+pub use svd::{Svd3, svd3};
+
+use crate::error::Error;
+
+/// Sweeps that an iteration may take. Four by four matrices need about ten.
+const MOST_ITERATIONS: usize = 500;
+
+fn not_finite() -> Error {
+    Error::new(
+        "not-finite",
+        "The matrix holds a value that is not a finite number.",
+    )
+}
+
+fn no_convergence() -> Error {
+    Error::new(
+        "no-convergence",
+        "The eigenvalue iteration did not settle; the matrix is out of range.",
+    )
+}

@@ -1,0 +1,18 @@
+//! Distributions, seeded draws and rounding to the uncertainty.
+
+mod draws;
+mod rounding;
+
+pub use draws::NormalDraws;
+pub use rounding::{RoundedValue, printed_decimals, rounded, rounding_sigma};
+
+use statrs::distribution::{ChiSquared, ContinuousCDF};
+
+/// The probability that chi-squared with `degrees_of_freedom` exceeds `value`.
+///
+/// `None` unless there are degrees of freedom.
+#[must_use]
+pub fn chi_squared_tail(value: f64, degrees_of_freedom: u32) -> Option<f64> {
+    let distribution = ChiSquared::new(f64::from(degrees_of_freedom)).ok()?;
+    Some(distribution.sf(value.max(0.0)).clamp(0.0, 1.0))
+}

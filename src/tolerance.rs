@@ -1,0 +1,17 @@
+//! Every tolerance of the engine, by name.
+
+/// Largest magnitude that is taken as a measured number. Squares and products of
+/// four such numbers, after scaling, stay far from overflow.
+pub const LARGEST_NUMBER: f64 = 1e150;
+
+/// "Exactly zero", relative to M00: what rounding of the arithmetic leaves.
+pub const ZERO: f64 = 1e-12;
+
+/// What decides *not determined* where no noise is stated.
+pub const NOT_DETERMINED: f64 = 1e-9;
+
+/// What decides *not determined* where noise is stated, in standard errors.
+pub const STANDARD_ERRORS: f64 = 3.0;
+
+/// The level of every test.
+pub const SIGNIFICANCE: f64 = 0.05;
