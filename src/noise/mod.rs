@@ -57,9 +57,8 @@ impl Measurement {
     pub fn new(mueller: Mueller, m00_is_exact: bool, absolute: bool, noise: Noise) -> Result<Self> {
         match noise {
             Noise::Uniform { sigma }
-                if !(sigma > 0.0
-                    && sigma <= tolerance::LARGEST_NUMBER
-                    && sigma >= 1.0 / tolerance::LARGEST_NUMBER) =>
+                if !(1.0 / tolerance::LARGEST_NUMBER..=tolerance::LARGEST_NUMBER)
+                    .contains(&sigma) =>
             {
                 Err(Error::new(
                     "bad-sigma",

@@ -75,30 +75,31 @@ fn with_error(value: f64, se: f64) -> String {
     // Rounding may carry 9.96 to 10: take the exponent after rounding.
     let rounded_se: f64 = format!("{se:.1e}").parse().unwrap_or(se);
     let last = exponent(rounded_se) - 1;
-    let largest = if value == 0.0 {
-        last
-    } else {
-        exponent(value).max(last)
-    };
-    if (-5..7).contains(&largest) && last <= 0 {
-        let decimals = usize::try_from(-last).unwrap_or(0);
-        let digits = (rounded_se * 10f64.powi(-last)).round();
-        return format!("{}({digits:.0})", without_minus_zero(value, decimals));
-    }
-    let decimals = usize::try_from(largest - last).unwrap_or(0);
-    let digits = format!("{rounded_se:.1e}")
+    let digits = format!("{se:.1e}");
+    let digits = digits
         .split('e')
         .next()
         .unwrap_or_default()
         .replace('.', "");
-    let mantissa = format!("{value:.decimals$e}");
-    let (mantissa, power) = match mantissa.split_once('e') {
-        Some((mantissa, power)) if value != 0.0 && exponent(value) >= last => {
-            (mantissa.to_owned(), power.to_owned())
-        }
-        _ => (format!("{:.decimals$}", 0.0), largest.to_string()),
+    let steps = (value / 10f64.powi(last)).round();
+    if !steps.is_finite() || steps.abs() > 1e16 {
+        // The error lies below the resolution of a double.
+        return alone(value);
+    }
+    let leading = if steps == 0.0 {
+        last
+    } else {
+        exponent(steps) + last
     };
-    format!("{mantissa}({digits})e{power}")
+    let largest = leading.max(last + 1);
+    if (-5..7).contains(&largest) && last <= 0 {
+        let decimals = usize::try_from(-last).unwrap_or(0);
+        return format!("{}({digits})", without_minus_zero(value, decimals));
+    }
+    let decimals = largest - last;
+    let mantissa = steps / 10f64.powi(decimals);
+    let mantissa = without_minus_zero(mantissa, usize::try_from(decimals).unwrap_or(0));
+    format!("{mantissa}({digits})e{largest}")
 }
 
 fn alone(value: f64) -> String {
