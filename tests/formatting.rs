@@ -73,7 +73,7 @@ fn extremes_are_short_and_finite() {
 
 #[test]
 fn decimals_of_printed_numbers() {
-    assert_eq!(printed_decimals(&[1.0, 0.7071, -0.5]), Some(4));
+    assert_eq!(printed_decimals(&[1.0, 0.7321, -0.5]), Some(4));
     assert_eq!(printed_decimals(&[1.0, 0.0]), Some(0));
     assert_eq!(printed_decimals(&[0.0]), None);
     assert_eq!(printed_decimals(&[1.0 / 3.0]), None);

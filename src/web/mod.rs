@@ -1,0 +1,122 @@
+//! The wasm exports: decode, one engine call, encode. No physics here.
+//!
+//! Degrees, the person's convention and camelCase names live on this side. The
+//! types that JavaScript sees stand in `types.d.ts`.
+
+mod convert;
+mod drawing;
+mod examination;
+mod request;
+mod value;
+
+use serde::Serialize;
+use wasm_bindgen::prelude::*;
+
+use crate::{examine, link, stats, text};
+use convert::{MatricesTwin, to_js, to_js_error};
+use examination::ExaminationTwin;
+use request::{ExamineRequest, FormatRequest, ReadRequest, from_js};
+
+#[wasm_bindgen(typescript_custom_section)]
+const TYPES: &str = include_str!("types.d.ts");
+
+type JsResult = Result<JsValue, JsValue>;
+
+/// After a panic: the message goes to the console, where a trap alone says nothing,
+/// and the next call starts a fresh instance.
+#[wasm_bindgen(start)]
+pub fn start() {
+    std::panic::set_hook(Box::new(|info| {
+        console_error_panic_hook::hook(info);
+        wasm_bindgen::handler::schedule_reinit();
+    }));
+}
+
+/// Reads matrices from pasted text.
+///
+/// # Errors
+/// Where nothing can be read: the reason with line and character.
+#[wasm_bindgen(js_name = parseMatrices, unchecked_return_type = "MatricesRead")]
+pub fn parse_matrices(
+    text: &str,
+    #[wasm_bindgen(unchecked_param_type = "ReadOptions | undefined")] options: JsValue,
+) -> JsResult {
+    let options: ReadRequest = from_js(options)?;
+    let read = text::parse_matrices(text, &options.into()).map_err(|error| to_js_error(&error))?;
+    to_js(&MatricesTwin::from(&read))
+}
+
+/// Examines one measured matrix.
+///
+/// # Errors
+/// For a request that is not understood, at its field.
+#[wasm_bindgen(unchecked_return_type = "Examination")]
+pub fn examine(
+    #[wasm_bindgen(unchecked_param_type = "ExamineRequest")] request: JsValue,
+) -> JsResult {
+    let request: ExamineRequest = from_js(request)?;
+    let (measurement, convention) = request.measurement().map_err(|error| to_js_error(&error))?;
+    let found = examine::examine(&measurement, request.seed()).map_err(|error| to_js_error(&error))?;
+    to_js(&ExaminationTwin::new(&found, &measurement, &convention))
+}
+
+/// Writes a value with its standard error, two digits of it.
+///
+/// # Errors
+/// For values that are not finite.
+#[wasm_bindgen(js_name = formatValue, unchecked_return_type = "FormattedValue")]
+pub fn format_value(
+    #[wasm_bindgen(unchecked_param_type = "FormatRequest")] request: JsValue,
+) -> JsResult {
+    #[derive(Serialize)]
+    struct Formatted {
+        text: String,
+        plain: String,
+    }
+    let request: FormatRequest = from_js(request)?;
+    let value = stats::rounded(request.value, request.se).map_err(|error| to_js_error(&error))?;
+    to_js(&Formatted { text: value.text, plain: value.plain })
+}
+
+/// Writes a configuration as the text behind the `#` of a link.
+///
+/// # Errors
+/// For a configuration that is not valid, at its field.
+#[wasm_bindgen(js_name = encodeLink)]
+pub fn encode_link(
+    #[wasm_bindgen(unchecked_param_type = "Configuration")] configuration: &JsValue,
+) -> Result<String, JsValue> {
+    value::from_js(configuration)
+        .and_then(|configuration| link::encode(&configuration))
+        .map_err(|error| to_js_error(&error))
+}
+
+/// Reads what [`encode_link`] wrote, every bit of every number.
+///
+/// # Errors
+/// For a fragment that is cut, damaged, foreign or newer, each with its code.
+#[wasm_bindgen(js_name = decodeLink, unchecked_return_type = "Configuration")]
+pub fn decode_link(fragment: &str) -> JsResult {
+    link::decode(fragment)
+        .map(|configuration| value::to_js(&configuration))
+        .map_err(|error| to_js_error(&error))
+}
+
+/// Which engine this is.
+///
+/// # Errors
+/// None in practice.
+#[wasm_bindgen(js_name = engineInfo, unchecked_return_type = "EngineInfo")]
+pub fn engine_info() -> JsResult {
+    #[derive(Serialize)]
+    struct Info {
+        version: &'static str,
+        schema: u32,
+        blocks: &'static [&'static str],
+    }
+    to_js(&Info {
+        version: env!("CARGO_PKG_VERSION"),
+        schema: link::SCHEMA_VERSION,
+        blocks: link::known_blocks(),
+    })
+}

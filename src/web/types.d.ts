@@ -1,0 +1,222 @@
+/** Sixteen numbers, row by row unless a convention's `order` says otherwise. */
+export type Matrix16 = number[];
+
+/** A person's convention, by its physical facts; each defaults to the first. */
+export interface Convention {
+    /** Which way angles count, for an observer who faces the source. */
+    angles?: "counterclockwise" | "clockwise";
+    /** How the field of a state with S3 > 0 turns, for an observer who faces the source. */
+    positiveS3?: "clockwise" | "counterclockwise";
+    /** From which axis angles count. */
+    zeroAngle?: "x" | "y";
+    /** The sign of iωt. */
+    time?: "plus" | "minus";
+    /** How the sixteen numbers of the request are laid out. Results are always row by row. */
+    order?: "rows" | "columns";
+}
+
+/** What is known of the noise; it refers to the matrix as given. */
+export type Noise =
+    | { kind: "none" }
+    | { kind: "uniform"; sigma: number }
+    | { kind: "rounding"; decimals: number };
+
+export interface Measurement {
+    mueller: Matrix16;
+    /** M00 has no error: the matrix was divided by it. */
+    normalised?: boolean;
+    /** M00 is a transmittance or reflectance. */
+    absolute?: boolean;
+    convention?: Convention;
+    noise?: Noise;
+}
+
+export interface ExamineRequest extends Measurement {
+    /** 0 leaves out p-value and standard errors. Default 2000. */
+    draws?: number;
+    /** A whole number; the same seed gives the same digits. Default 1. */
+    seed?: number;
+}
+
+/** `null` is "not determined", and `reason` says why. */
+export interface Figure {
+    value: number | null;
+    se: number | null;
+    low: number | null;
+    high: number | null;
+    method: "first-order" | "one-sided" | null;
+    unit: "1" | "deg" | "matrix";
+    reason: string | null;
+}
+
+export type FigureName =
+    | "diattenuation"
+    | "linearDiattenuation"
+    | "circularDiattenuation"
+    | "diattenuationAzimuthDeg"
+    | "polarizance"
+    | "linearPolarizance"
+    | "circularPolarizance"
+    | "polarizanceAzimuthDeg"
+    | "transmittanceMax"
+    | "transmittanceMin"
+    | "depolarizationIndex"
+    | "sphericalPurity"
+    | "purityIndex1"
+    | "purityIndex2"
+    | "purityIndex3"
+    | "entropy"
+    | "isotropicAlpha"
+    | "retardanceDeg"
+    | "linearRetardanceDeg"
+    | "rotationDeg"
+    | "fastAxisDeg"
+    | "retarderAzimuthDeg"
+    | "retarderEllipticityDeg"
+    | "depolarizationPower";
+
+export interface Realizability {
+    /** `notRealizable`: no noise was stated, or none was tested. */
+    verdict: "realizable" | "withinNoise" | "beyondNoise" | "notRealizable";
+    /** Of H / |M00|, descending. */
+    eigenvalues: number[] | null;
+    eigenvalueSe: number[] | null;
+    /** Frobenius distance to the nearest realizable matrix over |M00|. */
+    violation: number | null;
+    /** The squared distance over σ². */
+    statistic: number | null;
+    pValue: number | null;
+    simulations: number | null;
+    reason: string | null;
+    /** The printed resolution, where the numbers look printed. */
+    roundingDecimals: number | null;
+    roundingSigma: number | null;
+    consistentWithRounding: boolean;
+    /** Without a noise statement: the smallest σ that would explain the violation. */
+    explainingSigma: number | null;
+    /** Every physical state maps to a physical state. */
+    stokesCondition: boolean;
+    /** Not negative where it does. */
+    stokesMargin: number | null;
+    /** For absolute matrices. */
+    passivity: { margin: Figure; verdict: "passive" | "notBeyondNoise" | "notPassive" } | null;
+}
+
+export interface PolarDecomposition {
+    depolarizer: Matrix16 | null;
+    retarder: Matrix16 | null;
+    diattenuator: Matrix16;
+    /** The fast eigenstate on the Poincaré sphere. */
+    retarderAxis: number[] | null;
+    residual: number | null;
+    reason: string | null;
+}
+
+/** `[re, im]` of the four entries, row by row. */
+export type JonesMatrix = [number, number][];
+
+export interface Examination {
+    realizability: Realizability;
+    nearest: {
+        mueller: Matrix16 | null;
+        change: Matrix16 | null;
+        changeInSigma: Matrix16 | null;
+        reason: string | null;
+    };
+    figures: Record<FigureName, Figure>;
+    decompositions: {
+        /** The depolarizer is last. */
+        polarForward: PolarDecomposition | null;
+        /** The depolarizer is first. */
+        polarReverse: PolarDecomposition | null;
+        /** Of the nearest realizable matrix; empty where M00 is not positive. */
+        spectral: { weight: number; jones: JonesMatrix; mueller: Matrix16 }[];
+        isotropic: {
+            alpha: Figure;
+            jones: JonesMatrix | null;
+            mueller: Matrix16;
+            chiSquare: number | null;
+            degreesOfFreedom: number;
+            pValue: number | null;
+            reason: string | null;
+        } | null;
+        reason: string | null;
+    };
+}
+
+export interface FormatRequest {
+    value: number;
+    se?: number | null;
+}
+
+export interface FormattedValue {
+    /** For reading, with U+2212 as the minus. */
+    text: string;
+    /** The same in ASCII. */
+    plain: string;
+}
+
+export interface EngineInfo {
+    version: string;
+    /** Of the configuration: its `v`. */
+    schema: number;
+    /** The blocks of a configuration that this version understands. */
+    blocks: string[];
+}
+
+/** A session, as a link holds it. Blocks that this version does not know are kept. */
+export interface Configuration {
+    v: number;
+    app?: string;
+    task?: string;
+    label?: string;
+    measurement?: Omit<Measurement, "mueller"> & {
+        mueller: Matrix16 | null;
+        text?: string;
+        example?: boolean;
+    };
+    examine?: { draws: number; seed: number };
+    view?: Record<string, number>;
+    [block: string]: unknown;
+}
+
+/** Size and colours of a plot. */
+export interface Frame {
+    /** CSS pixels. */
+    width: number;
+    /** CSS pixels; left out, the plot's own height for that width. */
+    height?: number;
+    /** Device pixels in a CSS pixel; matters on a canvas only. Default 1. */
+    ratio?: number;
+    theme?: "light" | "dark" | "print";
+}
+
+export interface EigenvaluesRequest {
+    eigenvalues: number[];
+    eigenvalueSe?: number[] | null;
+    frame: Frame;
+}
+
+export interface SphereRequest {
+    mueller: Matrix16;
+    convention?: Convention;
+    /** Longitude of the point that faces the viewer, from S1 towards S2. */
+    azimuthDeg: number;
+    elevationDeg: number;
+    frame: Frame;
+}
+
+export interface EllipsesRequest {
+    mueller: Matrix16;
+    convention?: Convention;
+    frame: Frame;
+}
+
+export interface Drawn {
+    /** What the plot shows, in words, with its numbers. */
+    description: string;
+    /** CSS pixels. */
+    width: number;
+    /** CSS pixels. */
+    height: number;
+}

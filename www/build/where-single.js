@@ -1,0 +1,58 @@
+// The twin of js/where.js in the single file: everything lies in data elements of the page.
+
+/** @typedef {import("../js/types.js").Example} Example */
+
+/** Whether the page is the single file. */
+export const isSingleFile = true;
+
+/**
+ * Compiles the engine.
+ * @returns {Promise<WebAssembly.Module>}
+ */
+export async function loadModule() {
+  const binary = atob(dataOf("halfshade-wasm"));
+  const bytes = new Uint8Array(binary.length);
+  for (let index = 0; index < bytes.length; index += 1) bytes[index] = binary.charCodeAt(index);
+  return WebAssembly.compile(bytes);
+}
+
+/**
+ * Reads the worker's script.
+ * @returns {Promise<() => Worker>} starts a worker, as often as wanted
+ */
+export async function loadWorker() {
+  const address = URL.createObjectURL(new Blob([dataOf("halfshade-worker")], { type: "text/javascript" }));
+  const trusted = trustedAddress(address);
+  return () => new Worker(trusted);
+}
+
+/**
+ * The examples with their texts.
+ * @returns {Promise<Example[]>}
+ */
+export async function loadExamples() {
+  return JSON.parse(dataOf("halfshade-examples"));
+}
+
+/**
+ * The only address that the page's Trusted Types policy lets through.
+ * @param {string} address
+ * @returns {string} at run time a TrustedScriptURL, where the browser knows them
+ */
+function trustedAddress(address) {
+  /** @type {{ trustedTypes?: { createPolicy(name: string, rules: object): { createScriptURL(text: string): string } } }} */
+  const { trustedTypes } = /** @type {object} */ (globalThis);
+  if (!trustedTypes) return address;
+  const policy = trustedTypes.createPolicy("halfshade", {
+    createScriptURL(/** @type {string} */ text) {
+      if (text !== address) throw new TypeError("Only the engine's worker may be started.");
+      return text;
+    },
+  });
+  return policy.createScriptURL(address);
+}
+
+/** @param {string} id */
+function dataOf(id) {
+  return document.getElementById(id)?.textContent ?? "";
+}
