@@ -45,4 +45,10 @@ pub mod figures;
 
 pub mod examine;
 
+pub mod text;
+
+pub mod link;
+
 pub mod plot;
+
+pub mod web;

@@ -5,7 +5,9 @@ use serde::Serialize;
 use wasm_bindgen::JsValue;
 
 use crate::error::{Error, Note, Place, Severity};
-use crate::text::{Alternative, DecimalMark, Delimiter, MatricesRead, MatrixRead, ReadingDescription};
+use crate::text::{
+    Alternative, DecimalMark, Delimiter, Form, MatricesRead, MatrixRead, ReadingDescription,
+};
 
 /// Plain objects and arrays; `None` as `null`.
 pub fn to_js<T: Serialize>(value: &T) -> Result<JsValue, JsValue> {
@@ -46,8 +48,18 @@ enum PlaceTwin {
 impl From<&Place> for PlaceTwin {
     fn from(place: &Place) -> Self {
         match place {
-            Place::Field(field) => Self::Field { field: field.clone() },
-            &Place::Text { line, character, length } => Self::Text { line, character, length },
+            Place::Field(field) => Self::Field {
+                field: field.clone(),
+            },
+            &Place::Text {
+                line,
+                character,
+                length,
+            } => Self::Text {
+                line,
+                character,
+                length,
+            },
         }
     }
 }
@@ -72,5 +84,94 @@ impl From<&Note> for NoteTwin {
             message: note.message.clone(),
             at: note.at.as_ref().map(PlaceTwin::from),
         }
+    }
+}
+
+/// What a text holds.
+#[derive(Serialize)]
+pub struct MatricesTwin {
+    matrices: Vec<MatrixTwin>,
+    reading: ReadingTwin,
+    alternatives: Vec<AlternativeTwin>,
+    notes: Vec<NoteTwin>,
+}
+
+#[derive(Serialize)]
+struct MatrixTwin {
+    mueller: [f64; 16],
+    label: Option<String>,
+    line: usize,
+    decimals: Option<u32>,
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct ReadingTwin {
+    form: &'static str,
+    decimal_char: char,
+    group_char: Option<char>,
+    delimiter: Option<&'static str>,
+    order: &'static str,
+    header_row_count: usize,
+    count: usize,
+}
+
+#[derive(Serialize)]
+struct AlternativeTwin {
+    reading: ReadingTwin,
+    matrices: Vec<MatrixTwin>,
+}
+
+impl From<&MatricesRead> for MatricesTwin {
+    fn from(read: &MatricesRead) -> Self {
+        Self {
+            matrices: matrices(&read.matrices),
+            reading: reading(&read.reading, read.matrices.len()),
+            alternatives: read
+                .alternatives
+                .iter()
+                .map(|other: &Alternative| AlternativeTwin {
+                    reading: reading(&other.reading, other.matrices.len()),
+                    matrices: matrices(&other.matrices),
+                })
+                .collect(),
+            notes: read.notes.iter().map(NoteTwin::from).collect(),
+        }
+    }
+}
+
+fn matrices(read: &[MatrixRead]) -> Vec<MatrixTwin> {
+    read.iter()
+        .map(|one| MatrixTwin {
+            mueller: one.mueller,
+            label: one.label.clone(),
+            line: one.line,
+            decimals: one.decimals,
+        })
+        .collect()
+}
+
+fn reading(reading: &ReadingDescription, count: usize) -> ReadingTwin {
+    ReadingTwin {
+        form: match reading.form {
+            Form::Table => "table",
+            Form::Brackets => "brackets",
+            Form::BracketsWithSemicolons => "bracketsWithSemicolons",
+        },
+        decimal_char: reading.decimal.char(),
+        group_char: reading.grouped.then_some(match reading.decimal {
+            DecimalMark::Point => ',',
+            DecimalMark::Comma => '.',
+        }),
+        delimiter: reading.delimiter.map(|delimiter| match delimiter {
+            Delimiter::Tab => "tab",
+            Delimiter::Semicolon => "semicolon",
+            Delimiter::Comma => "comma",
+            Delimiter::Space => "space",
+        }),
+        // A flat sixteen looks the same either way: the convention decides.
+        order: "rows",
+        header_row_count: reading.header_row_count,
+        count,
     }
 }

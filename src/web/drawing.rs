@@ -9,7 +9,9 @@ use super::request::{ConventionTwin, from_js};
 use crate::convention::{Convention, PositiveS3, ZeroAngle};
 use crate::error::Result as EngineResult;
 use crate::mueller::Mueller;
-use crate::plot::{self, EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, View};
+use crate::plot::{
+    self, EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, View,
+};
 use crate::state::Stokes;
 
 /// Size and colours, alike for every plot.
@@ -121,7 +123,7 @@ impl EllipsesRequest {
         let canonical = self.convention.canonical(&self.mueller)?;
         let states = standard_states(&convention)
             .into_iter()
-            .map(|(label, input)| Ok(pair(label, input, &canonical)?))
+            .map(|(label, input)| pair(label, input, &canonical))
             .collect::<EngineResult<_>>()?;
         Ok(EllipsesPlot { states })
     }
@@ -131,7 +133,11 @@ impl EllipsesRequest {
 /// canonical Stokes vectors.
 fn standard_states(convention: &Convention) -> [(&'static str, [f64; 4]); 6] {
     let diagonal = convention.azimuth(std::f64::consts::FRAC_PI_4);
-    let plus = if diagonal < std::f64::consts::FRAC_PI_2 { 1.0 } else { -1.0 };
+    let plus = if diagonal < std::f64::consts::FRAC_PI_2 {
+        1.0
+    } else {
+        -1.0
+    };
     [
         ("H", [1.0, 1.0, 0.0, 0.0]),
         ("V", [1.0, -1.0, 0.0, 0.0]),
@@ -176,12 +182,14 @@ fn thrown<T>(result: EngineResult<T>) -> Result<T, JsValue> {
 #[wasm_bindgen(js_name = drawEigenvalues, unchecked_return_type = "Drawn")]
 pub fn draw_eigenvalues(
     canvas: &HtmlCanvasElement,
-    #[wasm_bindgen(unchecked_param_type = "EigenvaluesRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "EigenvaluesRequest")] request: &JsValue,
 ) -> Result<JsValue, JsValue> {
     let request: EigenvaluesRequest = from_js(request)?;
     let (plot, theme) = (request.plot(), request.frame.theme());
     let surface = request.frame.surface(plot::eigenvalues_height);
-    thrown(plot::on_canvas(canvas, &surface, |area| plot::draw_eigenvalues(area, &plot, &theme)))?;
+    thrown(plot::on_canvas(canvas, &surface, |area| {
+        plot::draw_eigenvalues(area, &plot, &theme)
+    }))?;
     drawn(&surface, thrown(plot::eigenvalues_description(&plot))?)
 }
 
@@ -191,13 +199,19 @@ pub fn draw_eigenvalues(
 /// For values or sizes that can't be drawn.
 #[wasm_bindgen(js_name = eigenvaluesSvg)]
 pub fn eigenvalues_svg(
-    #[wasm_bindgen(unchecked_param_type = "EigenvaluesRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "EigenvaluesRequest")] request: &JsValue,
 ) -> Result<String, JsValue> {
     let request: EigenvaluesRequest = from_js(request)?;
     let plot = request.plot();
     let surface = request.frame.surface(plot::eigenvalues_height);
     let description = thrown(plot::eigenvalues_description(&plot))?;
-    thrown(plot::eigenvalues_svg(&plot, &surface, &request.frame.theme(), "Coherency eigenvalues", &description))
+    thrown(plot::eigenvalues_svg(
+        &plot,
+        &surface,
+        &request.frame.theme(),
+        "Coherency eigenvalues",
+        &description,
+    ))
 }
 
 /// Draws the Poincaré sphere.
@@ -207,12 +221,14 @@ pub fn eigenvalues_svg(
 #[wasm_bindgen(js_name = drawSphere, unchecked_return_type = "Drawn")]
 pub fn draw_sphere(
     canvas: &HtmlCanvasElement,
-    #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: &JsValue,
 ) -> Result<JsValue, JsValue> {
     let request: SphereRequest = from_js(request)?;
     let (plot, theme) = (thrown(request.plot())?, request.frame.theme());
     let surface = request.frame.surface(plot::sphere_height);
-    thrown(plot::on_canvas(canvas, &surface, |area| plot::draw_sphere(area, &plot, &theme)))?;
+    thrown(plot::on_canvas(canvas, &surface, |area| {
+        plot::draw_sphere(area, &plot, &theme)
+    }))?;
     drawn(&surface, thrown(plot::sphere_description(&plot))?)
 }
 
@@ -222,13 +238,19 @@ pub fn draw_sphere(
 /// For values or sizes that can't be drawn.
 #[wasm_bindgen(js_name = sphereSvg)]
 pub fn sphere_svg(
-    #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: &JsValue,
 ) -> Result<String, JsValue> {
     let request: SphereRequest = from_js(request)?;
     let plot = thrown(request.plot())?;
     let surface = request.frame.surface(plot::sphere_height);
     let description = thrown(plot::sphere_description(&plot))?;
-    thrown(plot::sphere_svg(&plot, &surface, &request.frame.theme(), "Poincaré sphere", &description))
+    thrown(plot::sphere_svg(
+        &plot,
+        &surface,
+        &request.frame.theme(),
+        "Poincaré sphere",
+        &description,
+    ))
 }
 
 /// Draws the polarization ellipses of six standard states, before and after.
@@ -238,12 +260,14 @@ pub fn sphere_svg(
 #[wasm_bindgen(js_name = drawEllipses, unchecked_return_type = "Drawn")]
 pub fn draw_ellipses(
     canvas: &HtmlCanvasElement,
-    #[wasm_bindgen(unchecked_param_type = "EllipsesRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "EllipsesRequest")] request: &JsValue,
 ) -> Result<JsValue, JsValue> {
     let request: EllipsesRequest = from_js(request)?;
     let (plot, theme) = (thrown(request.plot())?, request.frame.theme());
     let surface = request.frame.surface(plot::ellipses_height);
-    thrown(plot::on_canvas(canvas, &surface, |area| plot::draw_ellipses(area, &plot, &theme)))?;
+    thrown(plot::on_canvas(canvas, &surface, |area| {
+        plot::draw_ellipses(area, &plot, &theme)
+    }))?;
     drawn(&surface, thrown(plot::ellipses_description(&plot))?)
 }
 
@@ -253,11 +277,17 @@ pub fn draw_ellipses(
 /// For values or sizes that can't be drawn.
 #[wasm_bindgen(js_name = ellipsesSvg)]
 pub fn ellipses_svg(
-    #[wasm_bindgen(unchecked_param_type = "EllipsesRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "EllipsesRequest")] request: &JsValue,
 ) -> Result<String, JsValue> {
     let request: EllipsesRequest = from_js(request)?;
     let plot = thrown(request.plot())?;
     let surface = request.frame.surface(plot::ellipses_height);
     let description = thrown(plot::ellipses_description(&plot))?;
-    thrown(plot::ellipses_svg(&plot, &surface, &request.frame.theme(), "Polarization ellipses", &description))
+    thrown(plot::ellipses_svg(
+        &plot,
+        &surface,
+        &request.frame.theme(),
+        "Polarization ellipses",
+        &description,
+    ))
 }

@@ -165,7 +165,10 @@ fn realizability(found: &Examination) -> RealizabilityTwin {
                 low: passivity.margin_low,
                 method: passivity.margin_low.map(|_| "one-sided"),
                 unit: "matrix",
-                reason: passivity.margin_se.is_none().then_some("no noise was stated"),
+                reason: passivity
+                    .margin_se
+                    .is_none()
+                    .then_some("no noise was stated"),
                 ..FigureTwin::default()
             },
             verdict: match passivity.verdict {
@@ -208,7 +211,10 @@ impl Writer<'_> {
             reason: if nearest.is_none() {
                 found.realizability.reason
             } else {
-                measurement.sigma().is_none().then_some("no noise was stated")
+                measurement
+                    .sigma()
+                    .is_none()
+                    .then_some("no noise was stated")
             },
         }
     }
@@ -237,7 +243,11 @@ impl Writer<'_> {
             _ => (180.0 / PI, "deg"),
         };
         let half_width = figure.half_width().map(|width| width * factor);
-        let at = |side: f64| value.zip(half_width).map(|(value, width)| value + side * width);
+        let at = |side: f64| {
+            value
+                .zip(half_width)
+                .map(|(value, width)| value + side * width)
+        };
         FigureTwin {
             value,
             se: figure.se.map(|se| se * factor),
@@ -252,8 +262,14 @@ impl Writer<'_> {
     fn decompositions(&self, found: &Examination) -> DecompositionsTwin {
         let alpha = found.figures.get(FigureName::IsotropicAlpha);
         DecompositionsTwin {
-            polar_forward: found.polar_forward.as_ref().map(|factors| self.polar(factors)),
-            polar_reverse: found.polar_reverse.as_ref().map(|factors| self.polar(factors)),
+            polar_forward: found
+                .polar_forward
+                .as_ref()
+                .map(|factors| self.polar(factors)),
+            polar_reverse: found
+                .polar_reverse
+                .as_ref()
+                .map(|factors| self.polar(factors)),
             spectral: found
                 .spectral
                 .iter()

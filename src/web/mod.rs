@@ -39,7 +39,7 @@ pub fn start() {
 #[wasm_bindgen(js_name = parseMatrices, unchecked_return_type = "MatricesRead")]
 pub fn parse_matrices(
     text: &str,
-    #[wasm_bindgen(unchecked_param_type = "ReadOptions | undefined")] options: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "ReadOptions | undefined")] options: &JsValue,
 ) -> JsResult {
     let options: ReadRequest = from_js(options)?;
     let read = text::parse_matrices(text, &options.into()).map_err(|error| to_js_error(&error))?;
@@ -52,11 +52,12 @@ pub fn parse_matrices(
 /// For a request that is not understood, at its field.
 #[wasm_bindgen(unchecked_return_type = "Examination")]
 pub fn examine(
-    #[wasm_bindgen(unchecked_param_type = "ExamineRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "ExamineRequest")] request: &JsValue,
 ) -> JsResult {
     let request: ExamineRequest = from_js(request)?;
     let (measurement, convention) = request.measurement().map_err(|error| to_js_error(&error))?;
-    let found = examine::examine(&measurement, request.seed()).map_err(|error| to_js_error(&error))?;
+    let found =
+        examine::examine(&measurement, request.seed()).map_err(|error| to_js_error(&error))?;
     to_js(&ExaminationTwin::new(&found, &measurement, &convention))
 }
 
@@ -66,7 +67,7 @@ pub fn examine(
 /// For values that are not finite.
 #[wasm_bindgen(js_name = formatValue, unchecked_return_type = "FormattedValue")]
 pub fn format_value(
-    #[wasm_bindgen(unchecked_param_type = "FormatRequest")] request: JsValue,
+    #[wasm_bindgen(unchecked_param_type = "FormatRequest")] request: &JsValue,
 ) -> JsResult {
     #[derive(Serialize)]
     struct Formatted {
@@ -75,7 +76,10 @@ pub fn format_value(
     }
     let request: FormatRequest = from_js(request)?;
     let value = stats::rounded(request.value, request.se).map_err(|error| to_js_error(&error))?;
-    to_js(&Formatted { text: value.text, plain: value.plain })
+    to_js(&Formatted {
+        text: value.text,
+        plain: value.plain,
+    })
 }
 
 /// Writes a configuration as the text behind the `#` of a link.

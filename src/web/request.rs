@@ -2,9 +2,11 @@
 
 use serde::Deserialize;
 use serde::de::DeserializeOwned;
+use serde_json::{Map, Value};
 use wasm_bindgen::JsValue;
 
 use super::convert::to_js_error;
+use super::value;
 use crate::convention::{AngleSense, Convention, PositiveS3, TimeSign, ZeroAngle};
 use crate::error::{Error, Result};
 use crate::mueller::Mueller;
@@ -12,17 +14,19 @@ use crate::noise::{Measurement, Noise};
 use crate::text::{DecimalMark, Delimiter, ReadOptions};
 
 /// Decodes a request; `undefined` and `null` are an empty one.
-pub fn from_js<T: DeserializeOwned>(value: JsValue) -> std::result::Result<T, JsValue> {
-    let value = if value.is_undefined() || value.is_null() {
-        js_sys::Object::new().into()
-    } else {
-        value
+pub fn from_js<T: DeserializeOwned>(value: &JsValue) -> std::result::Result<T, JsValue> {
+    decode(value).map_err(|error| to_js_error(&error))
+}
+
+fn decode<T: DeserializeOwned>(value: &JsValue) -> Result<T> {
+    let value = match value::from_js(value) {
+        // `undefined` is no plain value.
+        _ if value.is_undefined() || value.is_null() => Value::Object(Map::new()),
+        converted => converted?,
     };
-    let deserializer = serde_wasm_bindgen::Deserializer::from(value);
-    serde_path_to_error::deserialize(deserializer).map_err(|error| {
+    serde_path_to_error::deserialize(value).map_err(|error| {
         let path = error.path().to_string();
         let message = error.inner().to_string();
-        let message = message.strip_prefix("Error: ").unwrap_or(&message);
         let code = if message.starts_with("unknown field") {
             "unknown-field"
         } else if message.starts_with("missing field") {
@@ -33,7 +37,11 @@ pub fn from_js<T: DeserializeOwned>(value: JsValue) -> std::result::Result<T, Js
             "bad-request"
         };
         let error = Error::new(code, format!("The request is not understood: {message}."));
-        to_js_error(&if path == "." { error } else { error.at_field(path) })
+        if path == "." {
+            error
+        } else {
+            error.at_field(path)
+        }
     })
 }
 

@@ -220,3 +220,58 @@ export interface Drawn {
     /** CSS pixels. */
     height: number;
 }
+
+/** What a person may settle about a text; what is left out is found out. */
+export interface ReadOptions {
+    decimal?: "point" | "comma";
+    /** Means nothing in bracketed forms. */
+    delimiter?: "tab" | "semicolon" | "comma" | "space";
+}
+
+/** Where something is wrong: a field of the request, or a spot of a text, counted from one. */
+export type Place = { field: string } | { line: number; character: number; length: number };
+
+export interface Note {
+    severity: "information" | "warning" | "refusal";
+    code: string;
+    message: string;
+    at: Place | null;
+}
+
+export interface MatrixRead {
+    /** In the order of the text. */
+    mueller: Matrix16;
+    /** From a comment, a name or a row label beside it. */
+    label: string | null;
+    /** Where it begins, counted from one. */
+    line: number;
+    /** The printed resolution is 10^-decimals. */
+    decimals: number | null;
+}
+
+export interface Reading {
+    form: "table" | "brackets" | "bracketsWithSemicolons";
+    decimalChar: "." | ",";
+    /** The mark of thousands that was dropped. */
+    groupChar: "," | "." | null;
+    delimiter: "tab" | "semicolon" | "comma" | "space" | null;
+    order: "rows";
+    headerRowCount: number;
+    count: number;
+}
+
+export interface MatricesRead {
+    /** At least one. */
+    matrices: MatrixRead[];
+    reading: Reading;
+    /** Other readings with other numbers: then the person must choose. */
+    alternatives: { reading: Reading; matrices: MatrixRead[] }[];
+    notes: Note[];
+}
+
+/** Every failure is thrown as one of these. */
+export interface HalfshadeError extends Error {
+    /** Stable. */
+    code: string;
+    at: Place | null;
+}

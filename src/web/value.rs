@@ -1,31 +1,37 @@
-//! Free-form values between JavaScript and JSON, every bit of a number kept.
+//! Plain values between JavaScript and JSON, every bit of a number kept.
 //!
-//! serde-wasm-bindgen turns `-0` into the integer 0 and keeps NaN; a link may do
-//! neither.
+//! serde-wasm-bindgen turns `-0` into the integer 0, keeps NaN, and passes over
+//! members that a type does not name: requests and links may have none of these.
 
-use js_sys::{Array, Object, Reflect};
+use js_sys::{Array, ArrayBuffer, Object, Reflect};
 use serde_json::{Map, Number, Value};
 use wasm_bindgen::{JsCast, JsValue};
 
 use crate::error::{Error, Result};
 
-/// Deeper nesting is refused: a configuration is flat.
+/// Deeper nesting is refused: requests and configurations are flat.
 const DEEPEST: usize = 32;
 
 /// From JavaScript. `undefined` members are left out.
 ///
 /// # Errors
-/// `bad-configuration` for what JSON can't hold: functions, NaN, cycles.
+/// `not-finite` for a number that is not, `bad-request` for what is no plain value:
+/// functions, cycles; at the path of the value.
 pub fn from_js(value: &JsValue) -> Result<Value> {
-    convert(value, "configuration", 0)
+    convert(value, "", 0)
 }
 
 fn convert(value: &JsValue, path: &str, depth: usize) -> Result<Value> {
-    let refuse = |what: &str| {
-        Err(Error::new("bad-configuration", format!("A configuration can't hold {what}.")).at_field(path))
+    let refuse = |code, sentence: &str| {
+        let error = Error::new(code, sentence);
+        Err(if path.is_empty() {
+            error
+        } else {
+            error.at_field(path)
+        })
     };
     if depth > DEEPEST {
-        return refuse("values nested this deep");
+        return refuse("bad-request", "This is nested too deeply.");
     }
     if value.is_null() {
         return Ok(Value::Null);
@@ -34,17 +40,16 @@ fn convert(value: &JsValue, path: &str, depth: usize) -> Result<Value> {
         return Ok(Value::Bool(flag));
     }
     if let Some(number) = value.as_f64() {
-        return match Number::from_f64(number) {
+        return match number_of(number) {
             Some(number) => Ok(Value::Number(number)),
-            None => refuse("a number that is not finite"),
+            None => refuse("not-finite", "This is not a finite number."),
         };
     }
     if let Some(text) = value.as_string() {
         return Ok(Value::String(text));
     }
-    if Array::is_array(value) {
-        let array: &Array = value.unchecked_ref();
-        return array
+    if Array::is_array(value) || ArrayBuffer::is_view(value) {
+        return Array::from(value)
             .iter()
             .enumerate()
             .map(|(k, item)| convert(&item, &format!("{path}[{k}]"), depth + 1))
@@ -58,13 +63,27 @@ fn convert(value: &JsValue, path: &str, depth: usize) -> Result<Value> {
             let key = entry.get(0).as_string().unwrap_or_default();
             let item = entry.get(1);
             if !item.is_undefined() {
-                let item = convert(&item, &format!("{path}.{key}"), depth + 1)?;
-                map.insert(key, item);
+                let inner = if path.is_empty() {
+                    key.clone()
+                } else {
+                    format!("{path}.{key}")
+                };
+                map.insert(key, convert(&item, &inner, depth + 1)?);
             }
         }
         return Ok(Value::Object(map));
     }
-    refuse("such a value")
+    refuse("bad-request", "This is not a plain value.")
+}
+
+/// Whole numbers as such, but for -0, which only a double can be.
+fn number_of(number: f64) -> Option<Number> {
+    const LARGEST_WHOLE: f64 = 9_007_199_254_740_992.0;
+    let whole = number.fract() == 0.0 && number.abs() < LARGEST_WHOLE;
+    if whole && !(number == 0.0 && number.is_sign_negative()) {
+        return Some(Number::from(number as i64));
+    }
+    Number::from_f64(number)
 }
 
 /// To JavaScript: fresh plain objects.

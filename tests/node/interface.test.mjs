@@ -96,6 +96,7 @@ test("the same request gives the same digits", () => {
 });
 
 test("examine refuses, naming the field", () => {
+  assert.deepEqual(engine.examine({ mueller: new Float64Array(FILM) }), engine.examine({ mueller: FILM }));
   refuses(() => engine.examine({ mueller: FILM.slice(1) }), "bad-request", { field: "mueller" });
   refuses(() => engine.examine({}), "missing-field");
   refuses(() => engine.examine({ mueller: FILM, sigma: 1 }), "unknown-field", { field: "sigma" });
@@ -213,12 +214,14 @@ test("a link holds every bit of every number, and blocks that this version does 
   refuses(() => engine.decodeLink(fragment.slice(0, fragment.length >> 1)), "link-truncated");
   refuses(() => engine.decodeLink(fragment.replace(/^v1/, "v2")), "link-newer");
   refuses(() => engine.decodeLink(""), "link-empty");
-  refuses(() => engine.encodeLink({ v: 1, measurement: { mueller: mueller.with(0, Number.NaN) } }), "bad-configuration");
-  refuses(() => engine.encodeLink(/** @type {any} */ ({ v: 1, call: () => 1 })), "bad-configuration");
+  refuses(() => engine.encodeLink({ v: 1, measurement: { mueller: mueller.with(0, Number.NaN) } }), "not-finite", { field: "measurement.mueller[0]" });
+  refuses(() => engine.encodeLink({ v: 1, measurement: { mueller, normalized: true } }), "bad-configuration", { field: "measurement.normalized" });
+  refuses(() => engine.encodeLink({ v: 2 }), "link-newer");
+  refuses(() => engine.encodeLink(/** @type {any} */ ({ v: 1, call: () => 1 })), "bad-request", { field: "call" });
   /** @type {any} */
   const cycle = { v: 1 };
   cycle.self = cycle;
-  refuses(() => engine.encodeLink(cycle), "bad-configuration");
+  refuses(() => engine.encodeLink(cycle), "bad-request");
 });
 
 test("plots as SVG, the same code as on the canvas", () => {

@@ -1,0 +1,137 @@
+use base64::Engine;
+use base64::engine::general_purpose::URL_SAFE_NO_PAD;
+use miniz_oxide::deflate::compress_to_vec;
+use miniz_oxide::inflate::{TINFLStatus, decompress_to_vec_with_limit};
+
+use crate::error::{Error, Result};
+
+/// The version of the envelope; it stands outside of the compression, so that an
+/// older page can tell a newer link from a damaged one.
+const VERSION: &str = "v1";
+
+/// A fragment may be no longer than this.
+const LONGEST_FRAGMENT: usize = 64 * 1024;
+
+/// A payload may inflate to no more than this: deflate reaches 1000 to 1.
+const LARGEST_CONTENT: usize = 1 << 20;
+
+/// Digits of the checksum: 35 bits hold the 32 of CRC-32.
+const CHECKSUM_DIGITS: usize = 7;
+
+const DIGITS: &[u8; 32] = b"abcdefghijklmnopqrstuvwxyz234567";
+
+/// Packs a text: raw deflate (RFC 1951), base64url without padding (RFC 4648),
+/// CRC-32 of the packed bytes in base 32. The last character is a letter or a
+/// digit: chat programs trim others.
+///
+/// # Errors
+/// `link-too-large` where the fragment would be refused on opening.
+pub fn seal(content: &str) -> Result<String> {
+    if content.len() > LARGEST_CONTENT {
+        return Err(too_large());
+    }
+    let packed = compress_to_vec(content.as_bytes(), 9);
+    let fragment = format!(
+        "{VERSION}.{}.{}",
+        URL_SAFE_NO_PAD.encode(&packed),
+        checksum(&packed)
+    );
+    if fragment.len() > LONGEST_FRAGMENT {
+        return Err(too_large());
+    }
+    Ok(fragment)
+}
+
+/// Unpacks what [`seal`] packed. A whole address is taken as well as its fragment.
+///
+/// # Errors
+/// `link-empty`, `link-not-ours`, `link-newer`, `link-too-large`, `link-truncated`,
+/// `link-damaged`.
+pub fn open(fragment: &str) -> Result<String> {
+    if fragment.len() > LONGEST_FRAGMENT {
+        return Err(too_large());
+    }
+    let fragment = fragment.rsplit('#').next().unwrap_or_default();
+    let fragment: String = fragment
+        .chars()
+        .filter(|c| {
+            !c.is_whitespace() && !matches!(c, '\u{200b}'..='\u{200d}' | '\u{2060}' | '\u{feff}')
+        })
+        .collect();
+    if fragment.is_empty() {
+        return Err(Error::new(
+            "link-empty",
+            "There is nothing behind the # of this link.",
+        ));
+    }
+    let mut parts = fragment.split('.');
+    let version = parts.next().unwrap_or_default();
+    let number = version
+        .strip_prefix('v')
+        .and_then(|digits| digits.parse::<u32>().ok());
+    match number {
+        Some(1) if version == VERSION => {}
+        Some(number) if number > 1 => {
+            return Err(Error::new(
+                "link-newer",
+                "This link was made by a newer version of Halfshade than this page.",
+            ));
+        }
+        _ if VERSION.starts_with(version) => return Err(truncated()),
+        _ => {
+            return Err(Error::new(
+                "link-not-ours",
+                "What stands behind the # of this link was not made by Halfshade.",
+            ));
+        }
+    }
+    let payload = parts.next().unwrap_or_default();
+    let sum = parts.next().unwrap_or_default();
+    if payload.is_empty() || sum.len() < CHECKSUM_DIGITS {
+        return Err(truncated());
+    }
+    if parts.next().is_some() || sum.len() > CHECKSUM_DIGITS {
+        return Err(damaged());
+    }
+    let packed = URL_SAFE_NO_PAD.decode(payload).map_err(|_| damaged())?;
+    if checksum(&packed) != sum {
+        return Err(damaged());
+    }
+    let content = decompress_to_vec_with_limit(&packed, LARGEST_CONTENT).map_err(|error| {
+        if error.status == TINFLStatus::HasMoreOutput {
+            too_large()
+        } else {
+            damaged()
+        }
+    })?;
+    String::from_utf8(content).map_err(|_| damaged())
+}
+
+fn checksum(bytes: &[u8]) -> String {
+    let sum = crc32fast::hash(bytes);
+    (0..CHECKSUM_DIGITS)
+        .map(|k| {
+            // 35 bits, the highest five first.
+            let shift = 5 * (CHECKSUM_DIGITS - 1 - k);
+            char::from(DIGITS[(u64::from(sum) >> shift & 31) as usize])
+        })
+        .collect()
+}
+
+fn truncated() -> Error {
+    Error::new(
+        "link-truncated",
+        "This link is cut off: its end is missing. Ask for it again, as a file or in full.",
+    )
+}
+
+fn damaged() -> Error {
+    Error::new(
+        "link-damaged",
+        "This link is damaged: some of its characters were changed on the way.",
+    )
+}
+
+fn too_large() -> Error {
+    Error::new("link-too-large", "This is more than a link can hold.")
+}
