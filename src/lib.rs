@@ -23,6 +23,7 @@
 #![forbid(unsafe_code)]
 
 pub mod error;
+pub mod json;
 pub mod tolerance;
 
 pub mod linalg;

@@ -1,8 +1,8 @@
-use serde::Deserialize;
-use serde_json::{Map, Value};
+use serde_json::Value;
 
 use super::envelope::{open, seal};
 use crate::error::{Error, Result};
+use crate::json::Fields;
 
 /// The version of the configuration that this engine writes: its `v`.
 pub const SCHEMA_VERSION: u32 = 1;
@@ -29,8 +29,8 @@ pub fn known_blocks() -> &'static [&'static str] {
 /// Writes a configuration as a fragment, without the `#`.
 ///
 /// # Errors
-/// `bad-configuration` at the field that is wrong; `link-newer` for a `v` of the
-/// future; `link-too-large`.
+/// At the field that is wrong, with the codes of [`Fields`]; `link-newer` for a `v`
+/// of the future; `link-too-large`.
 pub fn encode(configuration: &Value) -> Result<String> {
     let configuration = checked(configuration.clone())?;
     seal(&configuration.to_string())
@@ -51,191 +51,205 @@ pub fn decode(fragment: &str) -> Result<Value> {
     checked(configuration)
 }
 
-/// Validated, labels made safe.
-fn checked(configuration: Value) -> Result<Value> {
-    let Value::Object(mut blocks) = configuration else {
-        return Err(bad("A configuration is an object.", "configuration"));
-    };
-    match blocks.get("v").and_then(Value::as_f64) {
-        Some(1.0) => {}
-        Some(version) if version > f64::from(SCHEMA_VERSION) => {
-            return Err(Error::new(
-                "link-newer",
-                "This link was made by a newer version of Halfshade than this page.",
-            )
-            .at_field("v"));
-        }
-        _ => return Err(bad("A configuration begins with its version, v: 1.", "v")),
+/// Validated, labels made safe. The values themselves stay, so that no digit moves.
+fn checked(mut configuration: Value) -> Result<Value> {
+    check(&configuration)?;
+    if let Some(Value::String(label)) = configuration.get_mut("label") {
+        *label = plain_label(label);
     }
-    for (name, block) in &mut blocks {
-        match name.as_str() {
-            "v" => {}
-            "app" | "task" => short_text(block, name)?,
-            "label" => {
-                short_text(block, name)?;
-                *block = Value::String(plain_label(block.as_str().unwrap_or_default()));
-            }
-            "measurement" => known::<Measurement>(block, name)?,
-            "examine" => known::<Examine>(block, name)?,
-            "view" => known::<Map<String, Value>>(block, name).and_then(|()| all_numbers(block))?,
-            _ => bounded(block, name, 0)?,
-        }
-    }
-    Ok(Value::Object(blocks))
+    Ok(configuration)
 }
 
-/// Checks a block against its twin; the value itself stays, so that no digit moves.
-fn known<'a, T: Deserialize<'a> + Checked>(block: &'a Value, name: &str) -> Result<()> {
-    let twin: T = serde_path_to_error::deserialize(block).map_err(|error| {
-        let path = error.path().to_string();
-        let field = if path == "." {
-            name.to_owned()
-        } else {
-            format!("{name}.{path}")
-        };
-        bad(
-            &format!("The configuration is not understood: {}.", error.inner()),
-            &field,
-        )
-    })?;
-    twin.check()
-        .map_err(|(sentence, field)| bad(sentence, &format!("{name}.{field}")))
-}
-
-trait Checked {
-    fn check(&self) -> std::result::Result<(), (&'static str, &'static str)> {
-        Ok(())
-    }
-}
-
-impl Checked for Map<String, Value> {}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", deny_unknown_fields)]
-#[expect(dead_code, reason = "the types alone are what is checked")]
-struct Measurement {
-    mueller: Option<[f64; 16]>,
-    #[serde(default)]
-    normalised: bool,
-    #[serde(default)]
-    absolute: bool,
-    convention: Option<Convention>,
-    noise: Option<Noise>,
-    text: Option<String>,
-    #[serde(default)]
-    example: bool,
-}
-
-impl Checked for Measurement {
-    fn check(&self) -> std::result::Result<(), (&'static str, &'static str)> {
-        if self
-            .text
-            .as_ref()
-            .is_some_and(|text| text.len() > LONGEST_TEXT)
-        {
-            return Err(("The pasted text is too long for a link.", "text"));
-        }
-        Ok(())
-    }
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", deny_unknown_fields)]
-#[expect(dead_code, reason = "the types alone are what is checked")]
-struct Convention {
-    angles: Option<Sense>,
-    positive_s3: Option<Sense>,
-    zero_angle: Option<Axis>,
-    time: Option<Sign>,
-    order: Option<Order>,
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "lowercase")]
-enum Sense {
-    Clockwise,
-    Counterclockwise,
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "lowercase")]
-enum Axis {
-    X,
-    Y,
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "lowercase")]
-enum Sign {
-    Plus,
-    Minus,
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "lowercase")]
-enum Order {
-    Rows,
-    Columns,
-}
-
-/// Every statement of the schema, also those that later versions use.
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", tag = "kind", deny_unknown_fields)]
-#[expect(dead_code, reason = "the types alone are what is checked")]
-enum Noise {
-    None,
-    Uniform { sigma: f64 },
-    Relative { fraction: f64 },
-    PerElement { sigma: [f64; 16] },
-    Covariance { covariance: Vec<f64> },
-    Rounding { decimals: f64 },
-    Replicates { matrices: Vec<[f64; 16]> },
-}
-
-#[derive(Deserialize)]
-#[serde(deny_unknown_fields)]
-#[expect(dead_code, reason = "the types alone are what is checked")]
-struct Examine {
-    draws: f64,
-    seed: f64,
-}
-
-impl Checked for Examine {}
-
-fn all_numbers(block: &Value) -> Result<()> {
-    match block
+fn check(configuration: &Value) -> Result<()> {
+    let names: Vec<&str> = configuration
         .as_object()
         .into_iter()
         .flatten()
-        .find(|(_, item)| !item.is_number())
+        .map(|(name, _)| name.as_str())
+        .collect();
+    let blocks = Fields::of(configuration, "", &names)?;
+    match blocks.number("v")? {
+        Some(1.0) => {}
+        Some(version) if version > f64::from(SCHEMA_VERSION) => {
+            return Err(blocks.error(
+                "link-newer",
+                "v",
+                "This link was made by a newer version of Halfshade than this page.",
+            ));
+        }
+        _ => {
+            return Err(blocks.error(
+                "bad-request",
+                "v",
+                "A configuration begins with its version, v: 1.",
+            ));
+        }
+    }
+    for name in ["app", "task", "label"] {
+        if blocks
+            .text(name)?
+            .is_some_and(|text| text.chars().count() > LONGEST_LABEL)
+        {
+            return Err(blocks.error(
+                "too-large",
+                name,
+                "This must be a text of at most 80 characters.",
+            ));
+        }
+    }
+    measurement(&blocks)?;
+    if let Some(examine) = blocks.object("examine", &["draws", "seed"])? {
+        examine.whole("draws")?;
+        examine.whole("seed")?;
+    }
+    if let Some(view) = blocks.get("view") {
+        let names: Vec<&str> = view
+            .as_object()
+            .into_iter()
+            .flatten()
+            .map(|(name, _)| name.as_str())
+            .collect();
+        let view = Fields::of(view, "view", &names)?;
+        for name in names {
+            view.number(name)?;
+        }
+    }
+    for name in names.iter().filter(|name| !known_blocks().contains(name)) {
+        if let Some(block) = blocks.get(name) {
+            bounded(block, name, 0)?;
+        }
+    }
+    Ok(())
+}
+
+fn measurement(blocks: &Fields) -> Result<()> {
+    let known = [
+        "mueller",
+        "normalised",
+        "absolute",
+        "convention",
+        "noise",
+        "text",
+        "example",
+    ];
+    let Some(measurement) = blocks.object("measurement", &known)? else {
+        return Ok(());
+    };
+    measurement.numbers::<16>("mueller")?;
+    for name in ["normalised", "absolute", "example"] {
+        measurement.flag(name)?;
+    }
+    if measurement
+        .text("text")?
+        .is_some_and(|text| text.len() > LONGEST_TEXT)
     {
-        None => Ok(()),
-        Some((key, _)) => Err(bad("A view holds numbers only.", &format!("view.{key}"))),
+        return Err(measurement.error(
+            "too-large",
+            "text",
+            "The pasted text is too long for a link.",
+        ));
+    }
+    convention(&measurement)?;
+    noise(&measurement)
+}
+
+fn convention(measurement: &Fields) -> Result<()> {
+    let known = ["angles", "positiveS3", "zeroAngle", "time", "order"];
+    let Some(convention) = measurement.object("convention", &known)? else {
+        return Ok(());
+    };
+    for (name, words) in [
+        ("angles", ["counterclockwise", "clockwise"]),
+        ("positiveS3", ["clockwise", "counterclockwise"]),
+        ("zeroAngle", ["x", "y"]),
+        ("time", ["plus", "minus"]),
+        ("order", ["rows", "columns"]),
+    ] {
+        convention.choice(name, &words.map(|word| (word, ())))?;
+    }
+    Ok(())
+}
+
+/// Every statement of the schema, also those that only later versions use.
+fn noise(measurement: &Fields) -> Result<()> {
+    let known = [
+        "kind",
+        "sigma",
+        "fraction",
+        "covariance",
+        "decimals",
+        "matrices",
+    ];
+    let Some(noise) = measurement.object("noise", &known)? else {
+        return Ok(());
+    };
+    let kinds = [
+        ("none", ""),
+        ("uniform", "sigma"),
+        ("relative", "fraction"),
+        ("perElement", "sigma"),
+        ("covariance", "covariance"),
+        ("rounding", "decimals"),
+        ("replicates", "matrices"),
+    ];
+    let kind = noise.choice("kind", &kinds.map(|(kind, part)| (kind, (kind, part))))?;
+    let (kind, part) = noise.required("kind", kind)?;
+    if let Some(other) = known
+        .iter()
+        .find(|&&name| name != "kind" && name != part && noise.get(name).is_some())
+    {
+        return Err(noise.error(
+            "unknown-field",
+            other,
+            &format!("Noise of the kind '{kind}' has no '{other}'."),
+        ));
+    }
+    match kind {
+        "none" => Ok(()),
+        "uniform" | "relative" | "rounding" => noise.required(part, noise.number(part)?).map(drop),
+        "perElement" => noise.required(part, noise.numbers::<16>(part)?).map(drop),
+        "covariance" => noise.required(part, noise.numbers::<256>(part)?).map(drop),
+        _ => {
+            let matrices = noise.required(part, noise.get(part))?;
+            let items = matrices
+                .as_array()
+                .filter(|items| items.iter().all(is_matrix));
+            items.map(drop).ok_or_else(|| {
+                noise.error(
+                    "bad-request",
+                    part,
+                    "'matrices' must be a list of lists of 16 numbers.",
+                )
+            })
+        }
     }
 }
 
-fn short_text(block: &Value, name: &str) -> Result<()> {
-    match block.as_str() {
-        Some(text) if text.chars().count() <= LONGEST_LABEL => Ok(()),
-        _ => Err(bad("This must be a text of at most 80 characters.", name)),
-    }
+fn is_matrix(value: &Value) -> bool {
+    value
+        .as_array()
+        .is_some_and(|items| items.len() == 16 && items.iter().all(Value::is_number))
 }
 
 /// Without control characters and those that turn the direction of writing.
 fn plain_label(label: &str) -> String {
     label
         .chars()
-        .filter(|c| !c.is_control() && !matches!(c, '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' | '\u{200e}' | '\u{200f}'))
+        .filter(|c| {
+            !c.is_control()
+                && !matches!(c, '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' | '\u{200e}' | '\u{200f}')
+        })
         .collect()
 }
 
 /// An unknown block is kept, but not without bounds.
 fn bounded(block: &Value, path: &str, depth: usize) -> Result<()> {
+    let refuse = |sentence: &str| Err(Error::new("bad-request", sentence).at_field(path));
     if path.ends_with("__proto__") {
-        return Err(bad("This name is not allowed.", path));
+        return refuse("This name is not allowed.");
     }
     if depth > DEEPEST {
-        return Err(bad("This block is nested too deeply.", path));
+        return refuse("This block is nested too deeply.");
     }
     match block {
         Value::Array(items) => items
@@ -246,8 +260,4 @@ fn bounded(block: &Value, path: &str, depth: usize) -> Result<()> {
             .try_for_each(|(key, item)| bounded(item, &format!("{path}.{key}"), depth + 1)),
         _ => Ok(()),
     }
-}
-
-fn bad(sentence: &str, field: &str) -> Error {
-    Error::new("bad-configuration", sentence).at_field(field)
 }

@@ -1,13 +1,16 @@
 //! Plots on a canvas, and the same as SVG text.
 
-use serde::{Deserialize, Serialize};
+use serde::Serialize;
+use serde_json::Value;
 use wasm_bindgen::prelude::*;
 use web_sys::HtmlCanvasElement;
 
-use super::convert::{to_js, to_js_error};
-use super::request::{ConventionTwin, from_js};
+use super::convert::to_js;
+use super::request::{ConventionRead, plain};
+use super::thrown;
 use crate::convention::{Convention, PositiveS3, ZeroAngle};
 use crate::error::Result as EngineResult;
+use crate::json::Fields;
 use crate::mueller::Mueller;
 use crate::plot::{
     self, EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, View,
@@ -15,118 +18,91 @@ use crate::plot::{
 use crate::state::Stokes;
 
 /// Size and colours, alike for every plot.
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", deny_unknown_fields)]
 struct Frame {
-    width: f64,
-    height: Option<f64>,
-    #[serde(default = "one")]
-    ratio: f64,
-    #[serde(default)]
-    theme: ThemeTwin,
-}
-
-#[derive(Deserialize, Default, Clone, Copy)]
-#[serde(rename_all = "lowercase")]
-enum ThemeTwin {
-    #[default]
-    Light,
-    Dark,
-    Print,
-}
-
-fn one() -> f64 {
-    1.0
+    surface: Surface,
+    theme: Theme,
 }
 
 impl Frame {
-    fn surface(&self, natural_height: fn(f64) -> f64) -> Surface {
-        Surface {
-            width: self.width,
-            height: self.height.unwrap_or_else(|| natural_height(self.width)),
-            ratio: self.ratio,
-        }
-    }
-
-    fn theme(&self) -> Theme {
-        match self.theme {
-            ThemeTwin::Light => Theme::light(),
-            ThemeTwin::Dark => Theme::dark(),
-            ThemeTwin::Print => Theme::print(),
-        }
-    }
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", deny_unknown_fields)]
-struct EigenvaluesRequest {
-    eigenvalues: [f64; 4],
-    #[serde(default)]
-    eigenvalue_se: Option<[f64; 4]>,
-    frame: Frame,
-}
-
-impl EigenvaluesRequest {
-    fn plot(&self) -> EigenvaluePlot {
-        EigenvaluePlot {
-            eigenvalues: self.eigenvalues,
-            standard_error: self.eigenvalue_se,
-        }
-    }
-}
-
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", deny_unknown_fields)]
-struct SphereRequest {
-    mueller: [f64; 16],
-    #[serde(default)]
-    convention: ConventionTwin,
-    azimuth_deg: f64,
-    elevation_deg: f64,
-    frame: Frame,
-}
-
-impl SphereRequest {
-    fn plot(&self) -> EngineResult<SpherePlot> {
-        let convention = self.convention.convention();
-        let canonical = self.convention.canonical(&self.mueller)?;
-        let mut labels = ["H", "V", "+45°", "\u{2212}45°", "R", "L"].map(str::to_owned);
-        if convention.zero_angle == ZeroAngle::Y {
-            labels.swap(0, 1);
-        }
-        if convention.positive_s3 == PositiveS3::Counterclockwise {
-            labels.swap(4, 5);
-        }
-        Ok(SpherePlot {
-            mueller: convention.mueller(&canonical).row_major(),
-            view: View {
-                azimuth: self.azimuth_deg.to_radians(),
-                elevation: self.elevation_deg.to_radians(),
+    fn of(request: &Fields, natural_height: fn(f64) -> f64) -> EngineResult<Self> {
+        let fields = request.object("frame", &["width", "height", "ratio", "theme"])?;
+        let fields = request.required("frame", fields)?;
+        let width = fields.required("width", fields.number("width")?)?;
+        let height = fields.number("height")?;
+        let theme = fields.choice("theme", &[("light", 0), ("dark", 1), ("print", 2)])?;
+        let theme = match theme {
+            Some(1) => Theme::dark(),
+            Some(2) => Theme::print(),
+            _ => Theme::light(),
+        };
+        Ok(Self {
+            surface: Surface {
+                width,
+                height: height.unwrap_or_else(|| natural_height(width)),
+                ratio: fields.number("ratio")?.unwrap_or(1.0),
             },
-            labels,
+            theme,
         })
     }
 }
 
-#[derive(Deserialize)]
-#[serde(rename_all = "camelCase", deny_unknown_fields)]
-struct EllipsesRequest {
-    mueller: [f64; 16],
-    #[serde(default)]
-    convention: ConventionTwin,
-    frame: Frame,
+fn eigenvalues_request(request: &JsValue) -> EngineResult<(EigenvaluePlot, Frame)> {
+    let request: Value = plain(request)?;
+    let fields = Fields::of(&request, "", &["eigenvalues", "eigenvalueSe", "frame"])?;
+    let eigenvalues = fields.required("eigenvalues", fields.numbers("eigenvalues")?)?;
+    let plot = EigenvaluePlot {
+        eigenvalues,
+        standard_error: fields.numbers("eigenvalueSe")?,
+    };
+    Ok((plot, Frame::of(&fields, plot::eigenvalues_height)?))
 }
 
-impl EllipsesRequest {
-    fn plot(&self) -> EngineResult<EllipsesPlot> {
-        let convention = self.convention.convention();
-        let canonical = self.convention.canonical(&self.mueller)?;
-        let states = standard_states(&convention)
-            .into_iter()
-            .map(|(label, input)| pair(label, input, &canonical))
-            .collect::<EngineResult<_>>()?;
-        Ok(EllipsesPlot { states })
+fn sphere_request(request: &JsValue) -> EngineResult<(SpherePlot, Frame)> {
+    let request = plain(request)?;
+    let known = [
+        "mueller",
+        "convention",
+        "azimuthDeg",
+        "elevationDeg",
+        "frame",
+    ];
+    let fields = Fields::of(&request, "", &known)?;
+    let read = ConventionRead::of(&fields)?;
+    let convention = read.convention;
+    let mut labels = ["H", "V", "+45°", "\u{2212}45°", "R", "L"].map(str::to_owned);
+    if convention.zero_angle == ZeroAngle::Y {
+        labels.swap(0, 1);
     }
+    if convention.positive_s3 == PositiveS3::Counterclockwise {
+        labels.swap(4, 5);
+    }
+    let angle = |name| -> EngineResult<f64> {
+        Ok(fields.required(name, fields.number(name)?)?.to_radians())
+    };
+    let plot = SpherePlot {
+        mueller: convention.mueller(&read.mueller(&fields)?).row_major(),
+        view: View {
+            azimuth: angle("azimuthDeg")?,
+            elevation: angle("elevationDeg")?,
+        },
+        labels,
+    };
+    Ok((plot, Frame::of(&fields, plot::sphere_height)?))
+}
+
+fn ellipses_request(request: &JsValue) -> EngineResult<(EllipsesPlot, Frame)> {
+    let request = plain(request)?;
+    let fields = Fields::of(&request, "", &["mueller", "convention", "frame"])?;
+    let read = ConventionRead::of(&fields)?;
+    let canonical = read.mueller(&fields)?;
+    let states = standard_states(&read.convention)
+        .into_iter()
+        .map(|(label, input)| pair(label, input, &canonical))
+        .collect::<EngineResult<_>>()?;
+    Ok((
+        EllipsesPlot { states },
+        Frame::of(&fields, plot::ellipses_height)?,
+    ))
 }
 
 /// Horizontal, vertical, the person's two diagonals, clockwise, counter-clockwise:
@@ -171,10 +147,6 @@ fn drawn(surface: &Surface, description: String) -> Result<JsValue, JsValue> {
     })
 }
 
-fn thrown<T>(result: EngineResult<T>) -> Result<T, JsValue> {
-    result.map_err(|error| to_js_error(&error))
-}
-
 /// Draws the coherency eigenvalues.
 ///
 /// # Errors
@@ -184,9 +156,7 @@ pub fn draw_eigenvalues(
     canvas: &HtmlCanvasElement,
     #[wasm_bindgen(unchecked_param_type = "EigenvaluesRequest")] request: &JsValue,
 ) -> Result<JsValue, JsValue> {
-    let request: EigenvaluesRequest = from_js(request)?;
-    let (plot, theme) = (request.plot(), request.frame.theme());
-    let surface = request.frame.surface(plot::eigenvalues_height);
+    let (plot, Frame { surface, theme }) = thrown(eigenvalues_request(request))?;
     thrown(plot::on_canvas(canvas, &surface, |area| {
         plot::draw_eigenvalues(area, &plot, &theme)
     }))?;
@@ -201,14 +171,12 @@ pub fn draw_eigenvalues(
 pub fn eigenvalues_svg(
     #[wasm_bindgen(unchecked_param_type = "EigenvaluesRequest")] request: &JsValue,
 ) -> Result<String, JsValue> {
-    let request: EigenvaluesRequest = from_js(request)?;
-    let plot = request.plot();
-    let surface = request.frame.surface(plot::eigenvalues_height);
+    let (plot, Frame { surface, theme }) = thrown(eigenvalues_request(request))?;
     let description = thrown(plot::eigenvalues_description(&plot))?;
     thrown(plot::eigenvalues_svg(
         &plot,
         &surface,
-        &request.frame.theme(),
+        &theme,
         "Coherency eigenvalues",
         &description,
     ))
@@ -223,9 +191,7 @@ pub fn draw_sphere(
     canvas: &HtmlCanvasElement,
     #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: &JsValue,
 ) -> Result<JsValue, JsValue> {
-    let request: SphereRequest = from_js(request)?;
-    let (plot, theme) = (thrown(request.plot())?, request.frame.theme());
-    let surface = request.frame.surface(plot::sphere_height);
+    let (plot, Frame { surface, theme }) = thrown(sphere_request(request))?;
     thrown(plot::on_canvas(canvas, &surface, |area| {
         plot::draw_sphere(area, &plot, &theme)
     }))?;
@@ -240,14 +206,12 @@ pub fn draw_sphere(
 pub fn sphere_svg(
     #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: &JsValue,
 ) -> Result<String, JsValue> {
-    let request: SphereRequest = from_js(request)?;
-    let plot = thrown(request.plot())?;
-    let surface = request.frame.surface(plot::sphere_height);
+    let (plot, Frame { surface, theme }) = thrown(sphere_request(request))?;
     let description = thrown(plot::sphere_description(&plot))?;
     thrown(plot::sphere_svg(
         &plot,
         &surface,
-        &request.frame.theme(),
+        &theme,
         "Poincaré sphere",
         &description,
     ))
@@ -262,9 +226,7 @@ pub fn draw_ellipses(
     canvas: &HtmlCanvasElement,
     #[wasm_bindgen(unchecked_param_type = "EllipsesRequest")] request: &JsValue,
 ) -> Result<JsValue, JsValue> {
-    let request: EllipsesRequest = from_js(request)?;
-    let (plot, theme) = (thrown(request.plot())?, request.frame.theme());
-    let surface = request.frame.surface(plot::ellipses_height);
+    let (plot, Frame { surface, theme }) = thrown(ellipses_request(request))?;
     thrown(plot::on_canvas(canvas, &surface, |area| {
         plot::draw_ellipses(area, &plot, &theme)
     }))?;
@@ -279,14 +241,12 @@ pub fn draw_ellipses(
 pub fn ellipses_svg(
     #[wasm_bindgen(unchecked_param_type = "EllipsesRequest")] request: &JsValue,
 ) -> Result<String, JsValue> {
-    let request: EllipsesRequest = from_js(request)?;
-    let plot = thrown(request.plot())?;
-    let surface = request.frame.surface(plot::ellipses_height);
+    let (plot, Frame { surface, theme }) = thrown(ellipses_request(request))?;
     let description = thrown(plot::ellipses_description(&plot))?;
     thrown(plot::ellipses_svg(
         &plot,
         &surface,
-        &request.frame.theme(),
+        &theme,
         "Polarization ellipses",
         &description,
     ))

@@ -12,15 +12,20 @@ mod value;
 use serde::Serialize;
 use wasm_bindgen::prelude::*;
 
+use crate::error::Result as EngineResult;
 use crate::{examine, link, stats, text};
 use convert::{MatricesTwin, to_js, to_js_error};
 use examination::ExaminationTwin;
-use request::{ExamineRequest, FormatRequest, ReadRequest, from_js};
+use request::{ExamineRequest, format_request, plain, read_options};
 
 #[wasm_bindgen(typescript_custom_section)]
 const TYPES: &str = include_str!("types.d.ts");
 
 type JsResult = Result<JsValue, JsValue>;
+
+fn thrown<T>(result: EngineResult<T>) -> Result<T, JsValue> {
+    result.map_err(|error| to_js_error(&error))
+}
 
 /// After a panic: the message goes to the console, where a trap alone says nothing,
 /// and the next call starts a fresh instance.
@@ -41,8 +46,8 @@ pub fn parse_matrices(
     text: &str,
     #[wasm_bindgen(unchecked_param_type = "ReadOptions | undefined")] options: &JsValue,
 ) -> JsResult {
-    let options: ReadRequest = from_js(options)?;
-    let read = text::parse_matrices(text, &options.into()).map_err(|error| to_js_error(&error))?;
+    let options = plain(options).and_then(|options| read_options(&options));
+    let read = thrown(options.and_then(|options| text::parse_matrices(text, &options)))?;
     to_js(&MatricesTwin::from(&read))
 }
 
@@ -54,10 +59,13 @@ pub fn parse_matrices(
 pub fn examine(
     #[wasm_bindgen(unchecked_param_type = "ExamineRequest")] request: &JsValue,
 ) -> JsResult {
-    let request: ExamineRequest = from_js(request)?;
-    let (measurement, convention) = request.measurement().map_err(|error| to_js_error(&error))?;
-    let found =
-        examine::examine(&measurement, request.seed()).map_err(|error| to_js_error(&error))?;
+    let request = plain(request).and_then(|request| ExamineRequest::of(&request));
+    let ExamineRequest {
+        measurement,
+        convention,
+        seed,
+    } = thrown(request)?;
+    let found = thrown(examine::examine(&measurement, seed))?;
     to_js(&ExaminationTwin::new(&found, &measurement, &convention))
 }
 
@@ -74,8 +82,8 @@ pub fn format_value(
         text: String,
         plain: String,
     }
-    let request: FormatRequest = from_js(request)?;
-    let value = stats::rounded(request.value, request.se).map_err(|error| to_js_error(&error))?;
+    let request = plain(request).and_then(|request| format_request(&request));
+    let value = thrown(request.and_then(|(value, se)| stats::rounded(value, se)))?;
     to_js(&Formatted {
         text: value.text,
         plain: value.plain,
@@ -90,9 +98,7 @@ pub fn format_value(
 pub fn encode_link(
     #[wasm_bindgen(unchecked_param_type = "Configuration")] configuration: &JsValue,
 ) -> Result<String, JsValue> {
-    value::from_js(configuration)
-        .and_then(|configuration| link::encode(&configuration))
-        .map_err(|error| to_js_error(&error))
+    thrown(value::from_js(configuration).and_then(|configuration| link::encode(&configuration)))
 }
 
 /// Reads what [`encode_link`] wrote, every bit of every number.
@@ -101,9 +107,7 @@ pub fn encode_link(
 /// For a fragment that is cut, damaged, foreign or newer, each with its code.
 #[wasm_bindgen(js_name = decodeLink, unchecked_return_type = "Configuration")]
 pub fn decode_link(fragment: &str) -> JsResult {
-    link::decode(fragment)
-        .map(|configuration| value::to_js(&configuration))
-        .map_err(|error| to_js_error(&error))
+    thrown(link::decode(fragment)).map(|configuration| value::to_js(&configuration))
 }
 
 /// Which engine this is.
