@@ -1,0 +1,89 @@
+"""Mueller matrices of optical elements in doubles, as plain textbook formulas.
+
+Convention: angles counter-clockwise from x for an observer facing the source, S3 > 0 turns
+clockwise for that observer, time dependence exp(+iωt). Angles in degrees, 4x4 NumPy arrays.
+"""
+
+import numpy as np
+
+PAULI = np.array(
+    [[[1, 0], [0, 1]], [[1, 0], [0, -1]], [[0, 1], [1, 0]], [[0, -1j], [1j, 0]]], dtype=complex
+)
+# S = STOKES_OF_FIELD (E ⊗ E*), with S3 = 2 Im(Ex* Ey).
+STOKES_OF_FIELD = np.array([[1, 0, 0, 1], [1, 0, 0, -1], [0, 1, 1, 0], [0, 1j, -1j, 0]])
+
+
+def cosine(degrees):
+    """Exact at multiples of 90 degrees, so that a half-wave plate is one in every element."""
+    quarter, rest = divmod(degrees, 90)
+    if rest == 0:
+        return [1.0, 0.0, -1.0, 0.0][int(quarter) % 4]
+    return float(np.cos(np.radians(degrees)))
+
+
+def sine(degrees):
+    return cosine(degrees - 90)
+
+
+def frame(angle):
+    """Rotation of the frame by `angle`, often written R(θ)."""
+    c, s = cosine(2 * angle), sine(2 * angle)
+    return np.array([[1, 0, 0, 0], [0, c, s, 0], [0, -s, c, 0], [0, 0, 0, 1.0]])
+
+
+def turned(mueller, angle):
+    return frame(-angle) @ mueller @ frame(angle)
+
+
+def linear_diattenuator(t_max, t_min, axis):
+    a, b, g = (t_max + t_min) / 2, (t_max - t_min) / 2, np.sqrt(t_max * t_min)
+    return turned(np.array([[a, b, 0, 0], [b, a, 0, 0], [0, 0, g, 0], [0, 0, 0, g]]), axis)
+
+
+def linear_retarder(retardance, axis):
+    c, s = cosine(retardance), sine(retardance)
+    return turned(np.array([[1, 0, 0, 0], [0, 1.0, 0, 0], [0, 0, c, s], [0, 0, -s, c]]), axis)
+
+
+def circular_retarder(retardance):
+    c, s = cosine(retardance), sine(retardance)
+    return np.array([[1, 0, 0, 0], [0, c, s, 0], [0, -s, c, 0], [0, 0, 0, 1.0]])
+
+
+def elliptical_retarder(retardance, axis):
+    """`axis`: the fast eigenstate on the Poincaré sphere, any length but zero."""
+    axis = np.asarray(axis, float) / np.linalg.norm(axis)
+    c, s = cosine(retardance), sine(retardance)
+    cross = np.array([[0, axis[2], -axis[1]], [-axis[2], 0, axis[0]], [axis[1], -axis[0], 0]])
+    mueller = np.eye(4)
+    mueller[1:, 1:] = c * np.eye(3) + (1 - c) * np.outer(axis, axis) + s * cross
+    return mueller
+
+
+def elliptical_diattenuator(transmittance, vector):
+    vector = np.asarray(vector, float)
+    size2 = vector @ vector
+    root = np.sqrt(max(0.0, 1 - size2))
+    mueller = np.eye(4)
+    mueller[0, 1:] = mueller[1:, 0] = vector
+    if size2 > 0:
+        mueller[1:, 1:] = root * np.eye(3) + (1 - root) * np.outer(vector, vector) / size2
+    return transmittance * mueller
+
+
+def rotator(angle):
+    return frame(-angle)
+
+
+def isotropic_depolarizer(alpha):
+    return np.diag([1, 1 - alpha, 1 - alpha, 1 - alpha])
+
+
+def diagonal_depolarizer(d1, d2, d3):
+    return np.diag([1.0, d1, d2, d3])
+
+
+def of_jones(jones):
+    """Mueller matrix of a Jones matrix, M_ij = ½ tr(σi J σj J†)."""
+    jones = np.asarray(jones, dtype=complex)
+    return 0.5 * np.einsum("iab,bc,jcd,ad->ij", PAULI, jones, PAULI, jones.conj()).real
