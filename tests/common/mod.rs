@@ -171,3 +171,34 @@ pub fn all_finite(found: &Examination) {
     }
     assert!(numbers.iter().all(|v| v.is_finite()), "{found:#?}");
 }
+
+/// The name of a figure in the reference files, which is that of the interface.
+pub fn key(name: halfshade::figures::FigureName) -> &'static str {
+    use halfshade::figures::FigureName as F;
+    match name {
+        F::Diattenuation => "diattenuation",
+        F::LinearDiattenuation => "linearDiattenuation",
+        F::CircularDiattenuation => "circularDiattenuation",
+        F::DiattenuationAzimuth => "diattenuationAzimuthDeg",
+        F::Polarizance => "polarizance",
+        F::LinearPolarizance => "linearPolarizance",
+        F::CircularPolarizance => "circularPolarizance",
+        F::PolarizanceAzimuth => "polarizanceAzimuthDeg",
+        F::TransmittanceMax => "transmittanceMax",
+        F::TransmittanceMin => "transmittanceMin",
+        F::DepolarizationIndex => "depolarizationIndex",
+        F::SphericalPurity => "sphericalPurity",
+        F::PurityIndex1 => "purityIndex1",
+        F::PurityIndex2 => "purityIndex2",
+        F::PurityIndex3 => "purityIndex3",
+        F::Entropy => "entropy",
+        F::IsotropicAlpha => "isotropicAlpha",
+        F::Retardance => "retardanceDeg",
+        F::LinearRetardance => "linearRetardanceDeg",
+        F::Rotation => "rotationDeg",
+        F::FastAxis => "fastAxisDeg",
+        F::RetarderAzimuth => "retarderAzimuthDeg",
+        F::RetarderEllipticity => "retarderEllipticityDeg",
+        F::DepolarizationPower => "depolarizationPower",
+    }
+}
