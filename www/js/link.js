@@ -1,0 +1,144 @@
+/** Work and view as the configuration that a link holds, and back. Pure. */
+import { fullText } from "./format.js";
+import { noMeasurement, usualConvention } from "./state.js";
+
+/**
+ * @typedef {import("./types.js").Work} Work
+ * @typedef {import("./types.js").View} View
+ * @typedef {import("./types.js").Request} Request
+ * @typedef {import("./types.js").Parsed} Parsed
+ * @typedef {import("./types.js").ReadOptions} ReadOptions
+ * @typedef {{ v: number, [block: string]: any }} Configuration
+ */
+
+/** The blocks that the page itself shows. All others are only kept. */
+const SHOWN = new Set(["v", "app", "task", "label", "measurement", "examine", "view"]);
+
+/**
+ * @param {Work} work
+ * @param {View} view
+ * @param {Request} request the measured matrix as the engine gets it
+ * @param {boolean} textHolds whether the text says the same as the cells
+ * @param {string} app version of the engine
+ * @returns {Configuration}
+ */
+export function configurationOf(work, view, request, textHolds, app) {
+  const { measurement } = work;
+  return {
+    ...work.kept,
+    v: 1,
+    app,
+    task: view.task,
+    ...(measurement.label ? { label: measurement.label } : {}),
+    measurement: {
+      mueller: request.mueller,
+      normalised: request.normalised,
+      absolute: request.absolute,
+      convention: request.convention,
+      noise: request.noise,
+      ...(textHolds && measurement.text ? { text: measurement.text } : {}),
+      ...(measurement.example ? { example: true } : {}),
+    },
+    examine: work.examine,
+    view: { azimuthDeg: view.azimuthDeg, elevationDeg: view.elevationDeg },
+  };
+}
+
+/**
+ * @param {Configuration} configuration as the engine decoded and checked it
+ * @param {View} before
+ * @param {(text: string, options: ReadOptions) => Parsed} parse
+ * @returns {{ work: Work, view: View }}
+ */
+export function fromConfiguration(configuration, before, parse) {
+  /** @type {{ [block: string]: unknown }} */
+  const kept = {};
+  for (const [block, value] of Object.entries(configuration)) {
+    if (!SHOWN.has(block)) kept[block] = value;
+  }
+  const examine = configuration.examine ?? {};
+  const view = configuration.view ?? {};
+  return {
+    work: {
+      measurement: measurementOf(configuration, parse),
+      examine: { draws: examine.draws ?? 2000, seed: examine.seed ?? 1 },
+      kept,
+    },
+    view: {
+      task: configuration.task === "properties" ? "properties" : "realizability",
+      azimuthDeg: view.azimuthDeg ?? before.azimuthDeg,
+      elevationDeg: view.elevationDeg ?? before.elevationDeg,
+    },
+  };
+}
+
+/**
+ * @param {Configuration} configuration
+ * @param {(text: string, options: ReadOptions) => Parsed} parse
+ * @returns {import("./types.js").Measurement}
+ */
+function measurementOf(configuration, parse) {
+  const given = configuration.measurement;
+  if (!given || !Array.isArray(given.mueller)) return noMeasurement();
+  /** @type {number[]} */
+  const mueller = given.mueller;
+  const noise = given.noise ?? { kind: "none" };
+  const read = readAgain(given.text ?? "", mueller, parse);
+  const decimals = noise.kind === "rounding" ? noise.decimals : (read?.decimals ?? null);
+  const cells = mueller.map((value) => fullText(value, decimals));
+  return {
+    ...noMeasurement(),
+    cells,
+    text: read ? given.text : textOf(cells),
+    options: read?.options ?? {},
+    pick: read?.pick ?? 0,
+    decimals,
+    normalised: given.normalised ?? false,
+    absolute: given.absolute ?? false,
+    convention: { ...usualConvention(), ...given.convention },
+    noise: noiseChoice(noise),
+    example: given.example ?? false,
+    label: configuration.label ?? "",
+  };
+}
+
+/**
+ * Sixteen cells as a table.
+ * @param {string[]} cells
+ */
+export function textOf(cells) {
+  if (cells.every((cell) => cell === "")) return "";
+  return [0, 4, 8, 12].map((first) => cells.slice(first, first + 4).join("\t")).join("\n");
+}
+
+/**
+ * @param {any} noise
+ * @returns {import("./types.js").NoiseChoice}
+ */
+export function noiseChoice(noise) {
+  if (noise.kind === "none" || noise.kind === "rounding") return { kind: noise.kind, sigma: "", given: null };
+  if (noise.kind === "uniform") return { kind: "uniform", sigma: fullText(noise.sigma), given: null };
+  return { kind: "other", sigma: "", given: noise };
+}
+
+/**
+ * How the text has to be read to give exactly this matrix.
+ * @param {string} text
+ * @param {number[]} mueller
+ * @param {(text: string, options: ReadOptions) => Parsed} parse
+ */
+function readAgain(text, mueller, parse) {
+  if (text === "") return null;
+  /** @type {ReadOptions[]} */
+  const ways = [{}, { decimal: "point" }, { decimal: "comma" }];
+  for (const options of ways) {
+    try {
+      const { matrices } = parse(text, options);
+      const pick = matrices.findIndex((matrix) => matrix.mueller.every((value, index) => Object.is(value, mueller[index])));
+      if (pick >= 0) return { options, pick, decimals: matrices[pick]?.decimals ?? null };
+    } catch {
+      // This way of reading does not fit; the next may.
+    }
+  }
+  return null;
+}

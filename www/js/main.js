@@ -1,0 +1,503 @@
+/** Wiring: the one state object, what is computed from it, and the one place for errors. */
+import { ConventionPanel } from "./convention.js";
+import { byId, isTextField, make, repaint } from "./dom.js";
+import { ask, isDropped, quick, startEngine } from "./engine.js";
+import { fullText, place, readNumber } from "./format.js";
+import { Grid } from "./grid.js";
+import { configurationOf, fromConfiguration, textOf } from "./link.js";
+import { NoisePanel, noiseOf } from "./noise.js";
+import { PropertiesPanel } from "./panels/properties.js";
+import { RealizabilityPanel } from "./panels/realizability.js";
+import { linkIn, listen, writeClipboard } from "./paste.js";
+import { followTheme } from "./plots.js";
+import { ReadingPanel } from "./reading.js";
+import { Store, noMeasurement } from "./state.js";
+import { isSingleFile, loadExamples } from "./where.js";
+import { verdictOf } from "./words.js";
+
+/**
+ * @typedef {import("./types.js").Measurement} Measurement
+ * @typedef {import("./types.js").Request} Request
+ * @typedef {import("./types.js").Examination} Examination
+ * @typedef {import("./types.js").Example} Example
+ * @typedef {import("./types.js").Task} Task
+ * @typedef {import("./reading.js").ReadOutcome} ReadOutcome
+ */
+
+/** A fragment beyond this length is cut by some mail and chat programs. */
+const LONG_LINK = 2000;
+
+const store = new Store(render);
+/** The last examination and what it answers. @type {{ key: string, request: Request, result: Examination, pending: boolean } | null} */
+let answer = null;
+/** @type {{ text: string, options: string, outcome: ReadOutcome }} */
+let lastReading = { text: "", options: "", outcome: { parsed: null, error: null } };
+/** @type {Example[]} */
+let examples = [];
+let said = "";
+let isReady = false;
+
+/** @type {import("./types.js").FormatValue} */
+const format = (request) => quick.formatValue(request);
+
+const grid = new Grid(byId("grid"), "measured-heading", {
+  edit: (index, text, name) => editCell(index, text, name),
+  editing: () => store.endMerge(),
+});
+const reading = new ReadingPanel(byId("reading"), {
+  type: (text) => take(text, "the edit of the text", { merge: "text", options: store.work.measurement.options }),
+  typed: () => store.endMerge(),
+  reread: (options) => take(store.work.measurement.text, "the other reading", { options }),
+  pick: (pick) => take(store.work.measurement.text, "the choice of a matrix", { options: store.work.measurement.options, pick }),
+  order: (order) => change("the change of order", { convention: { ...store.work.measurement.convention, order } }),
+  normalised: (normalised) => change("the change of normalisation", { normalised }),
+  absolute: (absolute) => change("the change of unit", { absolute }),
+  clear: () => store.commit("clearing", { ...store.work, measurement: noMeasurement() }),
+});
+const noise = new NoisePanel(byId("noise"), (choice, name, merge) => change(name, { noise: choice }, merge ? { merge } : {}));
+const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
+const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell, failed: fail, format });
+const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell, failed: fail, format });
+
+listen({
+  matrix: (text) => take(text, "the paste", { fresh: true }),
+  link: (fragment) => openLink(fragment),
+  cell: (text) => {
+    if (!grid.walking) return false;
+    grid.fill(text);
+    return true;
+  },
+  copyCell: () => (grid.walking ? grid.current : null),
+  leaveEditor: () => grid.cancel(),
+});
+
+byId("undo").addEventListener("click", undo);
+byId("redo").addEventListener("click", redo);
+byId("copy-link").addEventListener("click", copyLink);
+for (const link of document.querySelectorAll("nav a[data-task]")) {
+  link.addEventListener("click", (event) => {
+    event.preventDefault();
+    const task = /** @type {HTMLElement} */ (link).dataset["task"];
+    store.setView({ task: task === "properties" ? "properties" : "realizability" });
+  });
+}
+byId("skip").addEventListener("click", (event) => {
+  // The fragment of the address belongs to links.
+  event.preventDefault();
+  byId("task").focus();
+});
+document.addEventListener("keydown", (event) => {
+  if (!(event.ctrlKey || event.metaKey) || event.altKey || isTextField(document.activeElement)) return;
+  const key = event.key.toLowerCase();
+  if (key === "z" && !event.shiftKey) undo();
+  else if (key === "y" || (key === "z" && event.shiftKey)) redo();
+  else return;
+  event.preventDefault();
+});
+addEventListener("hashchange", () => {
+  const fragment = linkIn(location.hash);
+  if (fragment && fragment !== store.fragment) openLink(fragment);
+});
+addEventListener("beforeunload", (event) => {
+  store.keep();
+  if (store.unsaved) event.preventDefault();
+});
+
+followTheme();
+start().catch(fail);
+
+async function start() {
+  const restored = store.restore(linkIn(location.hash) ?? "");
+  render();
+  const slow = setTimeout(() => tell("Loading the engine…"), 300);
+  try {
+    const [, loaded] = await Promise.all([startEngine(), loadExamples()]);
+    examples = loaded;
+  } finally {
+    clearTimeout(slow);
+  }
+  isReady = true;
+  byId("version").textContent = `Halfshade ${quick.engineInfo().version}`;
+  const fragment = linkIn(location.hash);
+  if (fragment && !restored) openLink(fragment);
+  else render();
+  document.documentElement.dataset["ready"] = "true";
+}
+
+/**
+ * Take over a text as the measured matrix.
+ * @param {string} text
+ * @param {string} name what it is called after "Undo"
+ * @param {{ fresh?: boolean, merge?: string, options?: import("./types.js").ReadOptions, pick?: number, example?: Example }} how
+ *   `fresh`: another measurement than before
+ */
+function take(text, name, { fresh = false, merge, options = {}, pick = 0, example } = {}) {
+  const before = store.work.measurement;
+  // What an example states does not hold for the person's own matrix.
+  const base = fresh && before.example ? noMeasurement() : before;
+  const { parsed } = read(text, options);
+  const matrix = parsed?.matrices[pick] ?? parsed?.matrices[0];
+  /** @type {Measurement} */
+  const measurement = {
+    ...base,
+    ...(fresh ? { label: "", story: "" } : {}),
+    ...(example ? { convention: noMeasurement().convention } : {}),
+    text,
+    options,
+    pick: matrix ? (parsed?.matrices.indexOf(matrix) ?? 0) : 0,
+    example: false,
+  };
+  if (matrix) {
+    measurement.cells = matrix.mueller.map((value) => fullText(value, matrix.decimals));
+    measurement.decimals = matrix.decimals;
+    if (fresh) measurement.normalised = matrix.mueller[0] === 1;
+    if (fresh && matrix.label) measurement.label = matrix.label.slice(0, 80);
+    if (measurement.noise.kind === "rounding" && matrix.decimals === null) measurement.noise = noMeasurement().noise;
+  } else {
+    // The old matrix stays in the grid until the text can be read.
+    Object.assign(measurement, { ...before, text, options });
+  }
+  if (example) {
+    measurement.example = true;
+    measurement.label = example.title;
+    measurement.story = example.story;
+    measurement.normalised = example.normalised;
+    measurement.absolute = example.absolute;
+    measurement.noise = { kind: example.noise.kind, sigma: example.noise.kind === "uniform" ? String(example.noise.sigma) : "", given: null };
+  }
+  hideProblem();
+  store.commit(name, { ...store.work, measurement }, { ...(merge ? { merge } : {}), safe: example !== undefined });
+}
+
+/**
+ * @param {string} name
+ * @param {Partial<Measurement>} part
+ * @param {{ merge?: string }} [how]
+ */
+function change(name, part, how = {}) {
+  store.commit(name, { ...store.work, measurement: { ...store.work.measurement, ...part } }, how);
+}
+
+/**
+ * @param {number} index
+ * @param {string} text
+ * @param {string} name
+ */
+function editCell(index, text, name) {
+  const { measurement } = store.work;
+  const cells = measurement.cells.with(index, text);
+  const numbers = cells.map(readNumber);
+  const whole = numbers.every((number) => number.error === null);
+  const decimals = whole ? Math.max(0, ...numbers.map((number) => number.decimals ?? 0)) : null;
+  change(`the edit of ${name}`, {
+    cells,
+    text: whole ? textOf(cells) : "",
+    options: {},
+    pick: 0,
+    decimals: decimals !== null && decimals <= 15 ? decimals : null,
+    example: false,
+    story: "",
+    label: measurement.example ? "" : measurement.label,
+  });
+}
+
+function useNearest() {
+  const nearest = answer?.result.nearest.mueller;
+  if (!nearest) return;
+  const { order } = store.work.measurement.convention;
+  /** @type {string[]} */
+  const cells = Array(16).fill("");
+  nearest.forEach((value, k) => {
+    cells[place(order, Math.floor(k / 4), k % 4)] = fullText(value);
+  });
+  change("the step to the nearest realizable matrix", { cells, text: textOf(cells), options: {}, pick: 0, decimals: null });
+  byId("task").focus();
+}
+
+/**
+ * @param {string} text
+ * @param {import("./types.js").ReadOptions} options
+ * @returns {ReadOutcome}
+ */
+function read(text, options) {
+  const key = JSON.stringify(options);
+  if (lastReading.text === text && lastReading.options === key) return lastReading.outcome;
+  /** @type {ReadOutcome} */
+  let outcome = { parsed: null, error: null };
+  if (isReady && text.trim() !== "") {
+    try {
+      outcome = { parsed: quick.parseMatrices(text, options), error: null };
+    } catch (error) {
+      outcome = { parsed: null, error: /** @type {Error} */ (error) };
+    }
+  }
+  if (isReady) lastReading = { text, options: key, outcome };
+  return outcome;
+}
+
+/**
+ * What the engine is asked of the present input, or what is missing.
+ * @param {ReadOutcome} outcome
+ * @returns {{ request: Request | null, waiting: string | null }}
+ */
+function requestNow(outcome) {
+  const { measurement, examine } = store.work;
+  if (outcome.error) return { request: null, waiting: "The text could not be read; the reason stands beside it." };
+  const numbers = measurement.cells.map(readNumber);
+  const empty = measurement.cells.filter((cell) => cell === "").length;
+  if (empty === 16) return { request: null, waiting: null };
+  if (empty > 0) return { request: null, waiting: `${empty} of the 16 elements ${empty === 1 ? "is" : "are"} still empty.` };
+  const mueller = numbers.map((number) => number.value);
+  if (!mueller.every((value) => value !== null)) return { request: null, waiting: "An element is not a number; the reason stands below the grid." };
+  const { normalised, absolute } = measurement;
+  return {
+    request: {
+      mueller: /** @type {number[]} */ (mueller),
+      normalised,
+      absolute,
+      convention: measurement.convention,
+      noise: noiseOf(measurement.noise, measurement.decimals).noise,
+      ...examine,
+    },
+    waiting: null,
+  };
+}
+
+/** Bring everything that is shown in line with the state. */
+function render() {
+  const { work, view } = store;
+  const { measurement } = work;
+  const outcome = read(measurement.text, measurement.options);
+  const filled = measurement.cells.some((cell) => cell !== "");
+  const { request, waiting } = requestNow(outcome);
+  if (isReady && request) compute(request);
+  else if (!filled && !outcome.error) answer = null;
+
+  grid.show(measurement.cells, measurement.convention.order);
+  reading.show(measurement, outcome, filled);
+  noise.show(measurement.noise, measurement.decimals, filled);
+  convention.show(measurement.convention);
+  showOrigin(measurement);
+  showExamples(measurement);
+  showHistory();
+  for (const link of document.querySelectorAll("nav a[data-task]")) {
+    if (/** @type {HTMLElement} */ (link).dataset["task"] === view.task) link.setAttribute("aria-current", "page");
+    else link.removeAttribute("aria-current");
+  }
+  byId("realizability-panel").hidden = view.task !== "realizability";
+  byId("properties-panel").hidden = view.task !== "properties";
+  showTask(request ? null : waiting);
+  store.keep();
+}
+
+/**
+ * @param {string | null} stale why the answer is not that of the present input
+ */
+function showTask(stale) {
+  const { work, view } = store;
+  const empty = byId("empty");
+  empty.hidden = answer !== null;
+  if (!answer) repaint(empty, firstWords(stale));
+  const note = byId("stale");
+  note.hidden = !(answer && stale);
+  note.textContent = answer && stale ? `${stale} What is shown below belongs to the last matrix that could be read.` : "";
+  byId("task").classList.toggle("is-stale", Boolean(answer && stale));
+  const shown = { work, view, result: answer?.result ?? null, request: answer?.request ?? null, pending: answer?.pending ?? false, stale, waiting: stale };
+  if (view.task === "properties") {
+    realizability.show({ ...shown, result: null, request: null });
+    properties.show(shown);
+  } else {
+    properties.show({ ...shown, result: null, request: null });
+    realizability.show(shown);
+  }
+  if (answer && !stale) {
+    const { title } = verdictOf(answer.result, answer.request, answer.pending, format);
+    document.title = `${title} · Halfshade`;
+    if (!answer.pending) tell(title);
+    requestAnimationFrame(() => performance.mark("halfshade-verdict"));
+  } else {
+    document.title = "Halfshade: Mueller matrices, checked and explained";
+  }
+}
+
+/** @param {string | null} waiting */
+function firstWords(waiting) {
+  return [
+    make("h1", { id: answer ? null : "task-heading", tabindex: "-1" }, waiting ? "Not a whole matrix yet" : "Paste a measured Mueller matrix"),
+    make("p", null, waiting ?? "Ctrl+V anywhere on this page. At once you see whether it can be physical, how sure that is, and what the element does to light."),
+    waiting ? null : make("p", { class: "mute" }, "No matrix at hand? Take one of the invented examples at the left."),
+  ];
+}
+
+/** @param {Request} request */
+function compute(request) {
+  const key = JSON.stringify(request);
+  if (answer?.key === key) return;
+  try {
+    answer = { key, request, result: quick.examine({ ...request, draws: 0 }), pending: true };
+  } catch (error) {
+    fail(error);
+    return;
+  }
+  ask("examine", [request], { channel: "examine" }).then(
+    (result) => {
+      if (answer?.key !== key) return;
+      answer = { key, request, result, pending: false };
+      render();
+    },
+    (error) => {
+      if (!isDropped(error)) fail(error);
+    },
+  );
+}
+
+/** @param {Measurement} measurement */
+function showOrigin({ example, label, story }) {
+  const origin = byId("origin");
+  origin.hidden = !example && label === "";
+  origin.classList.toggle("example", example);
+  repaint(origin, example ? [make("b", null, `Invented example: ${label}`), story ? ` ${story}` : null] : label);
+}
+
+/** @param {Measurement} measurement */
+function showExamples({ example, label }) {
+  if (examples.length === 0) return;
+  const select = make("select", { id: "example", "aria-label": "Invented examples" });
+  const none = make("option", { value: "" }, "Invented examples…");
+  none.selected = !example;
+  select.append(none);
+  examples.forEach((each, index) => {
+    const option = make("option", { value: String(index) }, each.title);
+    option.selected = example && each.title === label;
+    select.append(option);
+  });
+  select.addEventListener("change", () => {
+    const chosen = examples[Number(select.value)];
+    if (select.value !== "" && chosen) take(chosen.text, `the example “${chosen.title}”`, { fresh: true, example: chosen });
+  });
+  repaint(byId("examples"), select);
+}
+
+function showHistory() {
+  for (const [id, steps, word] of /** @type {const} */ ([
+    ["undo", store.past, "Undo"],
+    ["redo", store.future, "Redo"],
+  ])) {
+    const button = /** @type {HTMLButtonElement} */ (byId(id));
+    const name = steps.at(-1)?.name;
+    button.disabled = name === undefined;
+    button.title = name === undefined ? "" : `${word} ${name}`;
+  }
+}
+
+function undo() {
+  const name = store.undo();
+  if (name) tell(`Undone: ${name}.`);
+}
+
+function redo() {
+  const name = store.redo();
+  if (name) tell(`Done again: ${name}.`);
+}
+
+async function copyLink() {
+  const outcome = read(store.work.measurement.text, store.work.measurement.options);
+  const { request, waiting } = requestNow(outcome);
+  if (!request) {
+    tell(waiting ?? "There is nothing to link to yet.");
+    return;
+  }
+  try {
+    const fragment = quick.encodeLink(configurationOf(store.work, store.view, request, outcome.parsed !== null, quick.engineInfo().version));
+    const address = isSingleFile ? `#${fragment}\nHalfshade: open halfshade.html and paste this text, or put it behind the address of the page.` : `${location.href.split("#")[0]}#${fragment}`;
+    store.fragment = fragment;
+    store.markSafe();
+    try {
+      history.replaceState(null, "", `#${fragment}`);
+    } catch {
+      // A browser that forbids it loses only the address in its bar.
+    }
+    render();
+    const done = await writeClipboard(address);
+    if (done) tell(`Link copied, ${fragment.length} characters.${fragment.length > LONG_LINK ? " Some mail and chat programs cut it." : ""}`);
+    else offerText(address);
+  } catch (error) {
+    fail(error);
+  }
+}
+
+/** @param {string} text */
+function offerText(text) {
+  const field = make("textarea", { id: "link-text", readonly: true, rows: "3", "aria-label": "The link" });
+  field.value = text;
+  showBanner(["The browser did not allow the copy. Press Ctrl+C here: ", field], false);
+  field.focus();
+  field.select();
+}
+
+/** @param {string} fragment */
+function openLink(fragment) {
+  if (!isReady) return;
+  try {
+    const configuration = quick.decodeLink(fragment);
+    const { work, view } = fromConfiguration(configuration, store.view, (text, options) => quick.parseMatrices(text, options));
+    store.fragment = fragment;
+    store.view = view;
+    hideProblem();
+    store.commit("the opening of a link", work, { safe: true });
+    const by = typeof configuration.app === "string" ? configuration.app : "another version";
+    const kept = Object.keys(work.kept);
+    showBanner(
+      [
+        `Loaded from a link made with version ${by}.`,
+        kept.length > 0 ? ` It also holds ${kept.join(", ")}, which this version does not show but keeps.` : null,
+        " ",
+        make("button", { type: "button", id: "banner-undo", class: "inline", onclick: () => { hideBanner(); undo(); } }, "Undo"),
+      ],
+      true,
+    );
+  } catch (error) {
+    render();
+    fail(error);
+  }
+}
+
+/**
+ * @param {import("./dom.js").Child[]} children
+ * @param {boolean} closable
+ */
+function showBanner(children, closable) {
+  const banner = byId("banner");
+  banner.hidden = false;
+  repaint(banner, ...children, closable ? make("button", { type: "button", class: "inline", onclick: hideBanner }, "Close") : null);
+}
+
+function hideBanner() {
+  byId("banner").hidden = true;
+}
+
+function hideProblem() {
+  byId("problem").hidden = true;
+}
+
+/**
+ * Say something without taking the keyboard.
+ * @param {string} message
+ */
+function tell(message) {
+  if (message === said) return;
+  said = message;
+  byId("status").textContent = message;
+}
+
+/**
+ * The one place where errors are shown.
+ * @param {unknown} error
+ */
+function fail(error) {
+  const problem = byId("problem");
+  const message = error instanceof Error ? error.message : String(error);
+  problem.hidden = false;
+  repaint(problem, make("b", null, "That did not work: "), message, " ", make("button", { type: "button", class: "inline", onclick: hideProblem }, "Close"));
+  tell(message);
+}

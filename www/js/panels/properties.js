@@ -1,0 +1,363 @@
+/** The Properties task: what the element does to light, each figure with its uncertainty. */
+import { DEFINITIONS, GROUPS, METHODS } from "../definitions.js";
+import { fold, make, repaint, sentence } from "../dom.js";
+import { fixed, fullText, significant } from "../format.js";
+import { copyButton, matrixTable } from "../matrix-view.js";
+import { DRAWINGS, Plot } from "../plots.js";
+import { figureText, summaryOf, verdictOf } from "../words.js";
+import { definitionNodes } from "./definition.js";
+
+/**
+ * @typedef {import("../types.js").Shown} Shown
+ * @typedef {import("../types.js").Examination} Examination
+ * @typedef {import("../types.js").Figure} Figure
+ * @typedef {import("../types.js").Polar} Polar
+ *
+ * @typedef {object} PropertiesActions
+ * @property {(view: Partial<import("../types.js").View>) => void} view
+ * @property {(message: string) => void} tell
+ * @property {(error: unknown) => void} failed
+ * @property {import("../types.js").FormatValue} format
+ */
+
+/** Named views of the sphere: azimuth and elevation of what faces the reader. @type {[string, number, number][]} */
+const VIEWS = [
+  ["Oblique", 30, 20],
+  ["S1 in front", 0, 0],
+  ["S2 in front", 90, 0],
+  ["S3 on top", 0, 90],
+];
+
+/** Reasons that hold for the whole table are said once, above it. */
+const GENERAL = [/^no noise was stated/, /^no draws were asked/, /^a first-order standard error/];
+
+export class PropertiesPanel {
+  /**
+   * @param {HTMLElement} root
+   * @param {PropertiesActions} actions
+   */
+  constructor(root, actions) {
+    this.actions = actions;
+    /** @type {Set<string>} */
+    this.open = new Set();
+    /** @type {Shown | null} */
+    this.shown = null;
+    this.sphere = new Plot({ name: "sphere", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["sphere"]), maxWidth: 380, title: "Poincaré sphere", failed: actions.failed });
+    this.ellipses = new Plot({ name: "ellipses", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["ellipses"]), maxWidth: 900, title: "Polarization ellipses", failed: actions.failed });
+    this.head = make("div", { class: "verdict" });
+    this.figures = make("div", { id: "figures" });
+    this.below = make("div", null);
+    this.azimuth = this.slider("azimuth", -180, 180, "azimuthDeg");
+    this.elevation = this.slider("elevation", -90, 90, "elevationDeg");
+    this.turnable(this.sphere.canvas);
+    this.sphere.canvas.after(
+      make(
+        "div",
+        { class: "turn", role: "group", "aria-label": "Turn the sphere" },
+        this.azimuth.row,
+        this.elevation.row,
+        make(
+          "span",
+          { class: "tools" },
+          VIEWS.map(([name, azimuthDeg, elevationDeg]) => make("button", { type: "button", class: "small", onclick: () => actions.view({ azimuthDeg, elevationDeg }) }, name)),
+        ),
+      ),
+    );
+    this.body = make(
+      "div",
+      { class: "properties-body" },
+      make("div", { class: "columns wide-left" }, this.figures, make("div", null, make("h2", null, "Poincaré sphere"), this.sphere.element)),
+      make("h2", null, "Six inputs and what each becomes"),
+      this.ellipses.element,
+      this.below,
+    );
+    root.append(this.head, this.body);
+  }
+
+  /** @param {Shown} shown */
+  show(shown) {
+    this.shown = shown;
+    const { result, request, pending, view } = shown;
+    this.body.hidden = !result;
+    if (!result || !request) {
+      repaint(this.head);
+      this.sphere.show(null);
+      this.ellipses.show(null);
+      return;
+    }
+    const { format } = this.actions;
+    const verdict = verdictOf(result, request, pending, format);
+    const summary = summaryOf(result, format);
+    repaint(
+      this.head,
+      make("p", { class: "kicker" }, "What does it do to light?"),
+      make("h1", { id: "task-heading", tabindex: "-1" }, "Properties"),
+      summary.length > 0 ? make("p", null, sentence(summary)) : null,
+      make("p", { class: "fine" }, `Realizability: ${verdict.title}. Figures marked “nearest” are of the nearest realizable matrix, all others of the measured one.`),
+    );
+    this.paintFigures(result, request.noise.kind !== "none", pending);
+    this.turn(view);
+    this.ellipses.show({ mueller: request.mueller, convention: request.convention });
+    repaint(this.below, this.decompositions(result));
+  }
+
+  /**
+   * Show the sphere from this side.
+   * @param {import("../types.js").View} view
+   */
+  turn({ azimuthDeg, elevationDeg }) {
+    this.azimuth.set(azimuthDeg);
+    this.elevation.set(elevationDeg);
+    const request = this.shown?.request;
+    if (request) this.sphere.show({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg });
+  }
+
+  /**
+   * @param {Examination} result
+   * @param {boolean} noisy
+   * @param {boolean} pending
+   */
+  paintFigures(result, noisy, pending) {
+    const { format, tell } = this.actions;
+    const about = !noisy
+      ? "No noise is stated, so no figure has an uncertainty."
+      : pending
+        ? "Uncertainties are being calculated…"
+        : "In brackets the standard uncertainty (k = 1) of the last digits, first order. ";
+    const figures = /** @type {Record<string, Figure>} */ (result.figures);
+    repaint(
+      this.figures,
+      make("p", { class: "fine about" }, about, " ", copyButton("copy-figures", "all figures", () => figuresAsText(result), tell)),
+      GROUPS.map((group) => [
+        make("h2", null, group.title),
+        make("table", { class: "figures" }, make("tbody", null, group.names.flatMap((name) => this.figureRows(name, figures[name], format)))),
+      ]),
+    );
+  }
+
+  /**
+   * @param {string} name
+   * @param {Figure | undefined} figure
+   * @param {import("../types.js").FormatValue} format
+   */
+  figureRows(name, figure, format) {
+    const definition = DEFINITIONS[name];
+    if (!definition || !figure) return [];
+    const id = `define-${name}`;
+    const more = make("tr", { id, class: "definition" }, make("td", { colspan: "3" }, definitionNodes(name, DEFINITIONS)));
+    more.hidden = !this.open.has(name);
+    const toggle = make(
+      "button",
+      {
+        type: "button",
+        id: `about-${name}`,
+        class: "inline name",
+        "aria-expanded": String(!more.hidden),
+        "aria-controls": id,
+        onclick: () => {
+          more.hidden = !more.hidden;
+          if (more.hidden) this.open.delete(name);
+          else this.open.add(name);
+          toggle.setAttribute("aria-expanded", String(!more.hidden));
+        },
+      },
+      definition.title,
+    );
+    const text = figureText(figure, format);
+    const value = text === null ? make("td", { class: "number mute" }, "not determined") : make("td", { class: "number" }, text, make("span", { class: "unit" }, definition.unit));
+    return [make("tr", { class: text === null ? "undetermined" : null }, make("th", { scope: "row" }, toggle), value, make("td", { class: "mute note" }, noteOf(name, figure))), more];
+  }
+
+  /** @param {Examination} result */
+  decompositions({ decompositions }) {
+    const { format, tell } = this.actions;
+    const { polarForward, polarReverse, isotropic, spectral, reason } = decompositions;
+    if (!polarForward && !polarReverse && !isotropic && spectral.length === 0) {
+      return [make("h2", null, "Decompositions"), make("p", { class: "mute" }, reason ?? "Not determined.")];
+    }
+    return [
+      make("h2", null, "Pure element with isotropic depolarization"),
+      isotropic
+        ? [
+            make(
+              "p",
+              null,
+              "α = ",
+              make("b", { class: "number" }, figureText(isotropic.alpha, format) ?? "not determined"),
+              ". Constant stray light looks exactly the same: no single matrix can tell it from depolarization. ",
+              isotropic.pValue !== null && isotropic.chiSquare !== null
+                ? `The fit leaves χ² = ${significant(isotropic.chiSquare, 3)} for ${isotropic.degreesOfFreedom} degrees of freedom (p = ${significant(isotropic.pValue)}): ${isotropic.pValue >= 0.05 ? "one α is enough." : "one α is not enough."}`
+                : null,
+              isotropic.reason && !GENERAL.some((general) => general.test(isotropic.reason ?? "")) ? ` ${capital(isotropic.reason)}.` : null,
+            ),
+            isotropic.mueller ? fold("isotropic-matrix", "The fitted matrix and its Jones matrix", make("div", { class: "matrices" }, matrixTable("isotropic", "Fitted matrix", isotropic.mueller, tell), isotropic.jones ? jonesTable("Jones matrix of the pure part", isotropic.jones) : null)) : null,
+          ]
+        : make("p", { class: "mute" }, reason ?? "Not determined."),
+      make("h2", null, "Polar decompositions"),
+      this.polar("forward", "Depolarizer after: light meets diattenuator, retarder, depolarizer", ["depolarizer", "retarder", "diattenuator"], polarForward, reason),
+      this.polar("reverse", "Depolarizer before: light meets depolarizer, retarder, diattenuator", ["diattenuator", "retarder", "depolarizer"], polarReverse, reason),
+      fold("about-polar", "What they are", definitionNodes("polar", METHODS)),
+      make("h2", null, "Spectral decomposition"),
+      spectral.length > 0
+        ? [
+            make("p", null, `A sum of ${spectral.length} pure element${spectral.length === 1 ? "" : "s"}, with the weights `, make("span", { class: "number" }, spectral.map((part) => fixed(part.weight, 4)).join(", ")), "."),
+            spectral.map((part, index) =>
+              fold(
+                `spectral-${index}`,
+                `Part ${index + 1}, weight ${fixed(part.weight, 4)}`,
+                make("div", { class: "matrices" }, matrixTable(`spectral-${index}`, "Mueller matrix", part.mueller, tell), jonesTable("Jones matrix", part.jones)),
+              ),
+            ),
+          ]
+        : make("p", { class: "mute" }, reason ?? "Not determined."),
+      fold("about-spectral", "What it is", definitionNodes("spectral", METHODS)),
+    ];
+  }
+
+  /**
+   * @param {string} id
+   * @param {string} title
+   * @param {("depolarizer" | "retarder" | "diattenuator")[]} order of the factors, as they are multiplied
+   * @param {Polar | null} polar
+   * @param {string | null} reason
+   */
+  polar(id, title, order, polar, reason) {
+    return fold(
+      `polar-${id}`,
+      title,
+      polar
+        ? [
+            polar.reason ? make("p", { class: "fine" }, `${capital(polar.reason)}.`) : null,
+            make(
+              "div",
+              { class: "matrices" },
+              order.map((factor) => {
+                const matrix = polar[factor];
+                return matrix
+                  ? matrixTable(`${id}-${factor}`, capital(factor), matrix, this.actions.tell)
+                  : make("figure", { class: "matrix" }, make("figcaption", null, capital(factor)), make("p", { class: "mute" }, "not determined"));
+              }),
+            ),
+            make("p", { class: "fine" }, `Their product is the nearest realizable matrix over m00${polar.residual === null ? "" : `, to ${significant(polar.residual, 1)}`}.`),
+          ]
+        : make("p", { class: "mute" }, reason ?? "Not determined."),
+    );
+  }
+
+  /**
+   * @param {string} name
+   * @param {number} low
+   * @param {number} high
+   * @param {"azimuthDeg" | "elevationDeg"} key
+   */
+  slider(name, low, high, key) {
+    const input = make("input", { type: "range", id: `view-${name}`, min: low, max: high, step: 1 });
+    const read = make("output", { for: `view-${name}`, class: "number" });
+    input.addEventListener("input", () => this.actions.view({ [key]: Number(input.value) }));
+    const row = make("span", { class: "slider" }, make("label", { for: `view-${name}` }, name), input, read);
+    return {
+      row,
+      /** @param {number} value */
+      set(value) {
+        if (Number(input.value) !== Math.round(value)) input.value = String(Math.round(value));
+        read.textContent = `${fixed(Math.round(value), 0)}°`;
+      },
+    };
+  }
+
+  /**
+   * Drag and arrow keys, beside the sliders.
+   * @param {HTMLCanvasElement} canvas
+   */
+  turnable(canvas) {
+    canvas.tabIndex = 0;
+    /** @param {number} azimuth @param {number} elevation */
+    const by = (azimuth, elevation) => {
+      const view = this.shown?.view;
+      if (!view) return;
+      const turned = ((((view.azimuthDeg + azimuth + 180) % 360) + 360) % 360) - 180;
+      this.actions.view({ azimuthDeg: turned, elevationDeg: Math.max(-90, Math.min(90, view.elevationDeg + elevation)) });
+    };
+    /** @type {{ x: number, y: number } | null} */
+    let last = null;
+    canvas.addEventListener("pointerdown", (event) => {
+      if (event.button !== 0) return;
+      last = { x: event.clientX, y: event.clientY };
+      canvas.setPointerCapture(event.pointerId);
+    });
+    canvas.addEventListener("pointermove", (event) => {
+      if (!last) return;
+      const scale = 180 / canvas.clientWidth;
+      // The front follows the pointer. A finger turns sideways only; up and down scrolls.
+      by((last.x - event.clientX) * scale, event.pointerType === "touch" ? 0 : (event.clientY - last.y) * scale);
+      last = { x: event.clientX, y: event.clientY };
+    });
+    const end = () => {
+      last = null;
+    };
+    canvas.addEventListener("pointerup", end);
+    canvas.addEventListener("pointercancel", end);
+    canvas.addEventListener("keydown", (event) => {
+      const step = event.shiftKey ? 1 : 5;
+      /** @type {{ [key: string]: [number, number] }} */
+      const moves = { ArrowLeft: [step, 0], ArrowRight: [-step, 0], ArrowUp: [0, -step], ArrowDown: [0, step] };
+      const move = moves[event.key];
+      if (!move || event.ctrlKey || event.metaKey || event.altKey) return;
+      event.preventDefault();
+      by(...move);
+    });
+  }
+}
+
+/**
+ * @param {string} name
+ * @param {Figure} figure
+ */
+function noteOf(name, figure) {
+  const notes = [];
+  const reason = figure.reason ?? "";
+  if (reason !== "" && !GENERAL.some((general) => general.test(reason))) notes.push(reason);
+  if (name === "isotropicAlpha") notes.push("constant stray light would look the same");
+  if (["depolarizationIndex", "diattenuation", "polarizance"].includes(name) && figure.value !== null && figure.value > 1) {
+    notes.push(figure.se !== null && figure.value - 1 < 2 * figure.se ? "above 1 within noise" : "above 1, which nothing physical reaches");
+  }
+  if (["rotationDeg", "circularDiattenuation", "circularPolarizance"].includes(name) && figure.value !== null && figure.se !== null && Math.abs(figure.value) < 2 * figure.se) {
+    notes.push("not different from 0");
+  }
+  if (["retardanceDeg", "linearRetardanceDeg", "fastAxisDeg", "rotationDeg", "retarderAzimuthDeg", "retarderEllipticityDeg", "depolarizationPower", "entropy"].includes(name) && figure.value !== null) notes.push("nearest");
+  return notes.join("; ");
+}
+
+/** @param {Examination} result */
+function figuresAsText({ figures }) {
+  const lines = Object.entries(figures).map(([name, figure]) =>
+    [name, figure.value === null ? "" : fullText(figure.value), figure.se === null ? "" : fullText(figure.se), DEFINITIONS[name]?.unit === "°" ? "deg" : "", figure.reason ?? ""].join("\t"),
+  );
+  return ["figure\tvalue\tstandard uncertainty\tunit\tnote", ...lines].join("\n");
+}
+
+/**
+ * @param {string} title
+ * @param {[number, number][]} jones
+ */
+function jonesTable(title, jones) {
+  return make(
+    "figure",
+    { class: "matrix" },
+    make("figcaption", null, title),
+    make("table", { class: "numbers", "aria-label": title }, make("tbody", null, [jones.slice(0, 2), jones.slice(2, 4)].map((row) => make("tr", null, row.map(([real, imaginary]) => make("td", null, complex(real, imaginary))))))),
+  );
+}
+
+/**
+ * @param {number} real
+ * @param {number} imaginary
+ */
+function complex(real, imaginary) {
+  return `${fixed(real, 4).includes("e") ? "0.0000" : fixed(real, 4)} ${imaginary < 0 ? "−" : "+"} ${Math.abs(imaginary).toFixed(4)}i`;
+}
+
+/** @param {string} text */
+function capital(text) {
+  return text.charAt(0).toUpperCase() + text.slice(1);
+}

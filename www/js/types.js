@@ -1,0 +1,77 @@
+/**
+ * The shapes that the page and the engine exchange, as JSDoc types.
+ *
+ * @typedef {"realizability" | "properties"} Task
+ * @typedef {"light" | "dark" | "print"} Theme
+ *
+ * @typedef {Required<import("../halfshade.js").Convention>} Convention
+ * @typedef {import("../halfshade.js").Noise} Noise
+ * @typedef {Required<import("../halfshade.js").ExamineRequest> & { convention: Convention }} Request
+ * @typedef {import("../halfshade.js").Figure} Figure
+ * @typedef {import("../halfshade.js").Realizability} Realizability
+ * @typedef {import("../halfshade.js").Examination} Examination
+ * @typedef {Examination["nearest"]} Nearest
+ * @typedef {import("../halfshade.js").PolarDecomposition} Polar
+ * @typedef {import("../halfshade.js").Reading} Reading
+ * @typedef {import("../halfshade.js").MatricesRead} Parsed
+ * @typedef {import("../halfshade.js").ReadOptions} ReadOptions
+ *
+ * @typedef {object} Place where something is wrong: a field, or a spot of a text
+ * @property {number} [line]
+ * @property {number} [character]
+ * @property {number} [length]
+ * @property {string} [field]
+ *
+ * @typedef {object} Example
+ * @property {string} file
+ * @property {string} title
+ * @property {string} story
+ * @property {string} text
+ * @property {boolean} normalised
+ * @property {boolean} absolute
+ * @property {Noise} noise
+ *
+ * @typedef {object} NoiseChoice what the person chose; σ is kept as typed
+ * @property {"none" | "rounding" | "uniform" | "other"} kind
+ * @property {string} sigma
+ * @property {object | null} given a statement from a link that this version cannot use
+ *
+ * @typedef {object} Measurement the measured matrix as the person gave it
+ * @property {string[]} cells sixteen texts, laid out as `convention.order` says
+ * @property {string} text the text that the cells were read from
+ * @property {ReadOptions} options
+ * @property {number} pick which matrix of the text
+ * @property {number | null} decimals printed resolution
+ * @property {boolean} normalised
+ * @property {boolean} absolute
+ * @property {NoiseChoice} noise
+ * @property {Convention} convention
+ * @property {boolean} example
+ * @property {string} label
+ * @property {string} story
+ *
+ * @typedef {object} Work everything that undo covers; never changed in place
+ * @property {Measurement} measurement
+ * @property {{ draws: number, seed: number }} examine
+ * @property {{ [block: string]: unknown }} kept blocks of a link that this page does not use
+ *
+ * @typedef {object} View what undo leaves alone
+ * @property {Task} task
+ * @property {number} azimuthDeg
+ * @property {number} elevationDeg
+ *
+ * @typedef {object} Shown what the panels get to show
+ * @property {Work} work
+ * @property {View} view
+ * @property {Examination | null} result
+ * @property {Request | null} request the request that `result` answers
+ * @property {boolean} pending whether the slow part is still to come
+ * @property {string | null} stale why the result is not that of the present input
+ * @property {string | null} waiting what is missing before there can be a result
+ *
+ * @typedef {string | { number: string } | { mute: string }} Part a piece of a sentence
+ *
+ * @typedef {{ text: string, plain: string }} Formatted
+ * @typedef {(request: { value: number, se: number | null }) => Formatted} FormatValue
+ */
+export {};
