@@ -297,7 +297,7 @@ function showTask(stale) {
   const { work, view } = store;
   const empty = byId("empty");
   empty.hidden = answer !== null;
-  if (!answer) repaint(empty, firstWords(stale));
+  repaint(empty, answer ? null : firstWords(stale));
   const note = byId("stale");
   note.hidden = !(answer && stale);
   note.textContent = answer && stale ? `${stale} What is shown below belongs to the last matrix that could be read.` : "";
@@ -323,7 +323,7 @@ function showTask(stale) {
 /** @param {string | null} waiting */
 function firstWords(waiting) {
   return [
-    make("h1", { id: answer ? null : "task-heading", tabindex: "-1" }, waiting ? "Not a whole matrix yet" : "Paste a measured Mueller matrix"),
+    make("h1", { id: "task-heading", tabindex: "-1" }, waiting ? "Not a whole matrix yet" : "Paste a measured Mueller matrix"),
     make("p", null, waiting ?? "Ctrl+V anywhere on this page. At once you see whether it can be physical, how sure that is, and what the element does to light."),
     waiting ? null : make("p", { class: "mute" }, "No matrix at hand? Take one of the invented examples at the left."),
   ];
