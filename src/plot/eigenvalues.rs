@@ -188,7 +188,7 @@ struct Layout {
 }
 
 impl Layout {
-    fn new<DB: DrawingBackend>(pen: &Pen<'_, DB>, marks: &[Mark; 4]) -> Result<Self> {
+    fn new(pen: &Pen<'_>, marks: &[Mark; 4]) -> Result<Self> {
         let font = if pen.width < NARROW { 12.0 } else { 13.0 };
         let (top, axis) = (8.0, crisp(pen.height - 48.0));
         let (left, right) = (crisp(10.0), crisp(pen.width - 11.0));
@@ -304,11 +304,7 @@ fn own_scale(mark: &Mark, (from, to): (f64, f64)) -> Scale {
     }
 }
 
-fn draw_ground<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
-    layout: &Layout,
-    theme: &Theme,
-) -> Result<()> {
+fn draw_ground(pen: &Pen<'_>, layout: &Layout, theme: &Theme) -> Result<()> {
     let (left, right) = (layout.main.from, layout.main.at(0.0));
     let (top, bottom) = (layout.top, layout.axis);
     pen.rectangle((left, top), (right, bottom), faint(theme.hatch, 0.25))?;
@@ -331,12 +327,7 @@ fn draw_ground<DB: DrawingBackend>(
     pen.line(&[(zero, top), (zero, bottom)], ink(theme.ink), 1.4)
 }
 
-fn draw_axes<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
-    layout: &Layout,
-    theme: &Theme,
-    has_errors: bool,
-) -> Result<()> {
+fn draw_axes(pen: &Pen<'_>, layout: &Layout, theme: &Theme, has_errors: bool) -> Result<()> {
     let mute = ink(theme.mute);
     let y = layout.axis;
     for scale in [Some(&layout.main), layout.leading.as_ref()]
@@ -372,8 +363,8 @@ fn draw_axes<DB: DrawingBackend>(
     )
 }
 
-fn draw_mark<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
+fn draw_mark(
+    pen: &Pen<'_>,
     layout: &Layout,
     (k, mark): (usize, &Mark),
     theme: &Theme,

@@ -226,8 +226,8 @@ fn radius(cell: f64) -> f64 {
     ((cell - 34.0) / 4.0).clamp(8.0, 24.0)
 }
 
-fn draw_pair<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
+fn draw_pair(
+    pen: &Pen<'_>,
     corner: Point,
     cell: (f64, f64),
     pair: &EllipsePair,
@@ -279,7 +279,7 @@ fn degree_text(degree: f64) -> String {
     }
 }
 
-fn draw_foot<DB: DrawingBackend>(pen: &Pen<'_, DB>, theme: &Theme) -> Result<()> {
+fn draw_foot(pen: &Pen<'_>, theme: &Theme) -> Result<()> {
     let text = [
         "Seen facing the source; below each pair the degree of polarization of the output",
         "Facing the source; number: degree of polarization",
@@ -294,13 +294,7 @@ fn draw_foot<DB: DrawingBackend>(pen: &Pen<'_, DB>, theme: &Theme) -> Result<()>
     Ok(())
 }
 
-fn draw_state<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
-    centre: Point,
-    r: f64,
-    state: &State,
-    theme: &Theme,
-) -> Result<()> {
+fn draw_state(pen: &Pen<'_>, centre: Point, r: f64, state: &State, theme: &Theme) -> Result<()> {
     let accent = ink(theme.accent);
     match *state {
         State::Dark => {
@@ -328,8 +322,8 @@ fn draw_state<DB: DrawingBackend>(
 }
 
 /// Heads on the ellipse that point the way the field turns.
-fn draw_sense<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
+fn draw_sense(
+    pen: &Pen<'_>,
     (x, y): Point,
     (long, short): (f64, f64),
     azimuth: f64,

@@ -27,8 +27,63 @@ pub(super) enum Align {
     Middle,
 }
 
-pub(super) struct Pen<'a, DB: DrawingBackend> {
-    area: &'a DrawingArea<DB, Shift>,
+/// What a pen asks of a drawing area, in units. Behind this the plots don't depend on
+/// the back end, so each is compiled once and not once a back end.
+trait Area {
+    fn size(&self) -> (u32, u32);
+    fn ground(&self, colour: RGBAColor) -> Result<()>;
+    fn path(&self, points: Vec<(i32, i32)>, style: ShapeStyle) -> Result<()>;
+    fn dashes(&self, points: Vec<(i32, i32)>, dash: (i32, i32), style: ShapeStyle) -> Result<()>;
+    fn polygon(&self, points: Vec<(i32, i32)>, style: ShapeStyle) -> Result<()>;
+    fn rectangle(&self, corners: [(i32, i32); 2], style: ShapeStyle) -> Result<()>;
+    fn circle(&self, centre: (i32, i32), radius: i32, style: ShapeStyle) -> Result<()>;
+    fn text(&self, text: &str, style: &TextStyle, at: (i32, i32)) -> Result<()>;
+    fn text_width(&self, text: &str, style: &TextStyle) -> Result<u32>;
+}
+
+impl<DB: DrawingBackend> Area for DrawingArea<DB, Shift> {
+    fn size(&self) -> (u32, u32) {
+        self.dim_in_pixel()
+    }
+
+    fn ground(&self, colour: RGBAColor) -> Result<()> {
+        self.fill(&colour).map_err(failed)
+    }
+
+    fn path(&self, points: Vec<(i32, i32)>, style: ShapeStyle) -> Result<()> {
+        self.draw(&PathElement::new(points, style)).map_err(failed)
+    }
+
+    fn dashes(&self, points: Vec<(i32, i32)>, dash: (i32, i32), style: ShapeStyle) -> Result<()> {
+        self.draw(&DashedPathElement::new(points, dash.0, dash.1, style))
+            .map_err(failed)
+    }
+
+    fn polygon(&self, points: Vec<(i32, i32)>, style: ShapeStyle) -> Result<()> {
+        self.draw(&Polygon::new(points, style)).map_err(failed)
+    }
+
+    fn rectangle(&self, corners: [(i32, i32); 2], style: ShapeStyle) -> Result<()> {
+        self.draw(&Rectangle::new(corners, style)).map_err(failed)
+    }
+
+    fn circle(&self, centre: (i32, i32), radius: i32, style: ShapeStyle) -> Result<()> {
+        self.draw(&Circle::new(centre, radius, style))
+            .map_err(failed)
+    }
+
+    fn text(&self, text: &str, style: &TextStyle, at: (i32, i32)) -> Result<()> {
+        self.draw_text(text, style, at).map_err(failed)
+    }
+
+    fn text_width(&self, text: &str, style: &TextStyle) -> Result<u32> {
+        let (width, _) = self.estimate_text_size(text, style).map_err(failed)?;
+        Ok(width)
+    }
+}
+
+pub(super) struct Pen<'a> {
+    area: &'a dyn Area,
     pub width: f64,
     pub height: f64,
 }
@@ -49,9 +104,9 @@ pub(super) fn crisp(v: f64) -> f64 {
     v.floor() + 0.5
 }
 
-impl<'a, DB: DrawingBackend> Pen<'a, DB> {
-    pub(super) fn new(area: &'a DrawingArea<DB, Shift>) -> Result<Self> {
-        let (width, height) = area.dim_in_pixel();
+impl<'a> Pen<'a> {
+    pub(super) fn new<DB: DrawingBackend>(area: &'a DrawingArea<DB, Shift>) -> Result<Self> {
+        let (width, height) = area.size();
         let (width, height) = (f64::from(width) / UNITS, f64::from(height) / UNITS);
         if width < 40.0 || height < 40.0 {
             return Err(Error::new(
@@ -67,7 +122,7 @@ impl<'a, DB: DrawingBackend> Pen<'a, DB> {
     }
 
     pub(super) fn ground(&self, rgb: Rgb) -> Result<()> {
-        self.area.fill(&ink(rgb)).map_err(failed)
+        self.area.ground(ink(rgb))
     }
 
     pub(super) fn line(&self, points: &[Point], colour: RGBAColor, width: f64) -> Result<()> {
@@ -75,9 +130,7 @@ impl<'a, DB: DrawingBackend> Pen<'a, DB> {
             return Ok(());
         }
         let points: Vec<_> = points.iter().map(|&p| units(p)).collect();
-        self.area
-            .draw(&PathElement::new(points, stroke(colour, width)))
-            .map_err(failed)
+        self.area.path(points, stroke(colour, width))
     }
 
     /// A line of dashes, `dash` and `gap` in pixels.
@@ -93,13 +146,7 @@ impl<'a, DB: DrawingBackend> Pen<'a, DB> {
         }
         let points: Vec<_> = points.iter().map(|&p| units(p)).collect();
         self.area
-            .draw(&DashedPathElement::new(
-                points,
-                length(dash),
-                length(gap),
-                stroke(colour, width),
-            ))
-            .map_err(failed)
+            .dashes(points, (length(dash), length(gap)), stroke(colour, width))
     }
 
     pub(super) fn fill(&self, points: &[Point], colour: RGBAColor) -> Result<()> {
@@ -107,21 +154,17 @@ impl<'a, DB: DrawingBackend> Pen<'a, DB> {
             return Ok(());
         }
         let points: Vec<_> = points.iter().map(|&p| units(p)).collect();
-        self.area
-            .draw(&Polygon::new(points, colour.filled()))
-            .map_err(failed)
+        self.area.polygon(points, colour.filled())
     }
 
     pub(super) fn rectangle(&self, from: Point, to: Point, colour: RGBAColor) -> Result<()> {
         self.area
-            .draw(&Rectangle::new([units(from), units(to)], colour.filled()))
-            .map_err(failed)
+            .rectangle([units(from), units(to)], colour.filled())
     }
 
     pub(super) fn disc(&self, centre: Point, radius: f64, colour: RGBAColor) -> Result<()> {
         self.area
-            .draw(&Circle::new(units(centre), length(radius), colour.filled()))
-            .map_err(failed)
+            .circle(units(centre), length(radius), colour.filled())
     }
 
     pub(super) fn ring(
@@ -132,12 +175,7 @@ impl<'a, DB: DrawingBackend> Pen<'a, DB> {
         width: f64,
     ) -> Result<()> {
         self.area
-            .draw(&Circle::new(
-                units(centre),
-                length(radius),
-                stroke(colour, width),
-            ))
-            .map_err(failed)
+            .circle(units(centre), length(radius), stroke(colour, width))
     }
 
     /// One line of text; `at.1` is the middle of its capitals and digits.
@@ -158,13 +196,12 @@ impl<'a, DB: DrawingBackend> Pen<'a, DB> {
         let style = TextStyle::from(font(size))
             .color(&colour)
             .pos(Pos::new(anchor, VPos::Center));
-        self.area.draw_text(text, &style, at).map_err(failed)
+        self.area.text(text, &style, at)
     }
 
     pub(super) fn text_width(&self, text: &str, size: f64) -> Result<f64> {
         let style = TextStyle::from(font(size));
-        let (width, _) = self.area.estimate_text_size(text, &style).map_err(failed)?;
-        Ok(f64::from(width) / UNITS)
+        Ok(f64::from(self.area.text_width(text, &style)?) / UNITS)
     }
 }
 

@@ -329,7 +329,7 @@ struct Scene {
 }
 
 impl Scene {
-    fn new<DB: DrawingBackend>(pen: &Pen<'_, DB>, plot: &SpherePlot, map: &Map) -> Self {
+    fn new(pen: &Pen<'_>, plot: &SpherePlot, map: &Map) -> Self {
         let grid = map.grid();
         let farthest = grid
             .iter()
@@ -380,8 +380,8 @@ fn pieces(places: impl Iterator<Item = Option<(Point, bool)>>) -> Vec<(Vec<Point
     pieces
 }
 
-fn draw_pieces<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
+fn draw_pieces(
+    pen: &Pen<'_>,
     pieces: &[(Vec<Point>, bool)],
     (colour, strength): (Rgb, f64),
 ) -> Result<()> {
@@ -395,7 +395,7 @@ fn draw_pieces<DB: DrawingBackend>(
     Ok(())
 }
 
-fn draw_ball<DB: DrawingBackend>(pen: &Pen<'_, DB>, scene: &Scene, theme: &Theme) -> Result<()> {
+fn draw_ball(pen: &Pen<'_>, scene: &Scene, theme: &Theme) -> Result<()> {
     pen.disc(scene.centre, scene.radius, ink(theme.panel))?;
     pen.disc(scene.centre, scene.radius, faint(theme.accent, 0.05))?;
     let circle = |f: &dyn Fn(f64) -> [f64; 3]| {
@@ -420,12 +420,7 @@ fn draw_ball<DB: DrawingBackend>(pen: &Pen<'_, DB>, scene: &Scene, theme: &Theme
 
 /// The image of all fully polarized inputs: its silhouette, filled, and the images of
 /// the three great circles through the standard states.
-fn draw_image<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
-    scene: &Scene,
-    map: &Map,
-    theme: &Theme,
-) -> Result<()> {
+fn draw_image(pen: &Pen<'_>, scene: &Scene, map: &Map, theme: &Theme) -> Result<()> {
     let places: Vec<Point> = scene
         .grid
         .iter()
@@ -505,8 +500,8 @@ fn hull(mut points: Vec<Point>) -> Vec<Point> {
     chain
 }
 
-fn draw_states<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
+fn draw_states(
+    pen: &Pen<'_>,
     scene: &Scene,
     plot: &SpherePlot,
     map: &Map,
@@ -548,8 +543,8 @@ fn draw_states<DB: DrawingBackend>(
 const LABEL: f64 = 12.0;
 
 /// The names of the inputs, each beside its mark where it covers least.
-fn draw_labels<DB: DrawingBackend>(
-    pen: &Pen<'_, DB>,
+fn draw_labels(
+    pen: &Pen<'_>,
     scene: &Scene,
     labels: &[String; 6],
     inputs: &[(Point, f64); 6],
@@ -626,7 +621,7 @@ fn overlap(a: &(Point, Point), b: &(Point, Point)) -> bool {
     a.0.0 < b.1.0 && b.0.0 < a.1.0 && a.0.1 < b.1.1 && b.0.1 < a.1.1
 }
 
-fn draw_legend<DB: DrawingBackend>(pen: &Pen<'_, DB>, scene: &Scene, theme: &Theme) -> Result<()> {
+fn draw_legend(pen: &Pen<'_>, scene: &Scene, theme: &Theme) -> Result<()> {
     let y = pen.height - LEGEND + 12.0;
     let mute = ink(theme.mute);
     let names = ["input", "output"];
