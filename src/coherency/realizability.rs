@@ -1,9 +1,10 @@
-use nalgebra::Vector4;
+use nalgebra::{Matrix4, Vector4};
+use num_complex::Complex64;
 
 use super::nearest::Nearest;
 use super::significance::{Significance, eigenvalue_error, explaining_sigma, significance};
 use crate::error::Result;
-use crate::linalg::{HermitianEigen, smallest_eigenpair};
+use crate::linalg::{HermitianEigen, hermitian_eigen};
 use crate::mueller::Mueller;
 use crate::noise::{Measurement, Noise};
 use crate::stats::{printed_decimals, rounding_sigma};
@@ -181,22 +182,25 @@ pub fn stokes_margin(mueller: &Mueller) -> Result<Option<f64>> {
     let Some(m) = mueller.normalised().filter(|_| mueller.m00() > 0.0) else {
         return Ok(None);
     };
-    let metric = nalgebra::Matrix4::from_diagonal(&Vector4::new(1.0, -1.0, -1.0, -1.0));
+    let metric = Matrix4::from_diagonal(&Vector4::new(1.0, -1.0, -1.0, -1.0));
     let form = m.matrix().transpose() * metric * m.matrix();
-    let at = |mu: f64| smallest_eigenpair(&(form - metric * mu));
-    let start = at(0.0)?;
-    let mut best = start.value;
+    let at = |mu: f64| -> Result<(f64, f64)> {
+        let eigen = hermitian_eigen(&(form - metric * mu).map(Complex64::from))?;
+        let weights = eigen.vectors[3].map(|entry| entry.norm_sqr());
+        Ok((eigen.values[3], 1.0 - 2.0 * weights[0]))
+    };
+    let (start, _) = at(0.0)?;
+    let mut best = start;
     // The function is concave and below `form00 - μ`, so its maximum lies in here;
-    // `-vᵀ G v` is its slope.
-    let (mut low, mut high) = (0.0, (form[(0, 0)] - start.value).max(0.0));
+    // its slope is `-v† G v`, which for a unit vector is `1 - 2 |v0|²`.
+    let (mut low, mut high) = (0.0, (form[(0, 0)] - start).max(0.0));
     for _ in 0..200 {
         let middle = 0.5 * (low + high);
         if middle <= low || middle >= high {
             break;
         }
-        let pair = at(middle)?;
-        best = best.max(pair.value);
-        let slope = -pair.vector.dot(&(metric * pair.vector));
+        let (value, slope) = at(middle)?;
+        best = best.max(value);
         if slope > 0.0 {
             low = middle;
         } else {

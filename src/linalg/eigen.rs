@@ -13,15 +13,6 @@ pub struct HermitianEigen {
     pub vectors: [Vector4<Complex64>; 4],
 }
 
-/// The smallest eigenvalue of a real symmetric matrix, with its unit vector.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub struct SmallestEigenpair {
-    /// The eigenvalue.
-    pub value: f64,
-    /// The unit eigenvector.
-    pub vector: Vector4<f64>,
-}
-
 /// The eigenvalues and eigenvectors of a Hermitian matrix.
 ///
 /// # Errors
@@ -48,23 +39,6 @@ pub fn hermitian_eigen(matrix: &Matrix4<Complex64>) -> Result<HermitianEigen> {
     Ok(HermitianEigen {
         values: order.map(|k| eigen.eigenvalues[k] * scale),
         vectors: order.map(|k| eigen.eigenvectors.column(k).into_owned()),
-    })
-}
-
-/// The smallest eigenvalue of a real symmetric matrix and its unit eigenvector.
-///
-/// # Errors
-/// `not-finite`, `no-convergence`.
-pub fn smallest_eigenpair(matrix: &Matrix4<f64>) -> Result<SmallestEigenpair> {
-    if matrix.iter().any(|value| !value.is_finite()) {
-        return Err(not_finite());
-    }
-    let eigen = SymmetricEigen::try_new(*matrix, f64::EPSILON, MOST_ITERATIONS)
-        .ok_or_else(no_convergence)?;
-    let at = eigen.eigenvalues.imin();
-    Ok(SmallestEigenpair {
-        value: eigen.eigenvalues[at],
-        vector: eigen.eigenvectors.column(at).into_owned(),
     })
 }
 

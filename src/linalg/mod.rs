@@ -6,7 +6,7 @@
 mod eigen;
 mod svd;
 
-pub use eigen::{HermitianEigen, SmallestEigenpair, hermitian_eigen, smallest_eigenpair};
+pub use eigen::{HermitianEigen, hermitian_eigen};
 pub use svd::{Svd3, svd3};
 
 use crate::error::Error;

@@ -1,5 +1,5 @@
-use base64::Engine;
-use base64::engine::general_purpose::URL_SAFE_NO_PAD;
+use base64ct::{Base64UrlUnpadded, Encoding};
+use crc::{CRC_32_ISO_HDLC, Crc, NoTable};
 use miniz_oxide::deflate::compress_to_vec;
 use miniz_oxide::inflate::{TINFLStatus, decompress_to_vec_with_limit};
 
@@ -33,7 +33,7 @@ pub fn seal(content: &str) -> Result<String> {
     let packed = compress_to_vec(content.as_bytes(), 9);
     let fragment = format!(
         "{VERSION}.{}.{}",
-        URL_SAFE_NO_PAD.encode(&packed),
+        Base64UrlUnpadded::encode_string(&packed),
         checksum(&packed)
     );
     if fragment.len() > LONGEST_FRAGMENT {
@@ -93,7 +93,7 @@ pub fn open(fragment: &str) -> Result<String> {
     if parts.next().is_some() || sum.len() > CHECKSUM_DIGITS {
         return Err(damaged());
     }
-    let packed = URL_SAFE_NO_PAD.decode(payload).map_err(|_| damaged())?;
+    let packed = Base64UrlUnpadded::decode_vec(payload).map_err(|_| damaged())?;
     if checksum(&packed) != sum {
         return Err(damaged());
     }
@@ -108,7 +108,8 @@ pub fn open(fragment: &str) -> Result<String> {
 }
 
 fn checksum(bytes: &[u8]) -> String {
-    let sum = crc32fast::hash(bytes);
+    // A link is short, and a table would be 16 kB of every download.
+    let sum = Crc::<u32, NoTable>::new(&CRC_32_ISO_HDLC).checksum(bytes);
     (0..CHECKSUM_DIGITS)
         .map(|k| {
             // 35 bits, the highest five first.

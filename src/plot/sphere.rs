@@ -471,7 +471,7 @@ fn size(points: &[Point]) -> (f64, f64) {
 
 /// The convex hull (monotone chain, Andrew 1979).
 fn hull(mut points: Vec<Point>) -> Vec<Point> {
-    points.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.total_cmp(&b.1)));
+    points.sort_unstable_by(|a, b| a.0.total_cmp(&b.0).then(a.1.total_cmp(&b.1)));
     points.dedup();
     if points.len() < 3 {
         return points;

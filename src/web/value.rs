@@ -83,7 +83,12 @@ fn number_of(number: f64) -> Option<Number> {
     if whole && !(number == 0.0 && number.is_sign_negative()) {
         return Some(Number::from(number as i64));
     }
-    Number::from_f64(number)
+    if !number.is_finite() {
+        return None;
+    }
+    // The shortest decimal that reads back as the same bits. `Number::from_f64` would
+    // bring a second printer with tables of its own.
+    format!("{number:?}").parse().ok()
 }
 
 /// To JavaScript: fresh plain objects.
