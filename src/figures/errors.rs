@@ -49,8 +49,9 @@ impl FigureTable {
 
 const NO_NOISE: &str = "no noise was stated";
 const NOT_ASKED: &str = "no draws were asked for";
-const NEAR_ZERO: &str = "closer to zero than three standard errors: noise alone makes such a length, so read it as an upper limit";
-const NEAR_EIGENVALUES: &str = "neighbouring eigenvalues agree within three standard errors, where there is no first-order error";
+const NEAR_ZERO: &str = "within three standard errors of 0: read it as an upper limit";
+const NEAR_EIGENVALUES: &str =
+    "two eigenvalues lie within three standard errors, so there is no first-order error";
 const WIDE_ANGLE: &str = "the noise leaves more than half of the period open";
 const NOT_SMOOTH: &str =
     "not determined for a slightly different matrix, so there is no first-order error";

@@ -56,8 +56,8 @@ const reading = new ReadingPanel(byId("reading"), {
 });
 const noise = new NoisePanel(byId("noise"), (choice, name, merge) => change(name, { noise: choice }, merge ? { merge } : {}));
 const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
-const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell, failed: fail, format });
-const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell, failed: fail, format });
+const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell: (message) => tell(message), failed: fail, format });
+const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell: (message) => tell(message), failed: fail, format });
 
 listen({
   matrix: (text) => take(text, "the paste", { fresh: true }),
@@ -167,6 +167,11 @@ function take(text, name, { fresh = false, merge, options = {}, pick = 0, exampl
   }
   hideProblem();
   store.commit(name, { ...store.work, measurement }, { ...(merge ? { merge } : {}), safe: example !== undefined });
+}
+
+/** @param {Example} example */
+function takeExample(example) {
+  take(example.text, `the example “${example.title}”`, { fresh: true, example });
 }
 
 /**
@@ -313,7 +318,7 @@ function showTask(stale) {
   if (answer && !stale) {
     const { title } = verdictOf(answer.result, answer.request, answer.pending, format);
     document.title = `${title} · Halfshade`;
-    if (!answer.pending) tell(title);
+    if (!answer.pending) tell(title, true);
     requestAnimationFrame(() => performance.mark("halfshade-verdict"));
   } else {
     document.title = "Halfshade: Mueller matrices, checked and explained";
@@ -325,7 +330,12 @@ function firstWords(waiting) {
   return [
     make("h1", { id: "task-heading", tabindex: "-1" }, waiting ? "Not a whole matrix yet" : "Paste a measured Mueller matrix"),
     make("p", null, waiting ?? "Ctrl+V anywhere on this page. At once you see whether it can be physical, how sure that is, and what the element does to light."),
-    waiting ? null : make("p", { class: "mute" }, "No matrix at hand? Take one of the invented examples at the left."),
+    waiting || examples.length === 0
+      ? null
+      : [
+          make("h2", null, "No matrix at hand? Invented measurements of a small film workshop"),
+          make("ul", { class: "choices" }, examples.map((each) => make("li", null, make("button", { type: "button", class: "inline", onclick: () => takeExample(each) }, each.title)))),
+        ],
   ];
 }
 
@@ -356,7 +366,7 @@ function showOrigin({ example, label, story }) {
   const origin = byId("origin");
   origin.hidden = !example && label === "";
   origin.classList.toggle("example", example);
-  repaint(origin, example ? [make("b", null, `Invented example: ${label}`), story ? ` ${story}` : null] : label);
+  repaint(origin, example ? [make("b", null, `Invented example: ${label}.`), story ? ` ${story}` : null] : label);
 }
 
 /** @param {Measurement} measurement */
@@ -373,7 +383,7 @@ function showExamples({ example, label }) {
   });
   select.addEventListener("change", () => {
     const chosen = examples[Number(select.value)];
-    if (select.value !== "" && chosen) take(chosen.text, `the example “${chosen.title}”`, { fresh: true, example: chosen });
+    if (select.value !== "" && chosen) takeExample(chosen);
   });
   repaint(byId("examples"), select);
 }
@@ -483,11 +493,14 @@ function hideProblem() {
 /**
  * Say something without taking the keyboard.
  * @param {string} message
+ * @param {boolean} [isShown] whether a wide page shows it anyhow
  */
-function tell(message) {
+function tell(message, isShown = false) {
   if (message === said) return;
   said = message;
-  byId("status").textContent = message;
+  const status = byId("status");
+  status.textContent = message;
+  status.classList.toggle("shown-below", isShown);
 }
 
 /**
