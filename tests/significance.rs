@@ -179,6 +179,18 @@ fn verdicts_without_and_with_noise() {
 }
 
 #[test]
+fn zeros_and_ones_are_not_taken_for_rounded_numbers() {
+    let air_with_a_sign = diagonal([1.0, 1.0, 1.0, -1.0]);
+    let found = examine(&measurement(air_with_a_sign, false, Noise::None), Some(1)).unwrap();
+    assert_eq!(found.realizability.rounding_decimals, None);
+    assert!(!found.realizability.consistent_with_rounding);
+    // Counts of a detector are whole numbers and were rounded to them.
+    let counts = diagonal([30_000.0, 20_001.0, 20_002.0, 20_003.0]);
+    let found = examine(&measurement(counts, false, Noise::None), None).unwrap();
+    assert_eq!(found.realizability.rounding_decimals, Some(0));
+}
+
+#[test]
 fn same_seed_same_digits() {
     let measured = noisy(
         &elements::rotator(0.3).unwrap(),

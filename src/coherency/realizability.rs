@@ -107,7 +107,9 @@ pub fn realizability(
     };
     let rounding_decimals = match *measurement.noise() {
         Noise::Rounding { decimals } => Some(decimals),
-        _ => printed_decimals(&mueller.row_major()),
+        // A matrix of zeros and ones was hardly rounded to whole numbers.
+        _ => printed_decimals(&mueller.row_major())
+            .filter(|&decimals| rounding_sigma(decimals) <= 0.03 * mueller.m00().abs()),
     };
     let consistent_with_rounding = realizable
         || match (rounding_decimals, nearest) {
