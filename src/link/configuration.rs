@@ -10,6 +10,10 @@ pub const SCHEMA_VERSION: u32 = 1;
 const LONGEST_LABEL: usize = 80;
 const LONGEST_TEXT: usize = 200_000;
 const DEEPEST: usize = 8;
+const MOST_MEMBERS: usize = 100;
+
+/// Means something else than a name to JavaScript.
+const FORBIDDEN: &str = "__proto__";
 
 /// The blocks of a configuration that this version understands. Others are kept as
 /// they are.
@@ -67,6 +71,7 @@ fn check(configuration: &Value) -> Result<()> {
         .flatten()
         .map(|(name, _)| name.as_str())
         .collect();
+    few(&names, "configuration")?;
     let blocks = Fields::of(configuration, "", &names)?;
     match blocks.number("v")? {
         Some(1.0) => {}
@@ -109,15 +114,28 @@ fn check(configuration: &Value) -> Result<()> {
             .flatten()
             .map(|(name, _)| name.as_str())
             .collect();
+        few(&names, "view")?;
         let view = Fields::of(view, "view", &names)?;
         for name in names {
             view.number(name)?;
         }
     }
-    for name in names.iter().filter(|name| !known_blocks().contains(name)) {
+    for name in names {
         if let Some(block) = blocks.get(name) {
-            bounded(block, name, 0)?;
+            bounded(block, name)?;
         }
+    }
+    Ok(())
+}
+
+/// Members that are all allowed, but not without bounds.
+fn few(names: &[&str], path: &str) -> Result<()> {
+    if names.len() > MOST_MEMBERS {
+        return Err(Error::new(
+            "bad-request",
+            format!("There are more than {MOST_MEMBERS} names here."),
+        )
+        .at_field(path));
     }
     Ok(())
 }
@@ -228,7 +246,11 @@ fn noise(measurement: &Fields) -> Result<()> {
 fn is_matrix(value: &Value) -> bool {
     value
         .as_array()
-        .is_some_and(|items| items.len() == 16 && items.iter().all(Value::is_number))
+        .is_some_and(|items| items.len() == 16 && items.iter().all(is_finite))
+}
+
+fn is_finite(value: &Value) -> bool {
+    value.as_f64().is_some_and(f64::is_finite)
 }
 
 /// Without control characters and those that turn the direction of writing.
@@ -242,22 +264,32 @@ fn plain_label(label: &str) -> String {
         .collect()
 }
 
-/// An unknown block is kept, but not without bounds.
-fn bounded(block: &Value, path: &str, depth: usize) -> Result<()> {
-    let refuse = |sentence: &str| Err(Error::new("bad-request", sentence).at_field(path));
-    if path.ends_with("__proto__") {
+/// A block that is kept, but not without bounds. A stack, and no path for each
+/// value: names may be long and many.
+fn bounded(block: &Value, name: &str) -> Result<()> {
+    let refuse = |sentence: &str| {
+        let shown: String = name.chars().take(LONGEST_LABEL).collect();
+        Err(Error::new("bad-request", sentence).at_field(shown))
+    };
+    if name == FORBIDDEN {
         return refuse("This name is not allowed.");
     }
-    if depth > DEEPEST {
-        return refuse("This block is nested too deeply.");
+    let mut waiting = vec![(block, 0)];
+    while let Some((value, depth)) = waiting.pop() {
+        if depth > DEEPEST {
+            return refuse("This block is nested too deeply.");
+        }
+        match value {
+            Value::Array(items) => waiting.extend(items.iter().map(|item| (item, depth + 1))),
+            Value::Object(map) if map.contains_key(FORBIDDEN) => {
+                return refuse("A name in this block is not allowed: __proto__.");
+            }
+            Value::Object(map) => waiting.extend(map.values().map(|item| (item, depth + 1))),
+            Value::Number(_) if !is_finite(value) => {
+                return refuse("A number in this block is larger than a double can hold.");
+            }
+            _ => {}
+        }
     }
-    match block {
-        Value::Array(items) => items
-            .iter()
-            .try_for_each(|item| bounded(item, path, depth + 1)),
-        Value::Object(map) => map
-            .iter()
-            .try_for_each(|(key, item)| bounded(item, &format!("{path}.{key}"), depth + 1)),
-        _ => Ok(()),
-    }
+    Ok(())
 }

@@ -48,16 +48,13 @@ pub fn seal(content: &str) -> Result<String> {
 /// `link-empty`, `link-not-ours`, `link-newer`, `link-too-large`, `link-truncated`,
 /// `link-damaged`.
 pub fn open(fragment: &str) -> Result<String> {
+    let fragment = fragment
+        .split_once('#')
+        .map_or(fragment, |(_, behind)| behind);
     if fragment.len() > LONGEST_FRAGMENT {
         return Err(too_large());
     }
-    let fragment = fragment.rsplit('#').next().unwrap_or_default();
-    let fragment: String = fragment
-        .chars()
-        .filter(|c| {
-            !c.is_whitespace() && !matches!(c, '\u{200b}'..='\u{200d}' | '\u{2060}' | '\u{feff}')
-        })
-        .collect();
+    let fragment = cleaned(fragment);
     if fragment.is_empty() {
         return Err(Error::new(
             "link-empty",
@@ -68,16 +65,17 @@ pub fn open(fragment: &str) -> Result<String> {
     let version = parts.next().unwrap_or_default();
     let number = version
         .strip_prefix('v')
+        .filter(|digits| digits.bytes().all(|digit| digit.is_ascii_digit()))
         .and_then(|digits| digits.parse::<u32>().ok());
     match number {
-        Some(1) if version == VERSION => {}
+        _ if version == VERSION => {}
         Some(number) if number > 1 => {
             return Err(Error::new(
                 "link-newer",
                 "This link was made by a newer version of Halfshade than this page.",
             ));
         }
-        _ if VERSION.starts_with(version) => return Err(truncated()),
+        _ if fragment == "v" => return Err(truncated()),
         _ => {
             return Err(Error::new(
                 "link-not-ours",
@@ -105,6 +103,54 @@ pub fn open(fragment: &str) -> Result<String> {
         }
     })?;
     String::from_utf8(content).map_err(|_| damaged())
+}
+
+/// Without what mail and chat programs add: white space, marks of quotation,
+/// characters of no width, percent signs, and the end of the sentence.
+fn cleaned(fragment: &str) -> String {
+    let visible = |c: &char| {
+        !c.is_whitespace()
+            && !matches!(
+                c,
+                '>' | '\u{200b}'..='\u{200f}' | '\u{2060}' | '\u{feff}' | '\u{ad}'
+            )
+    };
+    let mut clean: String = fragment.chars().filter(visible).collect();
+    if clean.contains('%')
+        && let Ok(decoded) = String::from_utf8(percent_decoded(clean.as_bytes()))
+    {
+        let behind = decoded.strip_prefix('#').unwrap_or(&decoded);
+        clean = behind.chars().filter(visible).collect();
+    }
+    let end = clean
+        .trim_end_matches(|c: char| !c.is_ascii_alphanumeric())
+        .len();
+    clean.truncate(end);
+    clean
+}
+
+/// Once; what is no percent encoding stays (RFC 3986, section 2.1).
+fn percent_decoded(bytes: &[u8]) -> Vec<u8> {
+    let hex = |byte: u8| char::from(byte).to_digit(16);
+    let mut out = Vec::with_capacity(bytes.len());
+    let mut rest = bytes;
+    while let [first, behind @ ..] = rest {
+        let pair = match behind {
+            [high, low, ..] if *first == b'%' => hex(*high).zip(hex(*low)),
+            _ => None,
+        };
+        match pair.and_then(|(high, low)| u8::try_from(16 * high + low).ok()) {
+            Some(byte) => {
+                out.push(byte);
+                rest = &behind[2..];
+            }
+            None => {
+                out.push(*first);
+                rest = behind;
+            }
+        }
+    }
+    out
 }
 
 fn checksum(bytes: &[u8]) -> String {

@@ -51,6 +51,11 @@ pub struct NumberProblem {
 }
 
 impl NumberProblem {
+    pub(super) const NOT_A_NUMBER: Self = Self {
+        code: "bad-number",
+        what: "is not a number",
+    };
+
     /// As an error about `token`.
     pub(super) fn error(&self, token: &str) -> Error {
         let shown: String = token.chars().take(24).collect();

@@ -1,225 +1,285 @@
 //! Lines of numbers with a delimiter.
 
-use super::number::{DecimalMark, parse_number};
-use super::source::{Source, visible};
-use super::{
-    Attempt, Block, Delimiter, Form, Placed, ReadOptions, ReadingDescription, Row, assemble,
-};
-use crate::error::Error;
+use super::assembly::{Assembly, Block, Placed, Row};
+use super::number::{DecimalMark, NumberProblem, PrintedNumber, parse_number};
+use super::source::{Source, is_blank, label, visible};
+use super::{Attempt, Delimiter, Form, ReadOptions, ReadingDescription};
 
-/// A field of a line, trimmed, and where it stands.
-struct Field {
-    text: String,
-    start: usize,
-    length: usize,
+pub(super) fn attempts(source: &Source, options: &ReadOptions) -> impl Iterator<Item = Attempt> {
+    dialects(source, options)
+        .into_iter()
+        .filter_map(|dialect| Reader { source, dialect }.read())
 }
 
-pub(super) fn attempts(source: &Source, options: &ReadOptions) -> Vec<Attempt> {
-    let mut attempts = Vec::new();
-    for decimal in [DecimalMark::Point, DecimalMark::Comma] {
-        for delimiter in [
-            Delimiter::Tab,
-            Delimiter::Semicolon,
-            Delimiter::Comma,
-            Delimiter::Space,
-        ] {
-            let settled = options.decimal.is_none_or(|wanted| wanted == decimal)
-                && options.delimiter.is_none_or(|wanted| wanted == delimiter);
-            if !settled || !applies(source, delimiter) {
-                continue;
-            }
-            for grouped in [false, true] {
-                if grouped && !may_group(source, decimal, delimiter) {
-                    continue;
-                }
-                attempts.extend(attempt(source, decimal, delimiter, grouped));
-            }
-        }
-    }
-    attempts
-}
-
-fn applies(source: &Source, delimiter: Delimiter) -> bool {
-    let mark = match delimiter {
-        Delimiter::Tab => '\t',
-        Delimiter::Semicolon => ';',
-        Delimiter::Comma => ',',
-        Delimiter::Space => return true,
-    };
-    source.lines.iter().flatten().any(|&c| c == mark)
-}
-
-/// Points group thousands only where a number shows both marks: `0.123` alone never
-/// means 123.
-fn may_group(source: &Source, decimal: DecimalMark, delimiter: Delimiter) -> bool {
-    let present = |mark| source.lines.iter().flatten().any(|&c| c == mark);
-    match decimal {
-        DecimalMark::Point => delimiter != Delimiter::Comma && present(','),
-        DecimalMark::Comma => delimiter != Delimiter::Comma && present('.') && present(','),
-    }
-}
-
-/// `None` where there is not one number.
-fn attempt(
-    source: &Source,
+#[derive(Clone, Copy)]
+struct Dialect {
     decimal: DecimalMark,
     delimiter: Delimiter,
+    /// Whether thousands are grouped.
     grouped: bool,
-) -> Option<Attempt> {
-    let mut blocks: Vec<Block> = Vec::new();
-    let mut open = false;
-    let mut label = None;
-    let mut header_row_count = 0;
-    for (k, line) in source.lines.iter().enumerate() {
-        let fields = split(line, delimiter, decimal);
-        if let Some(comment) = &source.comments[k]
-            && fields.is_empty()
-        {
-            label = Some(comment.clone());
-            open = false;
-            continue;
-        }
-        if fields.is_empty() {
-            open = false;
-            continue;
-        }
-        match row(&fields, k + 1, line.len(), decimal, grouped) {
-            Line::Text => {
-                header_row_count += usize::from(blocks.is_empty());
-                label = Some(visible(line).trim().trim_end_matches(':').to_owned());
-                open = false;
-            }
-            Line::Row(row) => {
-                if !open {
-                    blocks.push(Block {
-                        rows: Vec::new(),
-                        label: label.take(),
+}
+
+/// What may be meant, the likelier first: elements of a thousand and more are rare.
+fn dialects(source: &Source, options: &ReadOptions) -> Vec<Dialect> {
+    let [tabs, semicolons, commas, points] = ['\t', ';', ',', '.'].map(|c| source.contains(c));
+    let mut dialects = Vec::new();
+    for grouped in [false, true] {
+        for decimal in [DecimalMark::Point, DecimalMark::Comma] {
+            for (delimiter, present) in [
+                (Delimiter::Tab, tabs),
+                (Delimiter::Semicolon, semicolons),
+                (Delimiter::Comma, commas),
+                (Delimiter::Space, true),
+            ] {
+                let settled = options
+                    .delimiter
+                    .map_or(present, |wanted| wanted == delimiter)
+                    && options
+                        .decimal
+                        .map_or(commas || decimal == DecimalMark::Point, |wanted| {
+                            wanted == decimal
+                        });
+                // Points group thousands only where a number shows both marks:
+                // `0.123` alone never means 123.
+                let may_group = delimiter != Delimiter::Comma
+                    && commas
+                    && (decimal == DecimalMark::Point || points);
+                if settled && (may_group || !grouped) {
+                    dialects.push(Dialect {
+                        decimal,
+                        delimiter,
+                        grouped,
                     });
-                    open = true;
-                }
-                if let Some(block) = blocks.last_mut() {
-                    block.rows.push(row);
                 }
             }
         }
     }
-    if blocks.is_empty() {
-        return None;
-    }
-    let assembled = assemble(blocks);
-    Some(Attempt {
-        reading: ReadingDescription {
-            form: Form::Table,
-            decimal,
-            grouped,
-            delimiter: Some(delimiter),
-            header_row_count,
-        },
-        matrices: assembled.matrices,
-        numbers: assembled.numbers,
-        refusals: assembled.refusals,
-        notes: assembled.notes,
-    })
+    dialects
+}
+
+/// A field of a line, trimmed.
+struct Field {
+    start: usize,
+    end: usize,
+    number: Result<PrintedNumber, NumberProblem>,
+    looks_numeric: bool,
 }
 
 enum Line {
+    Blank,
     /// A header or a name.
     Text,
     Row(Row),
 }
 
-fn row(fields: &[Field], line: usize, length: usize, decimal: DecimalMark, grouped: bool) -> Line {
-    let numbers: Vec<_> = fields
-        .iter()
-        .map(|field| {
-            parse_number(&field.text, decimal, grouped)
-                .map(|number| Placed {
-                    number,
-                    line,
-                    character: field.start + 1,
-                    length: field.length.max(1),
-                })
-                .map_err(|problem| {
-                    problem
-                        .error(&field.text)
-                        .at_text(line, field.start + 1, field.length.max(1))
-                })
-        })
-        .collect();
-    let good = numbers.iter().filter(|number| number.is_ok()).count();
-    if good == 0 && !fields.iter().any(|field| looks_numeric(&field.text)) {
-        return Line::Text;
-    }
-    // A word before the numbers names the row.
-    let labelled = numbers.len() > 1
-        && good + 1 == numbers.len()
-        && numbers[0].is_err()
-        && !looks_numeric(&fields[0].text);
-    let label = labelled.then(|| fields[0].text.clone());
-    let numbers: std::result::Result<Vec<Placed>, Error> =
-        numbers.into_iter().skip(usize::from(labelled)).collect();
-    Line::Row(Row {
-        numbers,
-        label,
-        line,
-        length: length.max(1),
-    })
+struct Reader<'a> {
+    source: &'a Source,
+    dialect: Dialect,
 }
 
-fn looks_numeric(text: &str) -> bool {
-    text.trim_start_matches(['-', '+', '.', ','])
-        .starts_with(|c: char| c.is_ascii_digit())
-}
-
-/// The fields of a line, without empty ones at its end.
-fn split(line: &[char], delimiter: Delimiter, decimal: DecimalMark) -> Vec<Field> {
-    let mut fields = Vec::new();
-    let mut start = 0;
-    let mut quoted = false;
-    for k in 0..=line.len() {
-        let at_end = k == line.len();
-        if !at_end && line[k] == '"' {
-            quoted = !quoted;
-        }
-        let cut = at_end
-            || (!quoted
-                && match delimiter {
-                    Delimiter::Tab => line[k] == '\t',
-                    Delimiter::Semicolon => line[k] == ';',
-                    Delimiter::Comma => {
-                        line[k] == ','
-                            && (decimal == DecimalMark::Point
-                                || line.get(k + 1).is_none_or(|next| next.is_whitespace()))
+impl Reader<'_> {
+    /// `None` where there is not one number.
+    fn read(&self) -> Option<Attempt> {
+        let mut blocks: Vec<Block> = Vec::new();
+        let mut fields = Vec::new();
+        let mut open = false;
+        let mut name = None;
+        let mut header_row_count = 0;
+        for k in 0..self.source.line_count() {
+            self.split(k, &mut fields);
+            match self.line(k, &fields) {
+                Line::Blank => {
+                    open = false;
+                    if self.source.has_comment(k) {
+                        name = self.source.comment(k).or(name);
                     }
-                    Delimiter::Space => line[k].is_whitespace(),
-                });
-        if cut {
-            let field = trimmed(line, start, k);
-            if delimiter != Delimiter::Space || !field.text.is_empty() {
-                fields.push(field);
+                }
+                Line::Text => {
+                    open = false;
+                    header_row_count += usize::from(blocks.is_empty());
+                    if !self.names_columns(&fields) {
+                        name = label(self.source.line(k)).or(name);
+                    }
+                }
+                Line::Row(row) => {
+                    if !open {
+                        blocks.push(Block {
+                            label: name.take(),
+                            ..Block::default()
+                        });
+                        open = true;
+                    }
+                    if let Some(block) = blocks.last_mut() {
+                        block.rows.push(row);
+                    }
+                }
             }
-            start = k + 1;
+        }
+        if blocks.is_empty() {
+            return None;
+        }
+        Some(Attempt {
+            reading: ReadingDescription {
+                form: Form::Table,
+                decimal: self.dialect.decimal,
+                grouped: self.dialect.grouped,
+                delimiter: Some(self.dialect.delimiter),
+                header_row_count,
+            },
+            assembly: Assembly::of(with_air(blocks)),
+        })
+    }
+
+    fn line(&self, k: usize, fields: &[Field]) -> Line {
+        let Some(first) = fields.first() else {
+            return Line::Blank;
+        };
+        let numeric = fields.iter().filter(|field| field.looks_numeric).count();
+        let words = fields.len() - numeric;
+        if numeric == 0 || words >= numeric && self.is_title(k, words, numeric) {
+            return Line::Text;
+        }
+        let line = self.source.line(k);
+        // A word before the numbers names the row.
+        let named = !first.looks_numeric && fields.len() > 1;
+        let last = fields.last().unwrap_or(first);
+        let mut row = Row::at(k + 1, first.start + 1, last.end - first.start);
+        if named {
+            row.label = label(&line[first.start..first.end]);
+        }
+        for (column, field) in fields.iter().skip(usize::from(named)).enumerate() {
+            let length = (field.end - field.start).max(1);
+            match &field.number {
+                Ok(number) => row.numbers.push(Placed {
+                    number: *number,
+                    line: k + 1,
+                    character: field.start + 1,
+                    length,
+                }),
+                Err(problem) => {
+                    let token = visible(&line[field.start..field.end]);
+                    row.spoil(
+                        column + 1,
+                        problem,
+                        &token,
+                        (k + 1, field.start + 1, length),
+                    );
+                }
+            }
+        }
+        Line::Row(row)
+    }
+
+    /// `Film 3` and `450 nm` before a matrix; in a list of names with one number each
+    /// the next line is as short.
+    fn is_title(&self, k: usize, words: usize, numeric: usize) -> bool {
+        if numeric >= 4 {
+            return false;
+        }
+        if words > 1 || numeric > 1 {
+            return true;
+        }
+        let mut next = Vec::new();
+        for line in k + 1..self.source.line_count() {
+            self.split(line, &mut next);
+            if !next.is_empty() {
+                return next.len() >= 4;
+            }
+        }
+        false
+    }
+
+    /// `M00 M01 …`: one word above each column is no name of a matrix.
+    fn names_columns(&self, fields: &[Field]) -> bool {
+        fields.len() >= 4
+            && (self.dialect.delimiter != Delimiter::Space
+                || fields.iter().all(|field| field.end - field.start <= 4))
+    }
+
+    /// The fields of a line, without empty ones at its end.
+    fn split(&self, k: usize, fields: &mut Vec<Field>) {
+        fields.clear();
+        let line = self.source.line(k);
+        let mut start = 0;
+        let mut quoted = false;
+        for at in 0..=line.len() {
+            if line.get(at) == Some(&'"') {
+                quoted = !quoted;
+            }
+            if at == line.len() || (!quoted && self.cuts(line, at)) {
+                let field = self.field(line, start, at);
+                if self.dialect.delimiter != Delimiter::Space || field.end > field.start {
+                    fields.push(field);
+                }
+                start = at + 1;
+            }
+        }
+        while fields.last().is_some_and(|field| field.end == field.start) {
+            fields.pop();
         }
     }
-    while fields.last().is_some_and(|field| field.text.is_empty()) {
-        fields.pop();
+
+    fn cuts(&self, line: &[char], at: usize) -> bool {
+        match self.dialect.delimiter {
+            Delimiter::Tab => line[at] == '\t',
+            Delimiter::Semicolon => line[at] == ';',
+            Delimiter::Space => line[at].is_whitespace(),
+            Delimiter::Comma => {
+                let outside = |c: Option<&char>| c.is_none_or(|&c| is_blank(c) || c == '"');
+                line[at] == ','
+                    && (self.dialect.decimal == DecimalMark::Point
+                        || outside(line.get(at + 1))
+                        || at > 0 && outside(line.get(at - 1)))
+            }
+        }
     }
-    fields
+
+    fn field(&self, line: &[char], start: usize, end: usize) -> Field {
+        let blank = |c: char| is_blank(c) || c == '"';
+        let mut from = start;
+        let mut to = end;
+        while from < to && blank(line[from]) {
+            from += 1;
+        }
+        while to > from && blank(line[to - 1]) {
+            to -= 1;
+        }
+        let text = visible(&line[from..to]);
+        let number = parse_number(&text, self.dialect.decimal, self.dialect.grouped);
+        let looks_numeric = match &number {
+            Ok(_) => true,
+            Err(problem) => {
+                problem.code == "not-finite"
+                    || text == "-"
+                    || text
+                        .trim_start_matches(['-', '+', '.', ','])
+                        .starts_with(|c: char| c.is_ascii_digit())
+            }
+        };
+        Field {
+            start: from,
+            end: to,
+            number,
+            looks_numeric,
+        }
+    }
 }
 
-fn trimmed(line: &[char], start: usize, end: usize) -> Field {
-    let blank = |c: char| c.is_whitespace() || c == '\0' || c == '"';
-    let mut from = start;
-    let mut to = end;
-    while from < to && blank(line[from]) {
-        from += 1;
+/// Four lines apart by blank lines are one matrix with air in it.
+fn with_air(blocks: Vec<Block>) -> Vec<Block> {
+    let rows = blocks.iter().map(|block| block.rows.len()).sum::<usize>();
+    let named = blocks.iter().skip(1).any(|block| block.label.is_some());
+    let fours = blocks
+        .iter()
+        .flat_map(|block| &block.rows)
+        .all(|row| row.width() == 4);
+    if rows != 4 || blocks.len() == 1 || named || !fours {
+        return blocks;
     }
-    while to > from && blank(line[to - 1]) {
-        to -= 1;
-    }
-    Field {
-        text: visible(&line[from..to]),
-        start: from,
-        length: to - from,
-    }
+    let label = blocks.first().and_then(|block| block.label.clone());
+    vec![Block {
+        rows: blocks.into_iter().flat_map(|block| block.rows).collect(),
+        label,
+        ..Block::default()
+    }]
 }
