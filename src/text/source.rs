@@ -160,7 +160,11 @@ impl Source {
             let mut seen = line.iter().copied().filter(|&c| !is_blank(c));
             match seen.next() {
                 Some('C' | 'c') => {
-                    let lower: String = line.iter().take(200).collect::<String>().to_lowercase();
+                    let lower: String = line
+                        .iter()
+                        .take(200)
+                        .collect::<String>()
+                        .to_ascii_lowercase();
                     let mut words = lower.split_whitespace();
                     let columns = matches!(words.next(), Some("columns" | "column"));
                     let number = words.next().is_some_and(|word| {
