@@ -5,7 +5,7 @@
 
 use js_sys::{Array, ArrayBuffer, Object, Reflect};
 use serde_json::{Map, Number, Value};
-use wasm_bindgen::{JsCast, JsValue};
+use wasm_bindgen::JsValue;
 
 use crate::error::{Error, Result};
 
@@ -49,31 +49,49 @@ fn convert(value: &JsValue, path: &str, depth: usize) -> Result<Value> {
         return Ok(Value::String(text));
     }
     if Array::is_array(value) || ArrayBuffer::is_view(value) {
-        return Array::from(value)
-            .iter()
-            .enumerate()
-            .map(|(k, item)| convert(&item, &format!("{path}[{k}]"), depth + 1))
+        let length = Reflect::get(value, &JsValue::from_str("length"))
+            .ok()
+            .and_then(|length| length.as_f64())
+            .unwrap_or_default() as u32;
+        return (0..length)
+            .map(|k| {
+                let inner = format!("{path}[{k}]");
+                let item = Reflect::get_u32(value, k).map_err(|_| unreadable(&inner))?;
+                convert(&item, &inner, depth + 1)
+            })
             .collect::<Result<_>>()
             .map(Value::Array);
     }
     if value.is_object() && !value.is_function() {
         let mut map = Map::new();
-        for entry in Object::entries(value.unchecked_ref()).iter() {
-            let entry: Array = entry.unchecked_into();
-            let key = entry.get(0).as_string().unwrap_or_default();
-            let item = entry.get(1);
+        // Reflection hands on what a getter or a proxy throws, as a value.
+        for key in Reflect::own_keys(value)
+            .map_err(|_| unreadable(path))?
+            .iter()
+        {
+            let name = key.as_string().unwrap_or_default();
+            let inner = if path.is_empty() {
+                name.clone()
+            } else {
+                format!("{path}.{name}")
+            };
+            let item = Reflect::get(value, &key).map_err(|_| unreadable(&inner))?;
             if !item.is_undefined() {
-                let inner = if path.is_empty() {
-                    key.clone()
-                } else {
-                    format!("{path}.{key}")
-                };
-                map.insert(key, convert(&item, &inner, depth + 1)?);
+                map.insert(name, convert(&item, &inner, depth + 1)?);
             }
         }
         return Ok(Value::Object(map));
     }
     refuse("bad-request", "This is not a plain value.")
+}
+
+fn unreadable(path: &str) -> Error {
+    let error = Error::new("bad-request", "Reading this value throws an error.");
+    if path.is_empty() {
+        error
+    } else {
+        error.at_field(path)
+    }
 }
 
 /// Whole numbers as such, but for -0, which only a double can be.

@@ -225,6 +225,10 @@ test("a link holds every bit of every number, and blocks that this version does 
   const cycle = { v: 1 };
   cycle.self = cycle;
   refuses(() => engine.encodeLink(cycle), "bad-request");
+  const thrower = { v: 1, get label() { throw new Error("mine"); } };
+  refuses(() => engine.encodeLink(thrower), "bad-request", { field: "label" });
+  refuses(() => engine.encodeLink(new Proxy({}, { ownKeys: () => { throw new Error("mine"); } })), "bad-request");
+  for (const odd of [10n, Symbol("s"), [1, , 2]]) refuses(() => engine.encodeLink({ v: 1, odd }), "bad-request");
 });
 
 test("plots as SVG, the same code as on the canvas", () => {
