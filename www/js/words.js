@@ -45,7 +45,7 @@ const COUNTS = ["No", "One", "Two", "Three", "Four"];
  */
 export function verdictOf(result, request, pending, format) {
   const { realizability } = result;
-  if (!realizability.eigenvalues) return withoutEigenvalues(realizability, request);
+  if (!realizability.eigenvalues) return withoutEigenvalues(request);
   const m00 = request.mueller[0] ?? 0;
   if (m00 < 0 && realizability.verdict !== "withinNoise") return negative(m00);
   switch (realizability.verdict) {
@@ -61,11 +61,10 @@ export function verdictOf(result, request, pending, format) {
 }
 
 /**
- * @param {import("./types.js").Realizability} realizability
  * @param {Request} request
  * @returns {Verdict}
  */
-function withoutEigenvalues(realizability, request) {
+function withoutEigenvalues(request) {
   if (request.mueller.every((value) => value === 0)) {
     return {
       tone: "good",
@@ -78,8 +77,7 @@ function withoutEigenvalues(realizability, request) {
     tone: "bad",
     title: "Not realizable: m00 is 0, other elements are not",
     reason: [
-      "m00 is what passes of unpolarized light. Where it is 0, nothing passes, and every other element must be 0 too. ",
-      { mute: realizability.reason ?? "" },
+      "m00 is what passes of unpolarized light. Where it is 0, nothing passes, and every other element must be 0 too.",
     ],
     next: ["Look for a lost m00: some programs leave it out of a normalised matrix, where it is 1."],
   };

@@ -130,7 +130,7 @@ export class PropertiesPanel {
       make("p", { class: "fine about" }, about, " ", copyButton("copy-figures", "all figures", () => figuresAsText(result), tell)),
       GROUPS.map((group) => [
         make("h2", null, group.title),
-        make("table", { class: "figures" }, make("tbody", null, group.names.flatMap((name) => this.figureRows(name, figures[name], format)))),
+        make("table", { class: "figures" }, make("tbody", null, group.names.flatMap((name, index) => this.figureRows(name, figures[name], figures[group.names[index - 1] ?? ""], format)))),
       ]),
     );
   }
@@ -138,9 +138,10 @@ export class PropertiesPanel {
   /**
    * @param {string} name
    * @param {Figure | undefined} figure
+   * @param {Figure | undefined} above the figure in the row above
    * @param {import("../types.js").FormatValue} format
    */
-  figureRows(name, figure, format) {
+  figureRows(name, figure, above, format) {
     const definition = DEFINITIONS[name];
     if (!definition || !figure) return [];
     const id = `define-${name}`;
@@ -165,7 +166,7 @@ export class PropertiesPanel {
     );
     const text = figureText(figure, format);
     const value = text === null ? make("td", { class: "number mute" }, "not determined") : make("td", { class: "number" }, text, make("span", { class: "unit" }, definition.unit));
-    return [make("tr", { class: text === null ? "undetermined" : null }, make("th", { scope: "row" }, toggle), value, make("td", { class: "mute note" }, noteOf(name, figure))), more];
+    return [make("tr", { class: text === null ? "undetermined" : null }, make("th", { scope: "row" }, toggle), value, make("td", { class: "mute note" }, noteOf(name, figure, above))), more];
   }
 
   /** @param {Examination} result */
@@ -312,11 +313,12 @@ export class PropertiesPanel {
 /**
  * @param {string} name
  * @param {Figure} figure
+ * @param {Figure | undefined} above
  */
-function noteOf(name, figure) {
+function noteOf(name, figure, above) {
   const notes = [];
   const reason = figure.reason ?? "";
-  if (reason !== "" && !GENERAL.some((general) => general.test(reason))) notes.push(reason);
+  if (reason !== "" && !GENERAL.some((general) => general.test(reason))) notes.push(reason === above?.reason ? "as above" : reason);
   if (name === "isotropicAlpha") notes.push("constant stray light would look the same");
   if (["depolarizationIndex", "diattenuation", "polarizance"].includes(name) && figure.value !== null && figure.value > 1) {
     notes.push(figure.se !== null && figure.value - 1 < 2 * figure.se ? "above 1 within noise" : "above 1, which nothing physical reaches");
