@@ -16,6 +16,16 @@ pub(super) struct Placed {
     pub length: usize,
 }
 
+impl Placed {
+    fn place(&self) -> Place {
+        Place::Text {
+            line: self.line,
+            character: self.character,
+            length: self.length,
+        }
+    }
+}
+
 /// What stands where a number should.
 struct BadSpot {
     /// In the row, counted from one.
@@ -69,11 +79,18 @@ impl Row {
         self.bad_count += 1;
     }
 
+    /// Takes the numbers of another row behind its own.
+    pub fn join(&mut self, right: Self) {
+        self.numbers.extend(right.numbers);
+        self.bad.extend(right.bad);
+        self.bad_count += right.bad_count;
+    }
+
     pub fn is_good(&self) -> bool {
         self.bad_count == 0
     }
 
-    fn error(&self, code: &'static str, message: String) -> Error {
+    pub fn error(&self, code: &'static str, message: String) -> Error {
         Error::new(code, message).at_text(self.line, self.character, self.length.max(1))
     }
 }
@@ -85,6 +102,8 @@ pub(super) struct Block {
     pub label: Option<String>,
     /// Whether a single row goes on with the block before.
     pub joins: bool,
+    /// Whether these are the uncertainties of the matrix before.
+    pub is_sigma: bool,
     /// Why there are no rows.
     pub failed: Option<Error>,
 }
@@ -125,13 +144,14 @@ impl Assembly {
     /// All complaints as notes.
     pub fn into_notes(self) -> Vec<Note> {
         let mut notes = self.notes;
-        if self.underflows > notes.len() {
+        let listed = notes.iter().filter(|note| note.code == "underflow").count();
+        if self.underflows > listed {
             notes.push(Note {
                 severity: Severity::Warning,
                 code: "underflow",
                 message: format!(
                     "And {} more numbers that are too small for a double.",
-                    self.underflows - notes.len()
+                    self.underflows - listed
                 ),
                 at: None,
             });
@@ -158,8 +178,10 @@ impl Assembly {
             rows,
             label,
             failed,
+            is_sigma,
             ..
         } = block;
+        let before = self.matrices.len();
         if let Some(error) = failed {
             self.begun += 1;
             let name = self.name();
@@ -171,14 +193,35 @@ impl Assembly {
         self.numbers += rows.iter().map(|row| row.numbers.len()).sum::<usize>();
         let width = first.width();
         let usual = |width| 2 * rows.iter().filter(|row| row.width() == width).count() > rows.len();
-        if rows.len() == 1 && !matches!(width, 4 | 16) || is_wrapped(&rows) {
+        if rows.len() == 1 && !matches!(width, 4 | 16 | 17) || is_wrapped(&rows) {
             self.run(rows, label);
         } else if usual(16) {
-            self.rows_of_sixteen(rows, label);
+            self.rows_of_sixteen(rows, label, false);
+        } else if usual(17) {
+            self.rows_of_sixteen(rows, label, true);
         } else if usual(1) && rows.len() > 1 {
             self.column(rows, label);
         } else {
             self.rows_of_four(rows, label);
+        }
+        self.take_sigma(before, is_sigma);
+    }
+
+    /// A matrix that is said to hold uncertainties, or is named like the one before with
+    /// `_sigma`, belongs to that one.
+    fn take_sigma(&mut self, before: usize, is_sigma: bool) {
+        let [.., measured, sigma] = self.matrices.as_mut_slice() else {
+            return;
+        };
+        let name = sigma
+            .label
+            .as_deref()
+            .and_then(|name| name.strip_suffix("_sigma"));
+        let named = name.is_some() && name == measured.label.as_deref();
+        let may_be = sigma.mueller.iter().all(|&value| value >= 0.0);
+        if before + 1 == self.matrices.len() && may_be && (is_sigma || named) {
+            self.matrices[before - 1].sigma = self.matrices.pop().map(|sigma| sigma.mueller);
+            self.begun -= 1;
         }
     }
 
@@ -256,19 +299,27 @@ impl Assembly {
         }
     }
 
-    fn rows_of_sixteen(&mut self, rows: Vec<Row>, label: Option<String>) {
+    /// Sixteen numbers a line; perhaps with one before them that says where each matrix
+    /// was taken.
+    fn rows_of_sixteen(&mut self, rows: Vec<Row>, label: Option<String>, with_coordinate: bool) {
         let mut label = label;
+        let width = 16 + usize::from(with_coordinate);
         for mut row in rows {
             self.begun += 1;
             let own = row.label.take().or(label.take());
             let name = self.name();
             if !row.is_good() {
                 self.refuse_spots(row, &name);
-            } else if row.width() == 16 {
-                self.matrix(&row.numbers, own);
+            } else if row.width() == width {
+                let coordinate = with_coordinate.then(|| row.numbers[0].number.value);
+                let made = self.matrices.len();
+                self.matrix(&row.numbers[width - 16..], own);
+                if let Some(matrix) = self.matrices.get_mut(made) {
+                    matrix.coordinate = coordinate;
+                }
             } else {
                 let message = format!(
-                    "{name}: expected 16 numbers in the row, found {}.",
+                    "{name}: expected {width} numbers in the row, found {}.",
                     row.width()
                 );
                 self.refuse(row.error("ragged-row", message));
@@ -334,6 +385,28 @@ impl Assembly {
         }
     }
 
+    /// The printed uncertainties. An exact M00 has none; where others lack theirs, that
+    /// is said and none is used.
+    fn sigma(&mut self, numbers: &[Placed; 16]) -> Option<[f64; 16]> {
+        let printed = numbers.map(|placed| placed.number.sigma);
+        if printed.iter().all(Option::is_none) {
+            return None;
+        }
+        let missing =
+            (0..16).find(|&k| printed[k].is_none() && !(k == 0 && numbers[0].number.value == 1.0));
+        if let Some(k) = missing {
+            self.notes.push(Note {
+                severity: Severity::Warning,
+                code: "uncertainty-missing",
+                message: "Some numbers carry an uncertainty and this one does not, so none of them is used."
+                    .to_owned(),
+                at: Some(numbers[k].place()),
+            });
+            return None;
+        }
+        Some(printed.map(|sigma| sigma.unwrap_or_default()))
+    }
+
     /// Does nothing where a number is missing: that was said.
     fn matrix(&mut self, sixteen: &[Placed], label: Option<String>) {
         let Ok(numbers) = <&[Placed; 16]>::try_from(sixteen) else {
@@ -347,21 +420,30 @@ impl Assembly {
                     code: "underflow",
                     message: "This number is too small for a double and was read as zero."
                         .to_owned(),
-                    at: Some(Place::Text {
-                        line: placed.line,
-                        character: placed.character,
-                        length: placed.length,
-                    }),
+                    at: Some(placed.place()),
                 });
             }
         }
+        let sigma = self.sigma(numbers);
         self.matrices.push(MatrixRead {
             mueller: numbers.map(|placed| placed.number.value),
+            sigma,
+            coordinate: label.as_deref().and_then(coordinate),
             label,
             line: numbers[0].line,
             decimals: resolution(numbers),
         });
     }
+}
+
+/// `450 nm` and `12.5` say where in a series a matrix belongs.
+fn coordinate(label: &str) -> Option<f64> {
+    let end = label
+        .find(|c: char| !(c.is_ascii_digit() || matches!(c, '.' | '-' | '+')))
+        .unwrap_or(label.len());
+    let (number, unit) = label.split_at(end);
+    let plain_unit = unit.chars().count() <= 8 && !unit.contains(|c: char| c.is_ascii_digit());
+    number.parse().ok().filter(|_| plain_unit)
 }
 
 /// Sixteen numbers, or sixteens, that a printer broke where its line was full: all

@@ -2,7 +2,7 @@
 
 use super::assembly::{Assembly, Block, Placed, Row};
 use super::number::{DecimalMark, NumberProblem, parse_number};
-use super::source::{ELIDED, Source, is_blank, label, visible};
+use super::source::{ELIDED, NOTHING, Source, is_blank, label, visible};
 use super::{Attempt, Form, ReadOptions, ReadingDescription};
 use crate::error::Error;
 
@@ -46,6 +46,10 @@ enum Kind {
     List,
     /// Of a function that leaves its numbers as they are.
     Call,
+    /// With named members: what stands in it directly says nothing of its own.
+    Object,
+    /// A member that holds no matrices.
+    Skipped,
     /// Of another function.
     ForeignCall,
     /// Of an aside.
@@ -58,6 +62,8 @@ struct Open {
     close: char,
     /// Whether what is in it makes rows, and not one row.
     has_rows: bool,
+    /// How many lists were open around an object.
+    depth_around: usize,
 }
 
 /// What stood before, in the same line.
@@ -97,6 +103,14 @@ struct Reader<'a> {
     outside: usize,
     /// The name of what comes next.
     label: Option<String>,
+    /// Whether the text is an object, where names are in quotes.
+    in_object: bool,
+    /// The member that comes next.
+    key: String,
+    /// What the present object calls itself.
+    object_name: Option<String>,
+    /// Lists of an object that are no matrices, if that is all there is.
+    other_lists: Option<Error>,
     /// Whether a list of one row may go on with the next one.
     joins: bool,
     row: Row,
@@ -126,6 +140,10 @@ impl<'a> Reader<'a> {
             semicolons: false,
             outside: 0,
             label: None,
+            in_object: source.is_object(),
+            key: String::new(),
+            object_name: None,
+            other_lists: None,
             joins: false,
             row: Row::default(),
             block: Block::default(),
@@ -168,6 +186,11 @@ impl<'a> Reader<'a> {
             self.end_value();
         }
         let mut assembly = Assembly::of(joined(self.blocks));
+        if assembly.matrices.is_empty()
+            && let Some(error) = self.other_lists
+        {
+            assembly.refuse(error);
+        }
         for error in self.aside {
             assembly.refuse(error);
         }
@@ -200,7 +223,7 @@ impl<'a> Reader<'a> {
         self.previous = Previous::Nothing;
         self.operator = false;
         self.outside = 0;
-        if self.depth > 0 {
+        if self.depth > 0 || self.in_object {
             return;
         }
         let line = self.characters();
@@ -234,13 +257,20 @@ impl<'a> Reader<'a> {
         if self.previous == Previous::Value && self.ends_in_calculation(c) {
             return;
         }
+        if self.skips(c) {
+            return;
+        }
         match c {
             '[' | '{' | '(' => self.opening(c),
             ']' | '}' | ')' => self.closing(c),
             '.' | '…' if self.points() > 0 => self.ellipsis(),
             '-' | '+' | '.' | '0'..='9' => self.number(),
             c if c.is_alphabetic() || c == '_' => self.word(),
-            ',' => {
+            ',' | '&' => {
+                let gap = self.previous == Previous::Comma || (c == '&' && self.row.width() == 0);
+                if self.depth > 0 && gap {
+                    self.bad_token(&NumberProblem::EMPTY, "", start, start + 1);
+                }
                 self.character += 1;
                 self.previous = Previous::Comma;
                 self.operator &= self.depth > 0;
@@ -255,6 +285,7 @@ impl<'a> Reader<'a> {
                     self.set_has_rows();
                 }
             }
+            '"' | '\'' if self.in_object => self.string(c),
             '"' | '\'' => self.character += 1,
             '=' => self.equals(),
             _ => {
@@ -302,7 +333,62 @@ impl<'a> Reader<'a> {
             kind,
             close,
             has_rows: false,
+            depth_around: self.depth,
         });
+    }
+
+    /// Goes past a member that holds no matrices.
+    fn skips(&mut self, c: char) -> bool {
+        let inside = self
+            .open
+            .last()
+            .is_some_and(|open| open.kind == Kind::Skipped);
+        let begins = self.in_object && self.key == "tables" && matches!(c, '[' | '{');
+        if !(inside || begins) || matches!(c, '"' | '\'') {
+            return false;
+        }
+        self.key.clear();
+        match c {
+            '[' => self.push(Kind::Skipped, ']'),
+            '{' => self.push(Kind::Skipped, '}'),
+            ']' | '}' => {
+                self.open.pop();
+            }
+            _ => {}
+        }
+        self.character += 1;
+        self.previous = Previous::Other;
+        true
+    }
+
+    /// A name or a text in an object; numbers in quotes are numbers.
+    fn string(&mut self, quote: char) {
+        let line = self.characters();
+        let start = self.character + 1;
+        let mut end = start;
+        while let Some(&c) = line.get(end).filter(|&&c| c != quote) {
+            end += if c == '\\' { 2 } else { 1 };
+        }
+        let text = &line[start..end.min(line.len())];
+        let is_member = self
+            .open
+            .last()
+            .is_some_and(|open| open.kind == Kind::Object);
+        let number = text
+            .first()
+            .is_some_and(|c| c.is_ascii_digit() || matches!(c, '-' | '+'));
+        if number && !is_member && self.depth > 0 {
+            self.character += 1;
+            return;
+        }
+        self.character = (end + 1).min(line.len());
+        let is_name = self.next_visible() == Some(':');
+        if is_member && is_name {
+            self.key = visible(text);
+        } else if is_member && matches!(self.key.as_str(), "name" | "label" | "title") {
+            self.object_name = label(text);
+        }
+        self.previous = Previous::Other;
     }
 
     fn opening(&mut self, c: char) {
@@ -311,6 +397,7 @@ impl<'a> Reader<'a> {
             return;
         }
         let kind = match (c, self.previous) {
+            ('{', _) if self.in_object => Kind::Object,
             ('(', Previous::Word(from, to)) => self.kind_of_call(from, to),
             ('(', Previous::Number(end)) if self.depth > 0 && end == start => {
                 self.bad_spot(start, start + 1);
@@ -320,22 +407,17 @@ impl<'a> Reader<'a> {
             ('(', _) if self.depth == 0 && !self.round_brackets => Kind::Aside,
             _ => Kind::List,
         };
+        let factor = match self.previous {
+            Previous::Number(end) => end == start || self.source.is_typeset,
+            _ => false,
+        };
         self.character += 1;
         self.previous = Previous::Nothing;
         if kind == Kind::List {
             // A list inside a list is a row of its own.
             self.end_row();
             if self.depth == 0 {
-                self.begin_value(start);
-            }
-            if c == '{' && self.next_visible().is_some_and(|c| matches!(c, '"' | '\'')) {
-                self.spoil(
-                    Error::new(
-                        "json-object",
-                        "This is an object with named members; paste the array of numbers in it.",
-                    )
-                    .at_text(self.line + 1, start + 1, 1),
-                );
+                self.begin_value(start, factor);
             }
         }
         self.push(
@@ -346,20 +428,31 @@ impl<'a> Reader<'a> {
                 _ => ')',
             },
         );
+        if kind == Kind::Object {
+            self.end_row();
+            self.depth = 0;
+            self.object_name = None;
+        }
     }
 
-    /// Before a list that is in no other.
-    fn begin_value(&mut self, start: usize) {
+    /// Before a list that is in no other; `factor`: a number stands before it.
+    fn begin_value(&mut self, start: usize, factor: bool) {
         self.mark = self.blocks.len();
         self.spoilt = None;
+        let name = match self.key.as_str() {
+            _ if !self.in_object => self.label.take(),
+            "" | "mueller" | "matrix" | "values" | "data" => self.object_name.clone(),
+            key => self.object_name.clone().or_else(|| Some(key.to_owned())),
+        };
         self.block = Block {
-            label: self.label.take(),
+            label: name,
             joins: self.joins,
+            is_sigma: self.in_object && self.key == "sigma",
             ..Block::default()
         };
-        self.joins = true;
+        self.joins = !self.in_object;
         let applied = self.open.iter().any(|open| open.kind == Kind::ForeignCall);
-        if self.operator || applied {
+        if self.operator || applied || factor {
             self.spoil(calculation(self.line, start));
         }
     }
@@ -367,6 +460,9 @@ impl<'a> Reader<'a> {
     /// After it.
     fn end_value(&mut self) {
         self.operator = false;
+        if self.in_object && self.spoilt.is_none() {
+            self.drop_other_lists();
+        }
         if let Some(error) = self.spoilt.take() {
             self.blocks.truncate(self.mark);
             self.blocks.push(Block {
@@ -376,6 +472,26 @@ impl<'a> Reader<'a> {
             self.mark = self.blocks.len();
             self.block = Block::default();
             self.joins = false;
+        }
+    }
+
+    /// An object may hold lists that are no matrices.
+    fn drop_other_lists(&mut self) {
+        let rows = self.blocks[self.mark.min(self.blocks.len())..]
+            .iter()
+            .flat_map(|block| &block.rows);
+        let (good, width) = rows.fold((true, 0), |(good, width), row| {
+            (good && row.is_good(), width + row.width())
+        });
+        if good && !width.is_multiple_of(16) {
+            self.blocks.truncate(self.mark);
+            self.other_lists.get_or_insert_with(|| {
+                Error::new(
+                    "json-object",
+                    "No list in this object holds the sixteen numbers of a matrix.",
+                )
+                .at_text(self.line + 1, self.character.max(1), 1)
+            });
         }
     }
 
@@ -450,6 +566,10 @@ impl<'a> Reader<'a> {
             return;
         };
         if closed.kind != Kind::List {
+            if closed.kind == Kind::Object {
+                self.depth = closed.depth_around;
+                self.object_name = None;
+            }
             if closed.kind == Kind::Call {
                 self.previous = Previous::Value;
             }
@@ -511,20 +631,26 @@ impl<'a> Reader<'a> {
         let start = self.character;
         let mut end = start;
         while let Some(&c) = line.get(end) {
+            let digit = |c: Option<&char>| c.is_some_and(char::is_ascii_digit);
             let decimal_comma = c == ','
                 && self.decimal == DecimalMark::Comma
-                && end > start
-                && line[end - 1].is_ascii_digit()
-                && line.get(end + 1).is_some_and(char::is_ascii_digit);
+                && digit(line[start..end].iter().rfind(|&&c| c != NOTHING))
+                && digit(line[end + 1..].iter().find(|&&c| c != NOTHING));
             let separates = c.is_whitespace()
                 || matches!(
                     c,
-                    ',' | ';' | '[' | ']' | '{' | '}' | '(' | ')' | '"' | '\''
+                    ',' | ';' | '&' | '[' | ']' | '{' | '}' | '(' | ')' | '"' | '\''
                 );
-            if separates && !decimal_comma {
+            let uncertainty =
+                if c == '(' && self.depth > 0 && end > start && line[end - 1].is_ascii_digit() {
+                    uncertainty_length(&line[end..])
+                } else {
+                    0
+                };
+            if separates && !decimal_comma && uncertainty == 0 {
                 break;
             }
-            end += 1;
+            end += uncertainty.max(1);
         }
         self.character = end;
         self.previous = Previous::Number(end);
@@ -665,6 +791,19 @@ impl<'a> Reader<'a> {
             // The lists inside were blocks of their own.
             self.block.label = block.label.filter(|_| self.depth > 0);
         }
+    }
+}
+
+/// `(4)` or `(0.004)` at the start; zero where something else stands in the brackets.
+fn uncertainty_length(rest: &[char]) -> usize {
+    let inside = rest[1..]
+        .iter()
+        .take_while(|c| c.is_ascii_digit() || matches!(c, '.' | ','))
+        .count();
+    if inside > 0 && rest.get(inside + 1) == Some(&')') {
+        inside + 2
+    } else {
+        0
     }
 }
 

@@ -6,6 +6,7 @@
 
 mod assembly;
 mod literal;
+mod notation;
 mod number;
 mod source;
 mod table;
@@ -57,6 +58,11 @@ pub enum Form {
 pub struct MatrixRead {
     /// Sixteen numbers in the order of the text.
     pub mueller: [f64; 16],
+    /// The uncertainties printed with them.
+    pub sigma: Option<[f64; 16]>,
+    /// Where in a series it belongs: a column before the sixteen, or a title such as
+    /// `450 nm`.
+    pub coordinate: Option<f64>,
     /// From a comment, a name or a row label beside it.
     pub label: Option<String>,
     /// Where it begins, counted from one.
@@ -103,15 +109,17 @@ pub struct MatricesRead {
 }
 
 /// Reads every 4×4 matrix of a text: tables with any delimiter and decimal mark,
-/// nested lists, NumPy prints, bracketed rows with semicolons, JSON arrays; 4×4,
-/// 1×16, n×16, n×4 and columns of sixteen.
+/// nested lists, NumPy prints, bracketed rows with semicolons, JSON arrays and objects
+/// with arrays in them, TeX matrices, prints in blocks of columns or with a common
+/// factor; 4×4, 1×16, n×16, n×17 with a coordinate first, n×4 and columns of sixteen;
+/// numbers with their uncertainty.
 ///
 /// # Errors
 /// Where no matrix can be read: the reason, with line and character. Where some
 /// can, the others are refusals among the notes.
 pub fn parse_matrices(text: &str, options: &ReadOptions) -> Result<MatricesRead> {
     let source = Source::new(text)?;
-    source.refuse_unread_forms()?;
+    source.refuse_elided()?;
     let bracketed = source.is_bracketed();
     let mut choice = Choice::default();
     if bracketed {
@@ -241,5 +249,8 @@ impl Choice {
 }
 
 fn same_numbers(a: &[MatrixRead], b: &[MatrixRead]) -> bool {
-    a.len() == b.len() && a.iter().zip(b).all(|(a, b)| a.mueller == b.mueller)
+    a.len() == b.len()
+        && a.iter()
+            .zip(b)
+            .all(|(a, b)| a.mueller == b.mueller && a.sigma == b.sigma)
 }

@@ -33,6 +33,8 @@ impl DecimalMark {
 pub struct PrintedNumber {
     /// The nearest double.
     pub value: f64,
+    /// The uncertainty printed with it: `0.123(4)`, `0.123 ± 0.004`.
+    pub sigma: Option<f64>,
     /// The last printed digit stands for `10^-decimals`.
     pub decimals: i32,
     /// Whether it was written with an exponent.
@@ -56,6 +58,11 @@ impl NumberProblem {
         what: "is not a number",
     };
 
+    pub(super) const EMPTY: Self = Self {
+        code: "empty-cell",
+        what: "is empty",
+    };
+
     /// As an error about `token`.
     pub(super) fn error(&self, token: &str) -> Error {
         let shown: String = token.chars().take(24).collect();
@@ -68,9 +75,10 @@ impl NumberProblem {
     }
 }
 
-/// Reads one number: sign, digits, decimal mark, exponent with e or E. The value is
-/// the double nearest to what is written. `grouped` also takes thousands in threes,
-/// such as `1,234.5` beside a decimal point.
+/// Reads one number: sign, digits, decimal mark, exponent with e, E, d or D, perhaps
+/// with its uncertainty behind it: `(4)` in units of the last digit, `(0.004)` and
+/// `±0.004` in full. The value is the double nearest to what is written. `grouped` also
+/// takes thousands in threes, such as `1,234.5` beside a decimal point.
 ///
 /// # Errors
 /// What is wrong with it. Hexadecimal, `1_000`, complex, infinite numbers and words
@@ -80,68 +88,153 @@ pub fn parse_number(
     decimal: DecimalMark,
     grouped: bool,
 ) -> Result<PrintedNumber, NumberProblem> {
-    let mut plain = String::with_capacity(token.len());
-    let mut rest = token;
-    if let Some(unsigned) = rest.strip_prefix(['-', '+']) {
-        if token.starts_with('-') {
-            plain.push('-');
-        }
-        rest = unsigned;
+    parse_scaled(token, decimal, grouped, 0)
+}
+
+/// The same times `10^power`, still exact: the exponent is shifted, not the double
+/// multiplied.
+pub(super) fn parse_scaled(
+    token: &str,
+    decimal: DecimalMark,
+    grouped: bool,
+    power: i32,
+) -> Result<PrintedNumber, NumberProblem> {
+    let refuse = || problem(token, decimal);
+    if let Some((value, sigma)) = token.split_once('\u{b1}') {
+        let digits =
+            |text: &str| text.starts_with(|c: char| c.is_ascii_digit() || c == decimal.char());
+        let sigma = Some(sigma)
+            .filter(|sigma| digits(sigma))
+            .and_then(|sigma| parts(sigma, decimal, grouped))
+            .ok_or_else(refuse)?;
+        let number = parts(value, decimal, grouped)
+            .ok_or_else(refuse)?
+            .number(power)?;
+        return Ok(PrintedNumber {
+            sigma: Some(sigma.number(power)?.value),
+            ..number
+        });
     }
-    let (mantissa, exponent) = match rest.find(['e', 'E']) {
-        Some(at) => (&rest[..at], Some(&rest[at + 1..])),
-        None => (rest, None),
+    let Some((mantissa, rest)) = token.split_once('(') else {
+        return parts(token, decimal, grouped)
+            .ok_or_else(refuse)?
+            .number(power);
     };
-    let (whole, fraction) = match mantissa.split_once(decimal.char()) {
-        Some((whole, fraction)) => (whole, fraction),
-        None => (mantissa, ""),
-    };
-    let whole = if grouped && whole.contains(decimal.grouping()) {
-        ungrouped(whole, decimal.grouping()).ok_or_else(|| problem(token, decimal))?
+    let (sigma, exponent) = rest.split_once(')').ok_or_else(refuse)?;
+    let number = parts(&format!("{mantissa}{exponent}"), decimal, grouped)
+        .filter(|number| {
+            mantissa.ends_with(|c: char| c.is_ascii_digit()) && number.sigma_fits(exponent)
+        })
+        .ok_or_else(refuse)?;
+    let sigma = parts(sigma, decimal, false)
+        .filter(|sigma| !sigma.negative && sigma.exponent.is_none())
+        .ok_or_else(refuse)?;
+    // Digits alone count in the last place of the value.
+    let last_place = if sigma.has_mark {
+        0
     } else {
-        whole.to_owned()
+        i32::try_from(number.fraction.len()).map_err(|_| refuse())?
+    };
+    let shift = number
+        .power()
+        .saturating_sub(last_place)
+        .saturating_add(power);
+    Ok(PrintedNumber {
+        sigma: Some(sigma.number(shift)?.value),
+        ..number.number(power)?
+    })
+}
+
+/// The pieces of a number in decimal digits.
+struct Parts {
+    negative: bool,
+    whole: String,
+    fraction: String,
+    has_mark: bool,
+    /// With its sign.
+    exponent: Option<String>,
+}
+
+/// `None` where something else stands among them.
+fn parts(token: &str, decimal: DecimalMark, grouped: bool) -> Option<Parts> {
+    let unsigned = token.strip_prefix(['-', '+']).unwrap_or(token);
+    let (mantissa, exponent) = match unsigned.find(['e', 'E', 'd', 'D']) {
+        Some(at) => (&unsigned[..at], Some(unsigned[at + 1..].to_owned())),
+        None => (unsigned, None),
+    };
+    let (whole, fraction) = mantissa
+        .split_once(decimal.char())
+        .unwrap_or((mantissa, ""));
+    let mark = [decimal.grouping(), ' ', '\'']
+        .into_iter()
+        .find(|&mark| whole.contains(mark));
+    let whole = match mark {
+        Some(mark) if grouped && exponent.is_none() => ungrouped(whole, mark)?,
+        _ => whole.to_owned(),
     };
     let digits = |text: &str| text.bytes().all(|byte| byte.is_ascii_digit());
-    if !digits(&whole) || !digits(fraction) || whole.len() + fraction.len() == 0 {
-        return Err(problem(token, decimal));
-    }
-    plain.push_str(if whole.is_empty() { "0" } else { &whole });
-    plain.push('.');
-    plain.push_str(if fraction.is_empty() { "0" } else { fraction });
-    let mut power = 0_i32;
-    if let Some(exponent) = exponent {
+    let good_exponent = exponent.as_ref().is_none_or(|exponent| {
         let magnitude = exponent.strip_prefix(['-', '+']).unwrap_or(exponent);
-        if magnitude.is_empty() || !digits(magnitude) {
-            return Err(problem(token, decimal));
-        }
-        plain.push('e');
-        plain.push_str(exponent);
-        // Beyond this every double is zero or infinite.
-        power = exponent.parse().unwrap_or(if exponent.starts_with('-') {
+        !magnitude.is_empty() && digits(magnitude)
+    });
+    (digits(&whole) && digits(fraction) && whole.len() + fraction.len() > 0 && good_exponent).then(
+        || Parts {
+            negative: token.starts_with('-'),
+            whole,
+            fraction: fraction.to_owned(),
+            has_mark: mantissa.contains(decimal.char()),
+            exponent,
+        },
+    )
+}
+
+impl Parts {
+    /// Beyond a hundred thousand every double is zero or infinite.
+    fn power(&self) -> i32 {
+        let exponent = self.exponent.as_deref().unwrap_or("0");
+        exponent.parse().unwrap_or(if exponent.starts_with('-') {
             -99_999
         } else {
             99_999
-        });
+        })
     }
-    let value: f64 = plain.parse().map_err(|_| problem(token, decimal))?;
-    if !value.is_finite() {
-        return Err(NumberProblem {
-            code: "number-too-large",
-            what: "is larger than a double can hold",
-        });
+
+    /// Whether what stood behind the uncertainty is the exponent, all of it.
+    fn sigma_fits(&self, behind: &str) -> bool {
+        self.exponent
+            .as_ref()
+            .map_or(0, |exponent| exponent.len() + 1)
+            == behind.len()
     }
-    let nonzero = whole
-        .bytes()
-        .chain(fraction.bytes())
-        .any(|digit| digit != b'0');
-    Ok(PrintedNumber {
-        value,
-        decimals: i32::try_from(fraction.len())
-            .unwrap_or(i32::MAX / 2)
-            .saturating_sub(power),
-        has_exponent: exponent.is_some(),
-        underflows: value == 0.0 && nonzero,
-    })
+
+    fn number(&self, shift: i32) -> Result<PrintedNumber, NumberProblem> {
+        let power = self.power().saturating_add(shift);
+        let sign = if self.negative { "-" } else { "" };
+        // Digits and an exponent alone: the standard library reads all of them.
+        let value: f64 = format!("{sign}{}.{}e{power}", self.whole, self.fraction)
+            .parse()
+            .map_err(|_| NumberProblem::NOT_A_NUMBER)?;
+        if !value.is_finite() {
+            return Err(NumberProblem {
+                code: "number-too-large",
+                what: "is larger than a double can hold",
+            });
+        }
+        let nonzero = self
+            .whole
+            .bytes()
+            .chain(self.fraction.bytes())
+            .any(|digit| digit != b'0');
+        Ok(PrintedNumber {
+            value,
+            sigma: None,
+            decimals: i32::try_from(self.fraction.len())
+                .unwrap_or(i32::MAX / 2)
+                .saturating_sub(power),
+            has_exponent: self.exponent.is_some(),
+            underflows: value == 0.0 && nonzero,
+        })
+    }
 }
 
 /// `1,234,567` without its marks. A group never begins with a zero alone: `0,123` is
@@ -176,7 +269,7 @@ fn problem(token: &str, decimal: DecimalMark) -> NumberProblem {
     } else if begins_like_a_number && (lower.contains('\u{b1}') || lower.contains('(')) {
         (
             "bad-number",
-            "carries an uncertainty, which this version does not read: paste the values, and state the noise beside them",
+            "carries an uncertainty that is not like 0.123(4) or 0.123 ± 0.004",
         )
     } else if begins_like_a_number && marks > 1 {
         ("bad-number", "has two decimal marks")
@@ -188,8 +281,6 @@ fn problem(token: &str, decimal: DecimalMark) -> NumberProblem {
                 DecimalMark::Comma => "has a decimal point among decimal commas",
             },
         )
-    } else if begins_like_a_number && lower.contains('d') {
-        ("bad-number", "has an exponent with D: write E")
     } else {
         ("bad-number", "is not a number")
     };

@@ -1,5 +1,6 @@
 use std::ops::Range;
 
+use super::notation;
 use crate::error::{Error, Result};
 
 /// A longer text is refused: ten thousand matrices take a quarter of it.
@@ -12,18 +13,24 @@ const MOST_LINES: usize = 1_000_000;
 const MOST_NUMBERS: usize = 2_000_000;
 
 /// Stands for characters of no width.
-const NOTHING: char = '\0';
+pub(super) const NOTHING: char = '\0';
 
 /// A text as lines of characters, made plain one for one, so that places stay.
 pub(super) struct Source {
     characters: Vec<char>,
     lines: Vec<Line>,
+    /// Whether it was written for TeX.
+    pub is_typeset: bool,
 }
 
 struct Line {
     content: Range<usize>,
     /// Behind the mark; empty without one.
     comment: Range<usize>,
+    /// The numbers are to be taken times ten to this, as a line above says.
+    power: i32,
+    /// The columns that the following lines hold, where this line says so.
+    columns: Option<(usize, usize)>,
 }
 
 impl Source {
@@ -39,7 +46,9 @@ impl Source {
         let mut source = Self {
             characters: Vec::with_capacity(text.len()),
             lines: Vec::new(),
+            is_typeset: false,
         };
+        let is_object = begins_object(text);
         let mut start = 0;
         let mut tokens = 0;
         let mut in_token = false;
@@ -49,7 +58,7 @@ impl Source {
                 if c == '\r' {
                     characters.next_if_eq(&'\n');
                 }
-                source.end_line(start);
+                source.end_line(start, is_object);
                 start = source.characters.len();
             } else {
                 source.characters.push(plain(c));
@@ -65,27 +74,108 @@ impl Source {
                 ));
             }
         }
-        source.end_line(start);
+        source.end_line(start, is_object);
         // A spreadsheet's line that names its delimiter.
         let first = visible(source.line(0));
         if first.trim().len() == 5 && first.trim().starts_with("sep=") {
             source.lines[0].content.end = source.lines[0].content.start;
         }
+        source.rewrite();
+        source.apply_headings();
         Ok(source)
     }
 
-    /// Takes `# …`, `% …` and `// …` off the line.
-    fn end_line(&mut self, start: usize) {
+    /// Takes `# …`, `% …` and `// …` off the line; in an object they are text.
+    fn end_line(&mut self, start: usize, is_object: bool) {
         let end = self.characters.len();
-        let line = &self.characters[start..];
+        let line = &mut self.characters[start..];
+        let per_cent: Vec<usize> = (1..line.len())
+            .filter(|&k| {
+                let before = line[..k].iter().rfind(|&&c| c != ' ');
+                let after = line[k + 1..].iter().find(|&&c| !is_blank(c));
+                let ends = after.is_none_or(|&c| {
+                    c.is_ascii_digit() || matches!(c, ',' | ';' | '-' | '+' | '.')
+                });
+                line[k] == '%' && before.is_some_and(char::is_ascii_digit) && ends
+            })
+            .collect();
+        // One alone may begin an empty comment, which changes nothing.
+        if per_cent.len() > 1 {
+            for k in per_cent {
+                line[k] = NOTHING;
+            }
+        }
         let cut = (0..line.len()).find(|&k| {
             matches!(line[k], '#' | '%') || (line[k] == '/' && line.get(k + 1) == Some(&'/'))
         });
-        let content_end = start + cut.unwrap_or(line.len());
+        let content_end = start + cut.filter(|_| !is_object).unwrap_or(line.len());
         self.lines.push(Line {
             content: start..content_end,
             comment: content_end..end,
+            power: 0,
+            columns: None,
         });
+    }
+
+    /// Typeset matrices in brackets, powers of ten as exponents, uncertainties without
+    /// gaps: all of it character for character.
+    fn rewrite(&mut self) {
+        self.is_typeset = (0..self.lines.len()).any(|k| notation::is_typeset(self.line(k)));
+        for line in &self.lines {
+            let content = &mut self.characters[line.content.clone()];
+            if self.is_typeset {
+                notation::untypeset(content);
+            }
+            notation::join_numbers(content);
+        }
+    }
+
+    /// `1.0e-03 *` above a matrix, `Columns 1 through 4` above a part of its columns.
+    fn apply_headings(&mut self) {
+        let mut power = 0;
+        for k in 0..self.lines.len() {
+            let line = self.line(k);
+            let columns = notation::columns_heading(line);
+            let factor = notation::common_factor(line).filter(|_| self.starts_rows_after(k));
+            if line.contains(&'=') {
+                power = 0;
+            }
+            if let Some(factor) = factor {
+                power = factor;
+            }
+            let line = &mut self.lines[k];
+            if factor.is_some() || columns.is_some() {
+                line.content.end = line.content.start;
+            }
+            line.power = power;
+            line.columns = columns;
+        }
+    }
+
+    /// Whether the next line with anything in it is a heading of columns or begins with
+    /// a number.
+    fn starts_rows_after(&self, k: usize) -> bool {
+        (k + 1..self.lines.len())
+            .map(|next| self.line(next))
+            .find_map(|line| {
+                let first = line.iter().find(|&&c| !is_blank(c))?;
+                Some(
+                    notation::columns_heading(line).is_some()
+                        || first.is_ascii_digit()
+                        || matches!(first, '-' | '+' | '.'),
+                )
+            })
+            .unwrap_or(false)
+    }
+
+    /// The power of ten that a line above gives to the numbers of this one.
+    pub fn power(&self, k: usize) -> i32 {
+        self.lines.get(k).map_or(0, |line| line.power)
+    }
+
+    /// First and last column of the numbers that follow, where this line is a heading.
+    pub fn columns(&self, k: usize) -> Option<(usize, usize)> {
+        self.lines.get(k).and_then(|line| line.columns)
     }
 
     pub fn line_count(&self) -> usize {
@@ -141,70 +231,47 @@ impl Source {
         tuples && !self.contains('[') && !self.contains('{')
     }
 
-    /// Forms that would be read wrongly are refused, not guessed.
+    /// Whether the text is an object with named members, or a list of such.
+    pub fn is_object(&self) -> bool {
+        begins_object_with(&mut (0..self.lines.len()).flat_map(|k| self.line(k)).copied())
+    }
+
+    /// Numbers that were left out can't be guessed.
     ///
     /// # Errors
-    /// `form-not-read`, `elided-print`.
-    pub fn refuse_unread_forms(&self) -> Result<()> {
+    /// `elided-print`.
+    pub fn refuse_elided(&self) -> Result<()> {
         for k in 0..self.lines.len() {
             let line = self.line(k);
-            let refuse = |code, message: &str| {
-                let start = line.iter().position(|&c| !is_blank(c)).unwrap_or(0);
-                let length = line[start..].iter().rposition(|&c| !is_blank(c));
-                Err(Error::new(code, message).at_text(
+            let mut seen = line.iter().enumerate().filter(|&(_, &c)| !is_blank(c));
+            let Some((start, '.' | '…')) = seen.next() else {
+                continue;
+            };
+            if line.iter().all(|&c| is_blank(c) || matches!(c, '.' | '…')) {
+                let end = seen.last().map_or(start, |(end, _)| end) + 1;
+                return Err(Error::new("elided-print", ELIDED).at_text(
                     k + 1,
                     start + 1,
-                    length.map_or(1, |last| last + 1),
-                ))
-            };
-            let mut seen = line.iter().copied().filter(|&c| !is_blank(c));
-            match seen.next() {
-                Some('C' | 'c') => {
-                    let lower: String = line
-                        .iter()
-                        .take(200)
-                        .collect::<String>()
-                        .to_ascii_lowercase();
-                    let mut words = lower.split_whitespace();
-                    let columns = matches!(words.next(), Some("columns" | "column"));
-                    let number = words.next().is_some_and(|word| {
-                        word.trim_end_matches(':')
-                            .bytes()
-                            .all(|b| b.is_ascii_digit())
-                    });
-                    if columns && number {
-                        return refuse(
-                            "form-not-read",
-                            "A matrix printed in blocks of columns is not read by this version; print it in full width.",
-                        );
-                    }
-                }
-                Some(c) if c.is_ascii_digit() && seen.next_back() == Some('*') => {
-                    return refuse(
-                        "form-not-read",
-                        "This line is a common factor, which this version does not apply; print the numbers in full.",
-                    );
-                }
-                Some('.' | '…') if line.iter().all(|&c| is_blank(c) || matches!(c, '.' | '…')) =>
-                {
-                    return refuse("elided-print", ELIDED);
-                }
-                _ => {}
-            }
-            let begin = ['\\', 'b', 'e', 'g', 'i', 'n'];
-            let latex = line.windows(begin.len()).any(|window| window == begin);
-            if latex || line.iter().filter(|&&c| c == '&').count() >= 3 {
-                return refuse(
-                    "form-not-read",
-                    "LaTeX is not read by this version; paste the numbers in rows.",
-                );
+                    end - start,
+                ));
             }
         }
         Ok(())
     }
 }
 
-pub(super) const ELIDED: &str = "The three points stand for numbers that were not printed; print the array in full (numpy.set_printoptions(threshold=numpy.inf)) and paste again.";
+fn begins_object(text: &str) -> bool {
+    begins_object_with(&mut text.chars().map(plain))
+}
+
+fn begins_object_with(characters: &mut impl Iterator<Item = char>) -> bool {
+    let mut visible = characters
+        .filter(|&c| !is_blank(c))
+        .skip_while(|&c| c == '[');
+    visible.next() == Some('{') && matches!(visible.next(), Some('"' | '\''))
+}
+
+pub(super) const ELIDED: &str = "The three points stand for numbers that were not printed. Export them all, with numpy.savetxt(\"matrices.csv\", M.reshape(-1, 16), delimiter=\",\"), and paste or open that.";
 
 /// Minus signs, spaces, digits and marks of other scripts, frames around matrices.
 fn plain(c: char) -> char {

@@ -1,7 +1,7 @@
 //! Lines of numbers with a delimiter.
 
 use super::assembly::{Assembly, Block, Placed, Row};
-use super::number::{DecimalMark, NumberProblem, PrintedNumber, parse_number};
+use super::number::{DecimalMark, NumberProblem, PrintedNumber, parse_scaled};
 use super::source::{Source, is_blank, label, visible};
 use super::{Attempt, Delimiter, Form, ReadOptions, ReadingDescription};
 
@@ -21,7 +21,8 @@ struct Dialect {
 
 /// What may be meant, the likelier first: elements of a thousand and more are rare.
 fn dialects(source: &Source, options: &ReadOptions) -> Vec<Dialect> {
-    let [tabs, semicolons, commas, points] = ['\t', ';', ',', '.'].map(|c| source.contains(c));
+    let [tabs, semicolons, commas, points, quotes] =
+        ['\t', ';', ',', '.', '"'].map(|c| source.contains(c));
     let mut dialects = Vec::new();
     for grouped in [false, true] {
         for decimal in [DecimalMark::Point, DecimalMark::Comma] {
@@ -41,9 +42,11 @@ fn dialects(source: &Source, options: &ReadOptions) -> Vec<Dialect> {
                         });
                 // Points group thousands only where a number shows both marks:
                 // `0.123` alone never means 123.
-                let may_group = delimiter != Delimiter::Comma
-                    && commas
-                    && (decimal == DecimalMark::Point || points);
+                let may_group = match delimiter {
+                    Delimiter::Comma => decimal == DecimalMark::Point && quotes,
+                    Delimiter::Space => commas && (decimal == DecimalMark::Point || points),
+                    Delimiter::Tab | Delimiter::Semicolon => true,
+                };
                 if settled && (may_group || !grouped) {
                     dialects.push(Dialect {
                         decimal,
@@ -85,7 +88,22 @@ impl Reader<'_> {
         let mut open = false;
         let mut name = None;
         let mut header_row_count = 0;
+        let mut columns = None;
         for k in 0..self.source.line_count() {
+            if let Some((first, last)) = self.source.columns(k) {
+                columns = Some(Columns {
+                    block: if first == 1 {
+                        blocks.len()
+                    } else {
+                        blocks.len().saturating_sub(1)
+                    },
+                    row: 0,
+                    first,
+                    last,
+                });
+                open = false;
+                continue;
+            }
             self.split(k, &mut fields);
             match self.line(k, &fields) {
                 Line::Blank => {
@@ -96,12 +114,17 @@ impl Reader<'_> {
                 }
                 Line::Text => {
                     open = false;
+                    columns = None;
                     header_row_count += usize::from(blocks.is_empty());
                     if !self.names_columns(&fields) {
                         name = label(self.source.line(k)).or(name);
                     }
                 }
                 Line::Row(row) => {
+                    if let Some(columns) = columns.as_mut().filter(|columns| columns.first > 1) {
+                        columns.take(&mut blocks, row);
+                        continue;
+                    }
                     if !open {
                         blocks.push(Block {
                             label: name.take(),
@@ -142,12 +165,18 @@ impl Reader<'_> {
         let line = self.source.line(k);
         // A word before the numbers names the row.
         let named = !first.looks_numeric && fields.len() > 1;
-        let last = fields.last().unwrap_or(first);
+        let elements = &fields[usize::from(named)..];
+        // A word behind a whole row is a unit or a remark.
+        let elements = match elements.split_last() {
+            Some((unit, rest)) if is_remark(unit) && matches!(rest.len(), 1 | 4 | 16 | 17) => rest,
+            _ => elements,
+        };
+        let last = elements.last().unwrap_or(first);
         let mut row = Row::at(k + 1, first.start + 1, last.end - first.start);
         if named {
             row.label = label(&line[first.start..first.end]);
         }
-        for (column, field) in fields.iter().skip(usize::from(named)).enumerate() {
+        for (column, field) in elements.iter().enumerate() {
             let length = (field.end - field.start).max(1);
             match &field.number {
                 Ok(number) => row.numbers.push(Placed {
@@ -207,7 +236,7 @@ impl Reader<'_> {
                 quoted = !quoted;
             }
             if at == line.len() || (!quoted && self.cuts(line, at)) {
-                let field = self.field(line, start, at);
+                let field = self.field(line, start, at, self.source.power(k));
                 if self.dialect.delimiter != Delimiter::Space || field.end > field.start {
                     fields.push(field);
                 }
@@ -234,7 +263,7 @@ impl Reader<'_> {
         }
     }
 
-    fn field(&self, line: &[char], start: usize, end: usize) -> Field {
+    fn field(&self, line: &[char], start: usize, end: usize, power: i32) -> Field {
         let blank = |c: char| is_blank(c) || c == '"';
         let mut from = start;
         let mut to = end;
@@ -245,7 +274,7 @@ impl Reader<'_> {
             to -= 1;
         }
         let text = visible(&line[from..to]);
-        let number = parse_number(&text, self.dialect.decimal, self.dialect.grouped);
+        let number = parse_scaled(&text, self.dialect.decimal, self.dialect.grouped, power);
         let looks_numeric = match &number {
             Ok(_) => true,
             Err(problem) => {
@@ -263,6 +292,45 @@ impl Reader<'_> {
             looks_numeric,
         }
     }
+}
+
+/// The part of a matrix that a heading announces: `Columns 5 through 8`.
+struct Columns {
+    /// The block that its rows go on.
+    block: usize,
+    /// The next row of it.
+    row: usize,
+    first: usize,
+    last: usize,
+}
+
+impl Columns {
+    /// Joins a row to the one on its left.
+    fn take(&mut self, blocks: &mut [Block], row: Row) {
+        let Some(block) = blocks.get_mut(self.block) else {
+            return;
+        };
+        let width = self.last + 1 - self.first;
+        match block.rows.get_mut(self.row) {
+            Some(left) if left.width() + 1 == self.first && row.width() <= width => {
+                left.join(row);
+                self.row += 1;
+            }
+            _ => {
+                let message = format!(
+                    "the rows under columns {} to {} do not go on with those before.",
+                    self.first, self.last
+                );
+                block.rows.clear();
+                block.failed = Some(row.error("ragged-row", message));
+            }
+        }
+    }
+}
+
+/// A word that neither is nor should be a number.
+fn is_remark(field: &Field) -> bool {
+    matches!(&field.number, Err(problem) if problem.code == "bad-number") && !field.looks_numeric
 }
 
 /// Four lines apart by blank lines are one matrix with air in it.

@@ -21,7 +21,7 @@ def matrix():
     return m
 
 
-def write(name, text, matrices, labels=None, decimals="unchecked", encoding="utf-8"):
+def write(name, text, matrices, labels=None, decimals="unchecked", encoding="utf-8", **more):
     (HERE / f"{name}.txt").write_bytes(text.encode(encoding))
     matrices = np.asarray(matrices, dtype=float).reshape(-1, 16)
     expected[name] = {"matrices": matrices.tolist()}
@@ -29,6 +29,7 @@ def write(name, text, matrices, labels=None, decimals="unchecked", encoding="utf
         expected[name]["labels"] = labels
     if decimals != "unchecked":
         expected[name]["decimals"] = decimals
+    expected[name].update(more)
 
 
 def printed(m, form="%.4f"):
@@ -171,6 +172,82 @@ write("extremes", " ".join(repr(x) for x in odd), odd)
 digits = ["0.1000000000000000055511151231257827021181583404541015625", "1.00000000000000011102230246251565404",
           "2.4703282292062327208e-324", "6.00000E+00", "+.5", "5.", "-0.", "007"] + ["1E-2"] * 8
 write("long_digits", "\t".join(digits), [float(t) for t in digits])
+
+# Typeset.
+bs = "\\"
+body = lambda cells: (bs * 2 + "\n").join(rows(cells, " & "))
+environment = lambda name, cells, columns="": f"{bs}begin{{{name}}}{columns}\n{body(cells)}\n{bs}end{{{name}}}"
+write("tex_pmatrix", environment("pmatrix", texts), said, decimals=4)
+write("tex_one_line", f"$M = {bs}begin{{bmatrix}}" + (bs * 2).join(rows(texts, "&")) + f"{bs}end{{bmatrix}}$", said, ["M"])
+write("tex_array", f"{bs}[\n{bs}mathbf{{M}} = {bs}left[" + environment("array", texts, "{rrrr}") + f"{bs}right]\n{bs}]\n", said, ["M"])
+write("tex_rows", (bs * 2 + "\n").join(rows(texts, " & ")) + bs * 2 + "[2pt]\n", said)
+write("tex_phantom", environment("pmatrix", [[t if t.startswith("-") else f"{bs}phantom{{-}}{t}" for t in row] for row in texts]), said)
+write("tex_decimal_comma", environment("pmatrix", [[t.replace(".", "{,}") for t in row] for row in texts]), said)
+write("tex_several", "\n\n".join(environment("pmatrix", printed(m)[0]) for m in many), many_said)
+powers = printed(one / 100, "%.3e")
+raised = lambda times: [[f"{t.split('e')[0]}{times}10^{{{int(t.split('e')[1])}}}" for t in row] for row in powers[0]]
+write("tex_times", environment("pmatrix", raised(f" {bs}times ")), powers[1])
+write("tex_cdot", environment("pmatrix", raised(f"{bs}cdot")), powers[1])
+write("tex_num", environment("pmatrix", [[f"{bs}num{{{t}}}" for t in row] for row in texts]), said)
+write("tex_tabular", environment("tabular", texts, "{cccc}").replace("\n", f"\n{bs}hline\n", 1), said)
+
+# Powers of ten in other notations.
+write("fortran_d", "\n".join(rows([[t.replace("e", "D") for t in row] for row in powers[0]], " ")), powers[1])
+superscript = str.maketrans("-0123456789", "\u207b\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079")
+write("power_superscript", "\n".join(rows([[f"{t.split('e')[0]}\u00b710{str(int(t.split('e')[1])).translate(superscript)}" for t in row] for row in powers[0]], "\t")), powers[1])
+write("power_cross", "\n".join(rows([[f"{t.split('e')[0]} \u00d7 10^{int(t.split('e')[1])}" for t in row] for row in powers[0]], "\t")), powers[1])
+write("power_letter_x", "\n".join(rows([[f"{t.split('e')[0]} x 10^{int(t.split('e')[1])}" for t in row] for row in powers[0]], "  ")), powers[1])
+write("power_decimal_comma", "\n".join(rows([[t.replace(".", ",") for t in row] for row in powers[0]], "  ")), powers[1])
+write("power_stars", "\n".join(rows([[f"{t.split('e')[0]}*10**{int(t.split('e')[1])}" for t in row] for row in powers[0]], ", ")), powers[1])
+
+# Console prints in blocks of columns and with a common factor.
+wide = [["%10.4f" % x for x in row] for row in one]
+block = lambda first, last: "\n".join("".join(row[first - 1:last]) for row in wide)
+write("columns_three_and_one", f"\nM =\n\n  Columns 1 through 3\n\n{block(1, 3)}\n\n  Column 4\n\n{block(4, 4)}\n\n", said, ["M"])
+write("columns_with_colons", f"M =\n\n Columns 1 through 2:\n\n{block(1, 2)}\n\n Columns 3 and 4:\n\n{block(3, 4)}\n\n", said, ["M"])
+line = ["%10.4f" % x for x in np.ravel(one)]
+write("columns_of_sixteen", "ans =\n\n  Columns 1 through 7\n\n" + "".join(line[:7]) + "\n\n  Columns 8 through 14\n\n" + "".join(line[7:14]) + "\n\n  Columns 15 through 16\n\n" + "".join(line[14:]) + "\n", said)
+scaled = [float(t + "e-03") for t in np.ravel(texts)]
+write("common_factor", "\nM =\n\n   1.0e-03 *\n\n" + "\n".join("".join(row) for row in wide) + "\n\n", scaled, ["M"], decimals=7)
+write("common_factor_and_columns", f"\nM =\n\n   1.0e-03  *\n\n  Columns 1 through 3\n\n{block(1, 3)}\n\n  Column 4\n\n{block(4, 4)}\n\nN =\n\n" + "\n".join("".join(row) for row in wide) + "\n", scaled + said, ["M", "N"])
+
+# Uncertainties.
+sigmas = RNG.integers(2, 90, (4, 4))
+sigma_said = [float(f"{s}e-4") for s in sigmas.ravel()]
+concise = [[f"{t}({s})" for t, s in zip(row, line)] for row, line in zip(texts, sigmas)]
+write("uncertainty_concise", "\n".join(rows(concise, "\t")), said, sigma=[sigma_said])
+write("uncertainty_concise_list", "[" + ", ".join("[" + ", ".join(row) + "]" for row in concise) + "]", said, sigma=[sigma_said])
+plus_minus = lambda sign: [[f"{t}{sign}{'%.4f' % (s / 1e4)}" for t, s in zip(row, line)] for row, line in zip(texts, sigmas)]
+write("uncertainty_plus_minus", "\n".join(rows(plus_minus(" \u00b1 "), "\t")), said, sigma=[sigma_said])
+write("uncertainty_plus_minus_spaces", "\n".join(rows(plus_minus("\u00b1"), "   ")), said, sigma=[sigma_said])
+write("uncertainty_ascii", "\n".join(rows(plus_minus(" +/- "), ", ")), said, sigma=[sigma_said])
+write("uncertainty_tex", environment("pmatrix", plus_minus(f" {bs}pm ")), said, sigma=[sigma_said])
+exact = [["1"] + concise[0][1:]] + concise[1:]
+write("uncertainty_exact_first", "\n".join(rows(exact, "\t")), said, sigma=[[0.0] + sigma_said[1:]])
+write("uncertainty_decimal_comma", "\n".join(rows([[t.replace(".", ",") for t in row] for row in concise], "\t")), said, sigma=[sigma_said])
+write("uncertainty_second_array", f"M = np.array({one.tolist()})\nM_sigma = np.array({np.reshape(sigma_said, (4, 4)).tolist()})\n", one, ["M"], sigma=[sigma_said])
+
+# Objects.
+write("object", json.dumps({"sample": "kelp", "mueller": one.tolist(), "temperature": 21.5}), one, [None])
+write("object_indented", json.dumps({"film A": one.tolist(), "film B": many[0].tolist()}, indent=2), [one, many[0]], ["film A", "film B"])
+write("object_list", json.dumps({"schema": 1, "notes": ["{made} [up], # 1"], "matrices": [
+    {"name": n, "unit": None, "mueller": m.tolist(), "sigma": np.reshape(sigma_said, (4, 4)).tolist()} for n, m in zip(names, many)],
+    "tables": [{"name": "t", "columns": [{"name": "x", "values": list(range(16))}]}]}), many, names, sigma=[sigma_said] * 5)
+write("object_rows", json.dumps([{"wavelength": 450 + k, "m": m.ravel().tolist()} for k, m in enumerate(many)]), many, ["m"] * 5)
+write("object_single_quotes", repr({"mueller": one.tolist(), "ok": True}), one)
+
+# A coordinate before the sixteen, units, remarks.
+places = [450.0, 475.5, 500.0, 550.0, 633.0]
+write("coordinates", "\n".join("\t".join([f"{x:g}", r]) for x, r in zip(places, many_flat)), many_said, coordinates=places)
+write("coordinates_header", "wavelength/nm," + ",".join(f"m{k}" for k in range(16)) + "\r\n" + "\r\n".join(f"{x:g}," + r.replace("\t", ",") for x, r in zip(places, many_flat)), many_said, coordinates=places)
+write("coordinates_decimal_comma", "\n".join(";".join([f"{x:g}", r.replace("\t", ";")]).replace(".", ",") for x, r in zip(places, many_flat)), many_said, coordinates=places)
+write("coordinate_titles", "\n".join(f"{x:g} nm\n" + "\n".join(rows(printed(m)[0], " ")) for x, m in zip(places, many)), many_said, coordinates=places)
+write("unit_row", "a\tb\tc\td\n(V)\t(V)\t(V)\t(V)\n" + "\n".join(rows(texts, "\t")), said, [None])
+write("units_behind", "\n".join(r + " V" for r in rows(texts, " ")), said)
+write("per_cent", "\n".join(rows([["%.2f%%" % (100 * x) for x in row] for row in one], "  ")), [float("%.2f" % (100 * x)) for x in one.ravel()])
+write("per_cent_gaps", "\n".join(rows([["%.2f %%" % (100 * x) for x in row] for row in one], "\t")), [float("%.2f" % (100 * x)) for x in one.ravel()])
+counts = np.round(one * 45000).astype(int)
+write("grouped_by_spaces", "\n".join(rows([[f"{x:,}".replace(",", "\u202f") for x in row] for row in counts], "\t")), counts)
 
 (HERE / "expected.json").write_text(json.dumps(expected, indent=0) + "\n")
 print(len(expected), "samples")
