@@ -650,6 +650,7 @@ fn thousands_and_decimal_commas_are_asked_about() {
         let options = ReadOptions {
             decimal: Some(decimal),
             delimiter: None,
+            ..ReadOptions::default()
         };
         let forced = parse_matrices(text, &options).unwrap();
         assert_eq!(forced.matrices[0].mueller[0], value);
@@ -673,6 +674,7 @@ fn a_delimiter_can_be_settled() {
     let options = ReadOptions {
         decimal: None,
         delimiter: Some(Delimiter::Tab),
+        ..ReadOptions::default()
     };
     assert!(parse_matrices(IDENTITY, &options).is_err());
     let found = parse_matrices(&IDENTITY.replace(' ', "\t"), &options).unwrap();
@@ -994,8 +996,21 @@ fn long_hostile_texts_take_no_long_time() {
             "|",
             "&",
             "\\begin",
+            "\\begin{",
+            "\\\\",
+            "\\left",
             "columns 1\n",
             "sep=;\n",
+            "1e3 *\n",
+            "5% ",
+            "1 \u{b1} ",
+            "1 x 10^",
+            "10^{-",
+            "^{",
+            "1(2)",
+            "{\"a\":",
+            "{\"a\":[1],",
+            "[{\"tables\":[",
         ]
         .iter()
         .map(|unit| fill(unit)),

@@ -205,6 +205,7 @@ impl<'a> Reader<'a> {
                 grouped: false,
                 delimiter: None,
                 header_row_count: 0,
+                stacking: None,
             },
             assembly,
         })
@@ -451,7 +452,8 @@ impl<'a> Reader<'a> {
             ..Block::default()
         };
         self.joins = !self.in_object;
-        let applied = self.open.iter().any(|open| open.kind == Kind::ForeignCall);
+        let applied =
+            !self.in_object && self.open.iter().any(|open| open.kind == Kind::ForeignCall);
         if self.operator || applied || factor {
             self.spoil(calculation(self.line, start));
         }

@@ -5,12 +5,15 @@
 //! the numbers make 4×4 matrices.
 
 mod assembly;
+mod file;
 mod literal;
 mod notation;
+mod npy;
 mod number;
 mod source;
 mod table;
 
+pub use file::{decode, parse_file};
 pub use number::{DecimalMark, NumberProblem, PrintedNumber, parse_number};
 
 use std::cmp::Reverse;
@@ -27,6 +30,20 @@ pub struct ReadOptions {
     pub decimal: Option<DecimalMark>,
     /// `None`: found out. Means nothing in bracketed forms.
     pub delimiter: Option<Delimiter>,
+    /// `None`: found out. Means something in saved arrays alone.
+    pub stacking: Option<Stacking>,
+}
+
+/// More numbers are refused: ten thousand matrices are a twelfth.
+const MOST_NUMBERS: usize = 2_000_000;
+
+/// Which axes of a saved array count the matrices.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Stacking {
+    /// The first: (N, 4, 4), (N, 16).
+    First,
+    /// The last: (4, 4, N), (16, N).
+    Last,
 }
 
 /// What stands between the numbers of a row.
@@ -51,6 +68,8 @@ pub enum Form {
     Brackets,
     /// Brackets with rows that end at semicolons.
     BracketsWithSemicolons,
+    /// An array that a program saved.
+    Binary,
 }
 
 /// One matrix of a text.
@@ -84,6 +103,8 @@ pub struct ReadingDescription {
     pub delimiter: Option<Delimiter>,
     /// Lines of text before the first numbers.
     pub header_row_count: usize,
+    /// `None` but in saved arrays.
+    pub stacking: Option<Stacking>,
 }
 
 /// A second reading that gives other numbers.
@@ -227,17 +248,7 @@ impl Choice {
             .collect();
         let mut notes = assembly.into_notes();
         if !alternatives.is_empty() {
-            notes.insert(
-                0,
-                Note {
-                    severity: Severity::Warning,
-                    code: "ambiguous-reading",
-                    message:
-                        "These numbers can be read in more than one way; choose the right one."
-                            .to_owned(),
-                    at: None,
-                },
-            );
+            notes.insert(0, ambiguous());
         }
         Ok(MatricesRead {
             matrices,
@@ -245,6 +256,15 @@ impl Choice {
             alternatives,
             notes,
         })
+    }
+}
+
+fn ambiguous() -> Note {
+    Note {
+        severity: Severity::Warning,
+        code: "ambiguous-reading",
+        message: "These numbers can be read in more than one way; choose the right one.".to_owned(),
+        at: None,
     }
 }
 

@@ -20,6 +20,7 @@ pub(super) fn untypeset(line: &mut [char]) {
                 // An exponent.
                 line[at..]
                     .iter()
+                    .take(12)
                     .position(|&c| c == '}')
                     .map_or(1, |length| length + 1)
             }

@@ -1,6 +1,6 @@
 use std::ops::Range;
 
-use super::notation;
+use super::{MOST_NUMBERS, notation};
 use crate::error::{Error, Result};
 
 /// A longer text is refused: ten thousand matrices take a quarter of it.
@@ -8,9 +8,6 @@ const LARGEST_TEXT: usize = 16 << 20;
 
 /// More lines are refused: ten thousand matrices, one number a line, are a sixth.
 const MOST_LINES: usize = 1_000_000;
-
-/// More numbers are refused: ten thousand matrices are a twelfth.
-const MOST_NUMBERS: usize = 2_000_000;
 
 /// Stands for characters of no width.
 pub(super) const NOTHING: char = '\0';
@@ -90,13 +87,14 @@ impl Source {
         let end = self.characters.len();
         let line = &mut self.characters[start..];
         let per_cent: Vec<usize> = (1..line.len())
+            .filter(|&k| line[k] == '%')
             .filter(|&k| {
                 let before = line[..k].iter().rfind(|&&c| c != ' ');
                 let after = line[k + 1..].iter().find(|&&c| !is_blank(c));
                 let ends = after.is_none_or(|&c| {
                     c.is_ascii_digit() || matches!(c, ',' | ';' | '-' | '+' | '.')
                 });
-                line[k] == '%' && before.is_some_and(char::is_ascii_digit) && ends
+                before.is_some_and(char::is_ascii_digit) && ends
             })
             .collect();
         // One alone may begin an empty comment, which changes nothing.

@@ -148,6 +148,7 @@ impl Reader<'_> {
                 grouped: self.dialect.grouped,
                 delimiter: Some(self.dialect.delimiter),
                 header_row_count,
+                stacking: None,
             },
             assembly: Assembly::of(with_air(blocks)),
         })

@@ -7,6 +7,7 @@ use wasm_bindgen::JsValue;
 use crate::error::{Error, Note, Place, Severity};
 use crate::text::{
     Alternative, DecimalMark, Delimiter, Form, MatricesRead, MatrixRead, ReadingDescription,
+    Stacking,
 };
 
 /// Plain objects and arrays; `None` as `null`.
@@ -99,6 +100,8 @@ pub struct MatricesTwin {
 #[derive(Serialize)]
 struct MatrixTwin {
     mueller: [f64; 16],
+    sigma: Option<[f64; 16]>,
+    coordinate: Option<f64>,
     label: Option<String>,
     line: usize,
     decimals: Option<u32>,
@@ -111,6 +114,7 @@ struct ReadingTwin {
     decimal_char: char,
     group_char: Option<char>,
     delimiter: Option<&'static str>,
+    stacking: Option<&'static str>,
     order: &'static str,
     header_row_count: usize,
     count: usize,
@@ -144,6 +148,8 @@ fn matrices(read: &[MatrixRead]) -> Vec<MatrixTwin> {
     read.iter()
         .map(|one| MatrixTwin {
             mueller: one.mueller,
+            sigma: one.sigma,
+            coordinate: one.coordinate,
             label: one.label.clone(),
             line: one.line,
             decimals: one.decimals,
@@ -157,6 +163,7 @@ fn reading(reading: &ReadingDescription, count: usize) -> ReadingTwin {
             Form::Table => "table",
             Form::Brackets => "brackets",
             Form::BracketsWithSemicolons => "bracketsWithSemicolons",
+            Form::Binary => "binary",
         },
         decimal_char: reading.decimal.char(),
         group_char: reading.grouped.then_some(match reading.decimal {
@@ -168,6 +175,10 @@ fn reading(reading: &ReadingDescription, count: usize) -> ReadingTwin {
             Delimiter::Semicolon => "semicolon",
             Delimiter::Comma => "comma",
             Delimiter::Space => "space",
+        }),
+        stacking: reading.stacking.map(|stacking| match stacking {
+            Stacking::First => "first",
+            Stacking::Last => "last",
         }),
         // A flat sixteen looks the same either way: the convention decides.
         order: "rows",

@@ -51,6 +51,30 @@ pub fn parse_matrices(
     to_js(&MatricesTwin::from(&read))
 }
 
+/// Reads matrices from the bytes of a file: text in the usual encodings, or an array
+/// that NumPy saved.
+///
+/// # Errors
+/// Where nothing can be read: the reason, with line and character in a text.
+#[wasm_bindgen(js_name = parseFile, unchecked_return_type = "MatricesRead")]
+pub fn parse_file(
+    bytes: &[u8],
+    #[wasm_bindgen(unchecked_param_type = "ReadOptions | undefined")] options: &JsValue,
+) -> JsResult {
+    let options = plain(options).and_then(|options| read_options(&options));
+    let read = thrown(options.and_then(|options| text::parse_file(bytes, &options)))?;
+    to_js(&MatricesTwin::from(&read))
+}
+
+/// The text of a file in UTF-8, UTF-16 or Windows-1252.
+///
+/// # Errors
+/// `form-not-read` for what is no text.
+#[wasm_bindgen(js_name = decodeText)]
+pub fn decode_text(bytes: &[u8]) -> Result<String, JsValue> {
+    thrown(text::decode(bytes)).map(|(text, _)| text)
+}
+
 /// Examines one measured matrix.
 ///
 /// # Errors

@@ -9,7 +9,7 @@ use crate::error::Result;
 use crate::json::Fields;
 use crate::mueller::Mueller;
 use crate::noise::{Measurement, Noise};
-use crate::text::{DecimalMark, Delimiter, ReadOptions};
+use crate::text::{DecimalMark, Delimiter, ReadOptions, Stacking};
 
 /// A request as a plain value; `undefined` and `null` are an empty one.
 pub fn plain(value: &JsValue) -> Result<Value> {
@@ -153,7 +153,7 @@ pub fn format_request(request: &Value) -> Result<(f64, Option<f64>)> {
 
 /// What is settled about a text.
 pub fn read_options(request: &Value) -> Result<ReadOptions> {
-    let fields = Fields::of(request, "", &["decimal", "delimiter"])?;
+    let fields = Fields::of(request, "", &["decimal", "delimiter", "stacking"])?;
     Ok(ReadOptions {
         decimal: fields.choice(
             "decimal",
@@ -167,6 +167,10 @@ pub fn read_options(request: &Value) -> Result<ReadOptions> {
                 ("comma", Delimiter::Comma),
                 ("space", Delimiter::Space),
             ],
+        )?,
+        stacking: fields.choice(
+            "stacking",
+            &[("first", Stacking::First), ("last", Stacking::Last)],
         )?,
     })
 }

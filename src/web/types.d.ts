@@ -226,6 +226,8 @@ export interface ReadOptions {
     decimal?: "point" | "comma";
     /** Means nothing in bracketed forms. */
     delimiter?: "tab" | "semicolon" | "comma" | "space";
+    /** Which axes of a saved array count the matrices; means nothing elsewhere. */
+    stacking?: "first" | "last";
 }
 
 /** Where something is wrong: a field of the request, or a spot of a text, counted from one. */
@@ -241,6 +243,10 @@ export interface Note {
 export interface MatrixRead {
     /** In the order of the text. */
     mueller: Matrix16;
+    /** The uncertainties printed with the numbers, one standard deviation each. */
+    sigma: Matrix16 | null;
+    /** Where in a series it belongs: a column before the sixteen, or a title such as "450 nm". */
+    coordinate: number | null;
     /** From a comment, a name or a row label beside it. */
     label: string | null;
     /** Where it begins, counted from one. */
@@ -250,11 +256,13 @@ export interface MatrixRead {
 }
 
 export interface Reading {
-    form: "table" | "brackets" | "bracketsWithSemicolons";
+    form: "table" | "brackets" | "bracketsWithSemicolons" | "binary";
     decimalChar: "." | ",";
     /** The mark of thousands that was dropped. */
     groupChar: "," | "." | null;
     delimiter: "tab" | "semicolon" | "comma" | "space" | null;
+    /** Which axes counted the matrices; null but in saved arrays. */
+    stacking: "first" | "last" | null;
     order: "rows";
     headerRowCount: number;
     count: number;

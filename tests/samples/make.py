@@ -249,5 +249,34 @@ write("per_cent_gaps", "\n".join(rows([["%.2f %%" % (100 * x) for x in row] for 
 counts = np.round(one * 45000).astype(int)
 write("grouped_by_spaces", "\n".join(rows([[f"{x:,}".replace(",", "\u202f") for x in row] for row in counts], "\t")), counts)
 
+# Files: arrays as NumPy saves them, tables as spreadsheets save them.
+def save(name, array, matrices):
+    np.save(HERE / "files" / name, array)
+    files[f"{name}.npy"] = np.asarray(matrices, dtype=float).reshape(-1, 16).tolist()
+
+
+files = {}
+(HERE / "files").mkdir(exist_ok=True)
+stack = np.array(many)
+save("one", full, full)
+save("sixteen", full.ravel(), full)
+save("stack", stack, stack)
+save("stack_last", np.moveaxis(stack, 0, -1).copy(), stack)
+save("fortran", np.asfortranarray(stack), stack)
+save("rows", stack.reshape(5, 16), stack)
+save("rows_last", stack.reshape(5, 16).T.copy(), stack)
+save("map", np.array([many[:3], many[2:]]), [many[:3], many[2:]])
+save("big_endian", stack.astype(">f8"), stack)
+save("single", stack.astype("<f4"), stack.astype("<f4"))
+save("half", stack.astype("<f2"), stack.astype("<f2"))
+save("signed", (stack * 100).astype("<i4"), (stack * 100).astype("<i4"))
+save("bytes", np.abs(stack * 100).astype("|u1"), np.abs(stack * 100).astype("|u1"))
+for name, encoding in [("utf16le.txt", "utf-16-le"), ("utf16be.txt", "utf-16-be"), ("utf8.csv", "utf-8-sig"), ("cp1252.csv", "cp1252")]:
+    bom = "\ufeff" if encoding.startswith("utf-16") else ""
+    text = bom + "\u00b5-Film \u2013 A\r\n" + "\r\n".join(rows(comma, "\t" if bom else ";")) + "\r\n"
+    (HERE / "files" / name).write_bytes(text.encode(encoding))
+    files[name] = [said]
+(HERE / "files" / "expected.json").write_text(json.dumps(files) + "\n")
+
 (HERE / "expected.json").write_text(json.dumps(expected, indent=0) + "\n")
 print(len(expected), "samples")
