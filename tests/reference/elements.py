@@ -63,7 +63,8 @@ def elliptical_retarder(retardance, axis):
 def elliptical_diattenuator(transmittance, vector):
     vector = np.asarray(vector, float)
     size2 = vector @ vector
-    root = np.sqrt(max(0.0, 1 - size2))
+    # The root of a last bit would be 1e-8, and processors differ in that bit.
+    root = np.sqrt(1 - size2) if 1 - size2 > 1e-15 else 0.0
     mueller = np.eye(4)
     mueller[0, 1:] = mueller[1:, 0] = vector
     if size2 > 0:
