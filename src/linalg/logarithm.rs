@@ -37,8 +37,8 @@ pub fn principal_logarithm(matrix: &Matrix4<f64>) -> Result<Matrix4<f64>> {
     }
     let scaled = matrix / scale;
     let inverse = scaled.try_inverse().ok_or_else(singular)?;
-    // The negation also refuses an inverse that is not a number.
-    if !(scaled.norm() * inverse.norm() * tolerance::NOT_DETERMINED < 1.0) {
+    let condition = scaled.norm() * inverse.norm();
+    if condition.is_nan() || condition * tolerance::NOT_DETERMINED > 1.0 {
         return Err(singular());
     }
     if has_negative_eigenvalue(&scaled)? {
