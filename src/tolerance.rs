@@ -23,3 +23,7 @@ pub const NEGATIVE_AXIS: f64 = 1e-7;
 /// Largest element that is left of a difference when a matrix square root has
 /// settled: rounding of a few operations on numbers of order one.
 pub const ROOT_SETTLED: f64 = 1e-14;
+
+/// Largest and, inverted, smallest refractive index that is taken: far beyond any
+/// material, and squares stay exact enough.
+pub const LARGEST_INDEX: f64 = 1e6;

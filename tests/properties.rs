@@ -145,8 +145,8 @@ proptest! {
         let found = differential(&m);
         let axis = [(2.0 * ellipticity).cos() * (2.0 * azimuth).cos(), (2.0 * ellipticity).cos() * (2.0 * azimuth).sin(), (2.0 * ellipticity).sin()];
         let properties = found.properties.unwrap();
-        for k in 0..3 {
-            close(properties.birefringence[k], retardance * axis[k], 1e-12);
+        for (k, part) in axis.into_iter().enumerate() {
+            close(properties.birefringence[k], retardance * part, 1e-12);
             close(properties.dichroism[k], 0.0, 1e-12);
         }
         close_matrix(&found.depolarizing.unwrap(), &diagonal([0.0; 4]), 1e-12);
