@@ -4,6 +4,8 @@ Convention: angles counter-clockwise from x for an observer facing the source, S
 clockwise for that observer, time dependence exp(+iωt). Angles in degrees, 4x4 NumPy arrays.
 """
 
+import math
+
 import numpy as np
 
 PAULI = np.array(
