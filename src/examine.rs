@@ -2,7 +2,8 @@
 
 use crate::coherency::{Nearest, Realizability, realizability};
 use crate::decompose::{
-    Isotropic, PolarFactors, PureComponent, isotropic, polar_reverse, spectral,
+    Differential, Isotropic, MixedComponent, PolarFactors, PureComponent, characteristic,
+    differential, isotropic, polar_reverse, spectral,
 };
 use crate::error::Result;
 use crate::figures::{Analysis, FigureTable, figures};
@@ -23,6 +24,10 @@ pub struct Examination {
     pub polar_reverse: Option<PolarFactors>,
     /// Of the nearest matrix; `None` unless its M00 is positive.
     pub spectral: Option<[PureComponent; 4]>,
+    /// Of the nearest matrix; `None` unless its M00 is positive.
+    pub characteristic: Option<[MixedComponent; 4]>,
+    /// Of the measured matrix; `None` unless M00 is positive.
+    pub differential: Option<Differential>,
     /// Of the measured matrix; `None` unless M00 is positive.
     pub isotropic: Option<Isotropic>,
 }
@@ -37,6 +42,7 @@ pub struct Examination {
 pub fn examine(measurement: &Measurement, seed: Option<u64>) -> Result<Examination> {
     let analysis = Analysis::of(measurement)?;
     let nearest = analysis.nearest.as_ref();
+    let components = nearest.and_then(|nearest| spectral(&nearest.eigenvalues, &analysis.eigen));
     Ok(Examination {
         realizability: realizability(measurement, &analysis.eigen, nearest, seed)?,
         figures: figures(&analysis, seed.is_some())?,
@@ -45,7 +51,13 @@ pub fn examine(measurement: &Measurement, seed: Option<u64>) -> Result<Examinati
             .normalised_nearest
             .map(|m| polar_reverse(&m, analysis.normalised_sigma))
             .transpose()?,
-        spectral: nearest.and_then(|nearest| spectral(&nearest.eigenvalues, &analysis.eigen)),
+        characteristic: components.as_ref().map(characteristic),
+        spectral: components,
+        differential: measurement
+            .mueller()
+            .normalised()
+            .filter(|_| measurement.mueller().m00() > 0.0)
+            .map(|m| differential(&m)),
         isotropic: isotropic(measurement, &analysis.eigen),
         nearest: analysis.nearest,
     })

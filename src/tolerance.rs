@@ -15,3 +15,15 @@ pub const STANDARD_ERRORS: f64 = 3.0;
 
 /// The level of every test.
 pub const SIGNIFICANCE: f64 = 0.05;
+
+/// An eigenvalue whose argument is this near π, in radians, counts as negative and
+/// real: rounding moves a double eigenvalue by the square root of the precision.
+pub const NEGATIVE_AXIS: f64 = 1e-7;
+
+/// Largest element that is left of a difference when a matrix square root has
+/// settled: rounding of a few operations on numbers of order one.
+pub const ROOT_SETTLED: f64 = 1e-14;
+
+/// Largest and, inverted, smallest refractive index that is taken: far beyond any
+/// material, and squares stay exact enough.
+pub const LARGEST_INDEX: f64 = 1e6;

@@ -22,7 +22,7 @@ struct Case<'a> {
     compared: usize,
 }
 
-impl Case<'_> {
+impl<'a> Case<'a> {
     fn number(
         &mut self,
         what: &str,
@@ -83,6 +83,63 @@ impl Case<'_> {
                 );
             }
         }
+    }
+
+    fn characteristic(&mut self) {
+        let parts = self.found.characteristic;
+        for (k, expected) in self.list("characteristic").iter().enumerate() {
+            let part = parts.map(|parts| parts[k]);
+            let weight = part.map(|part| part.weight);
+            self.number(
+                "characteristic.weight",
+                weight,
+                &expected["weight"],
+                1.0,
+                None,
+            );
+            if let Some(mueller) = expected.get("mueller") {
+                let found = part.map(|part| part.mueller.row_major());
+                let found = found.as_ref().map(|e| e.as_slice());
+                self.numbers("characteristic.mueller", found, mueller, 1.0);
+            }
+        }
+    }
+
+    fn differential(&mut self) {
+        let Some(expected) = self.expected.get("differential") else {
+            return;
+        };
+        let found = self.found.differential.unwrap();
+        assert_eq!(found.reason.is_some(), expected.is_null(), "{}", self.label);
+        for (name, part) in [("mean", found.mean), ("depolarizing", found.depolarizing)] {
+            let elements = part.map(|part| part.row_major());
+            let elements = elements.as_ref().map(|e| e.as_slice());
+            self.numbers(
+                &format!("differential.{name}"),
+                elements,
+                &expected[name],
+                1.0,
+            );
+        }
+        let properties = found.properties;
+        for (k, names) in [
+            ("linearBirefringence", "linearDichroism"),
+            ("linearBirefringence45", "linearDichroism45"),
+            ("circularBirefringence", "circularDichroism"),
+        ]
+        .into_iter()
+        .enumerate()
+        {
+            let birefringence = properties.map(|p| p.birefringence[k]);
+            self.number(names.0, birefringence, &expected[names.0], 1.0, None);
+            let dichroism = properties.map(|p| p.dichroism[k]);
+            self.number(names.1, dichroism, &expected[names.1], 1.0, None);
+        }
+    }
+
+    fn list(&self, what: &str) -> &'a [Value] {
+        let list = self.expected.get(what).and_then(Value::as_array);
+        list.map_or(&[], Vec::as_slice)
     }
 
     fn check(&mut self) {
@@ -147,6 +204,8 @@ impl Case<'_> {
                 1.0,
             );
         }
+        self.characteristic();
+        self.differential();
         if let Some(isotropic) = expected.get("isotropic") {
             let found = self.found.isotropic;
             if let Some(alpha) = isotropic.get("alpha") {
@@ -213,5 +272,5 @@ fn engine_agrees_with_the_definitions() {
         compared += case.compared;
     }
     // Missing keys are no expectation; that there are enough is one.
-    assert!(compared > 20_000, "{compared}");
+    assert!(compared > 30_000, "{compared}");
 }

@@ -4,7 +4,7 @@ mod common;
 
 use common::{any_matrix, close};
 use halfshade::coherency::Coherency;
-use halfshade::linalg::{hermitian_eigen, svd3};
+use halfshade::linalg::{hermitian_eigen, principal_logarithm, svd3};
 use nalgebra::{Matrix3, Matrix4};
 use num_complex::Complex64;
 use proptest::prelude::*;
@@ -21,6 +21,16 @@ fn entry() -> impl Strategy<Value = f64> {
     ]
 }
 
+/// Of a small matrix: `Σ Aᵏ / k!`.
+fn exponential(exponent: &Matrix4<f64>) -> Matrix4<f64> {
+    let (mut sum, mut term) = (Matrix4::identity(), Matrix4::identity());
+    for k in 1..60 {
+        term = term * exponent / f64::from(k);
+        sum += term;
+    }
+    sum
+}
+
 proptest! {
     #![proptest_config(ProptestConfig::with_cases(4000))]
 
@@ -34,6 +44,34 @@ proptest! {
         close((product - m).amax(), 0.0, 1e-14);
         close((svd.left.transpose() * svd.left - Matrix3::identity()).amax(), 0.0, 1e-14);
         close((svd.right_transposed * svd.right_transposed.transpose() - Matrix3::identity()).amax(), 0.0, 1e-14);
+    }
+
+    /// The exponential, by its power series, is inverse to the logarithm where every
+    /// eigenvalue keeps its imaginary part within (-π, π): the norm bounds them.
+    #[test]
+    fn logarithm_inverts_the_exponential(entries in prop::array::uniform16(-0.75..0.75_f64)) {
+        let exponent = Matrix4::from_row_slice(&entries);
+        let found = principal_logarithm(&exponential(&exponent)).unwrap();
+        close((found - exponent).amax(), 0.0, 1e-12);
+    }
+
+    /// A scale, also an extreme one, only adds to the trace.
+    #[test]
+    fn logarithm_of_a_multiple(entries in prop::array::uniform16(-0.5..0.5_f64), decade in -140..140_i32) {
+        let matrix = exponential(&Matrix4::from_row_slice(&entries));
+        let scale = 10_f64.powi(decade);
+        let expected = principal_logarithm(&matrix).unwrap() + Matrix4::identity() * scale.ln();
+        close((principal_logarithm(&(matrix * scale)).unwrap() - expected).amax(), 0.0, 1e-12);
+    }
+
+    /// No input hangs it or gives what is not a number.
+    #[test]
+    fn logarithm_is_finite_or_refused(entries in prop::array::uniform16(prop_oneof![
+        Just(0.0), Just(1.0), Just(-1.0), Just(1e150), Just(1e-150), Just(5e-324), -1.0..1.0_f64,
+    ])) {
+        if let Ok(found) = principal_logarithm(&Matrix4::from_row_slice(&entries)) {
+            prop_assert!(found.iter().all(|v| v.is_finite()));
+        }
     }
 
     #[test]
@@ -62,4 +100,26 @@ fn values_that_are_not_finite_are_refused() {
         svd3(&Matrix3::repeat(f64::NAN)).unwrap_err().code,
         "not-finite"
     );
+    assert_eq!(
+        principal_logarithm(&Matrix4::repeat(f64::NAN))
+            .unwrap_err()
+            .code,
+        "not-finite"
+    );
+}
+
+/// N. J. Higham, *Functions of Matrices* (2008), theorem 1.31 (from memory): the
+/// principal logarithm exists unless an eigenvalue lies on the closed negative axis.
+#[test]
+fn logarithm_says_why_it_does_not_exist() {
+    let code = |diagonal: [f64; 4]| {
+        principal_logarithm(&Matrix4::from_diagonal(&diagonal.into()))
+            .unwrap_err()
+            .code
+    };
+    assert_eq!(code([1.0, 1.0, -1.0, -1.0]), "negative-eigenvalue");
+    assert_eq!(code([1.0, 0.5, 0.2, -1e-3]), "negative-eigenvalue");
+    assert_eq!(code([1.0, 1.0, 1.0, 0.0]), "singular");
+    assert_eq!(code([1.0, 1e-10, 1.0, 1.0]), "singular");
+    assert_eq!(code([0.0; 4]), "singular");
 }

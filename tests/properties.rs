@@ -7,7 +7,7 @@ use common::{
     polarizing_series,
 };
 use halfshade::coherency::{Coherency, Verdict, nearest};
-use halfshade::decompose::{isotropic, polar_forward, polar_reverse};
+use halfshade::decompose::{differential, isotropic, polar_forward, polar_reverse};
 use halfshade::examine::examine;
 use halfshade::figures::FigureName;
 use halfshade::mueller::{Mueller, elements};
@@ -111,6 +111,76 @@ proptest! {
         close(model.alpha, alpha, 1e-12);
         close_matrix(&model.mueller, &m, 1e-12);
         close_matrix(&model.jones.unwrap().mueller(), &pure, 1e-11);
+    }
+
+    /// Gil 2007: the four parts add up to the nearest matrix, which is physical (the
+    /// sum: from memory; weights that fall from one to zero: derived).
+    #[test]
+    fn characteristic_parts_recompose(m in any_matrix(), exact in any::<bool>()) {
+        let mut elements = m.row_major();
+        elements[0] += 1.0;
+        let m = Mueller::from_row_major(&elements).unwrap();
+        let found = examine(&measurement(m, exact, Noise::None), None).unwrap();
+        let nearest = found.nearest.unwrap().mueller.normalised().unwrap();
+        let parts = found.characteristic.unwrap();
+        let sum: [f64; 16] = std::array::from_fn(|k| parts.iter().map(|part| part.weight * part.mueller.row_major()[k]).sum());
+        close_matrix(&Mueller::from_row_major(&sum).unwrap(), &nearest, 1e-10);
+        for part in parts {
+            prop_assert!(part.weight >= 0.0);
+            close(part.mueller.m00(), 1.0, 1e-14);
+        }
+        // Rank one, two and three.
+        for (k, part) in parts.iter().take(3).enumerate() {
+            let values = Coherency::from_mueller(&part.mueller).eigen().unwrap().values;
+            for (n, value) in values.iter().enumerate() {
+                close(*value, if n <= k { 1.0 / (k as f64 + 1.0) } else { 0.0 }, 1e-13);
+            }
+        }
+    }
+
+    /// A retarder is `exp` of its retardance about its axis (derived).
+    #[test]
+    fn logarithm_of_a_retarder(retardance in 0.0..3.1_f64, azimuth in 0.0..3.1_f64, ellipticity in -0.7..0.7_f64) {
+        let m = elements::elliptical_retarder(retardance, azimuth, ellipticity).unwrap();
+        let found = differential(&m);
+        let axis = [(2.0 * ellipticity).cos() * (2.0 * azimuth).cos(), (2.0 * ellipticity).cos() * (2.0 * azimuth).sin(), (2.0 * ellipticity).sin()];
+        let properties = found.properties.unwrap();
+        for (k, part) in axis.into_iter().enumerate() {
+            close(properties.birefringence[k], retardance * part, 1e-12);
+            close(properties.dichroism[k], 0.0, 1e-12);
+        }
+        close_matrix(&found.depolarizing.unwrap(), &diagonal([0.0; 4]), 1e-12);
+    }
+
+    /// A diattenuator is `exp` of artanh D along its axis, which is half of the
+    /// logarithm of the ratio of its transmittances (derived).
+    #[test]
+    fn logarithm_of_a_diattenuator(low in 0.01..1.0_f64, axis in 0.0..3.1_f64) {
+        let m = elements::linear_diattenuator(1.0, low, axis).unwrap().normalised().unwrap();
+        let found = differential(&m);
+        let properties = found.properties.unwrap();
+        for (k, part) in [(2.0 * axis).cos(), (2.0 * axis).sin(), 0.0].into_iter().enumerate() {
+            close(properties.dichroism[k], -0.5 * low.ln() * part, 1e-11);
+            close(properties.birefringence[k], 0.0, 1e-11);
+        }
+        close_matrix(&found.depolarizing.unwrap(), &diagonal([0.0; 4]), 1e-11);
+    }
+
+    /// `exp(Lm + Lu)` is the matrix again, but for the isotropic absorption that the
+    /// depolarizing part leaves out; there det m gives it (Jacobi: det exp = exp tr).
+    #[test]
+    fn logarithm_recomposes((diattenuator, retarder, depolarizer) in polarizing_series()) {
+        let m = (depolarizer * retarder * diattenuator).normalised().unwrap();
+        let found = differential(&m);
+        prop_assume!(found.reason.is_none());
+        let (mean, rest) = (found.mean.unwrap().row_major(), found.depolarizing.unwrap().row_major());
+        let whole = nalgebra::Matrix4::from_row_slice(&std::array::from_fn::<f64, 16, _>(|k| mean[k] + rest[k]));
+        let again = whole.exp();
+        let m = nalgebra::Matrix4::from_row_slice(&m.row_major());
+        let absorption = (m.determinant() / again.determinant()).powf(0.25);
+        close((again * absorption - m).amax(), 0.0, 1e-10);
+        // The first of the depolarizing part is left out, as Lu = ½ ln(1 - D²) I of a diattenuator.
+        close(rest[0], 0.0, 0.0);
     }
 
     /// `3 PΔ² = 2 P1² + ⅔ P2² + ⅓ P3²` (San José & Gil 2011) and

@@ -8,7 +8,7 @@ use halfshade::coherency::{Coherency, Verdict};
 use halfshade::convention::{AngleSense, Convention, PositiveS3, TimeSign, ZeroAngle};
 use halfshade::examine::{Examination, examine};
 use halfshade::figures::Unit;
-use halfshade::mueller::{Jones, Mueller, elements};
+use halfshade::mueller::{Interface, Jones, Mueller, elements};
 use halfshade::noise::{Measurement, Noise};
 use halfshade::state::Stokes;
 use halfshade::stats::NormalDraws;
@@ -51,6 +51,40 @@ fn element(value: &Value) -> Mueller {
             angle("azimuthDeg"),
             angle("ellipticityDeg"),
         ),
+        "ellipticalDiattenuator" => {
+            let (s2, c2) = (2.0 * angle("azimuthDeg")).sin_cos();
+            let (s3, c3) = (2.0 * angle("ellipticityDeg")).sin_cos();
+            elements::elliptical_diattenuator(
+                parameter("transmittance"),
+                [c3 * c2, c3 * s2, s3].map(|v| parameter("diattenuation") * v),
+            )
+        }
+        "alignedDiattenuatingRetarder" => elements::aligned_diattenuating_retarder(
+            parameter("transmittance"),
+            parameter("diattenuation"),
+            angle("retardanceDeg"),
+            angle("axisDeg"),
+        ),
+        "isotropicReflector" => elements::isotropic_reflector(
+            angle("psiDeg"),
+            angle("deltaDeg"),
+            parameter("reflectance"),
+            angle("planeDeg"),
+        ),
+        kind @ ("fresnelReflection" | "fresnelTransmission") => {
+            let interface = Interface::new(
+                parameter("indexBefore"),
+                parameter("indexAfter"),
+                parameter("absorption"),
+                angle("incidenceDeg"),
+            )
+            .unwrap();
+            if kind == "fresnelReflection" {
+                elements::fresnel_reflection(&interface, angle("planeDeg"))
+            } else {
+                elements::fresnel_transmission(&interface, angle("planeDeg"))
+            }
+        }
         "rotator" => elements::rotator(angle("angleDeg")),
         "isotropicDepolarizer" => elements::isotropic_depolarizer(parameter("alpha")),
         "diagonalDepolarizer" => {
@@ -241,6 +275,28 @@ impl Entry<'_> {
                 let product =
                     found.depolarizer.unwrap() * found.retarder.unwrap() * found.diattenuator;
                 self.all_close("product", &product.row_major(), &self.expect["mueller"]);
+            }
+            "differential" => {
+                let found = self.examined(Noise::None, false).differential.unwrap();
+                let properties = found.properties.unwrap();
+                self.each(|name, expected| match name {
+                    "mean" => self.all_close(name, &found.mean.unwrap().row_major(), expected),
+                    "depolarizing" => {
+                        self.all_close(name, &found.depolarizing.unwrap().row_major(), expected);
+                    }
+                    name => {
+                        let value = match name {
+                            "linearBirefringence" => properties.birefringence[0],
+                            "linearBirefringence45" => properties.birefringence[1],
+                            "circularBirefringence" => properties.birefringence[2],
+                            "linearDichroism" => properties.dichroism[0],
+                            "linearDichroism45" => properties.dichroism[1],
+                            "circularDichroism" => properties.dichroism[2],
+                            name => panic!("{name}"),
+                        };
+                        self.close(name, value, expected.as_f64().unwrap());
+                    }
+                });
             }
             "spectral" => {
                 let parts = self.examined(Noise::None, false).spectral.unwrap();

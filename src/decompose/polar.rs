@@ -2,7 +2,7 @@ use nalgebra::{Matrix3, Vector3};
 
 use crate::error::Result;
 use crate::linalg::svd3;
-use crate::mueller::Mueller;
+use crate::mueller::{Mueller, unit_diattenuator};
 use crate::state::half_turn;
 use crate::tolerance;
 
@@ -68,7 +68,7 @@ pub fn polar_forward(normalised: &Mueller, sigma: Option<f64>) -> Result<PolarFa
     let m = normalised.matrix();
     let vector = Vector3::new(m[(0, 1)], m[(0, 2)], m[(0, 3)]);
     let diattenuation = vector.norm().min(1.0);
-    let diattenuator = diattenuator(&vector);
+    let diattenuator = unit_diattenuator(&vector);
     let threshold = sigma.map_or(tolerance::NOT_DETERMINED, |sigma| {
         tolerance::STANDARD_ERRORS * sigma
     });
@@ -87,7 +87,7 @@ pub fn polar_forward(normalised: &Mueller, sigma: Option<f64>) -> Result<PolarFa
     }
 
     // MD(D)⁻¹ = MD(-D) / (1 - D²)
-    let inverse = self::diattenuator(&-vector).matrix() / (1.0 - diattenuation * diattenuation);
+    let inverse = unit_diattenuator(&-vector).matrix() / (1.0 - diattenuation * diattenuation);
     let product = m * inverse;
     let block = product.fixed_view::<3, 3>(1, 1).into_owned();
     let polarizance = product.fixed_view::<3, 1>(1, 0).into_owned();
@@ -140,15 +140,6 @@ pub fn polar_reverse(normalised: &Mueller, sigma: Option<f64>) -> Result<PolarFa
         parameters: retarder.map(|factor| parameters(&factor.block(), threshold)),
         ..forward
     })
-}
-
-/// `[[1, Dᵀ], [D, q I + (1 - q) d dᵀ]]`, `q = sqrt(1 - D²)`, `d = D⃗/D`.
-fn diattenuator(vector: &Vector3<f64>) -> Mueller {
-    let square = vector.norm_squared();
-    let q = (1.0 - square).max(0.0).sqrt();
-    // (1 - q) / D² without its 0/0: 1 / (1 + q).
-    let outer = vector * vector.transpose() / (1.0 + q);
-    Mueller::from_parts(vector, vector, &(Matrix3::identity() * q + outer))
 }
 
 fn parameters(rotation: &Matrix3<f64>, threshold: f64) -> RetarderParameters {

@@ -4,9 +4,11 @@
 //! unsorted, and report failure as `None`.
 
 mod eigen;
+mod logarithm;
 mod svd;
 
 pub use eigen::{HermitianEigen, hermitian_eigen};
+pub use logarithm::principal_logarithm;
 pub use svd::{Svd3, svd3};
 
 use crate::error::Error;
@@ -24,6 +26,6 @@ fn not_finite() -> Error {
 fn no_convergence() -> Error {
     Error::new(
         "no-convergence",
-        "The eigenvalue iteration did not settle; the matrix is out of range.",
+        "The iteration did not settle; the matrix is out of range.",
     )
 }

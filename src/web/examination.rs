@@ -7,7 +7,7 @@ use serde::{Serialize, Serializer};
 
 use crate::coherency::{PassivityVerdict, Verdict};
 use crate::convention::Convention;
-use crate::decompose::{PolarFactors, PureComponent};
+use crate::decompose::{Differential, MixedComponent, PolarFactors, PureComponent};
 use crate::examine::Examination;
 use crate::figures::{Figure, FigureName, FigureTable, Unit};
 use crate::mueller::{Jones, Mueller};
@@ -89,7 +89,9 @@ impl Serialize for FiguresTwin {
 struct DecompositionsTwin {
     polar_forward: Option<PolarTwin>,
     polar_reverse: Option<PolarTwin>,
+    differential: Option<DifferentialTwin>,
     spectral: Vec<SpectralTwin>,
+    characteristic: Vec<CharacteristicTwin>,
     isotropic: Option<IsotropicTwin>,
     reason: Option<&'static str>,
 }
@@ -103,6 +105,28 @@ struct PolarTwin {
     retarder_axis: Option<[f64; 3]>,
     residual: Option<f64>,
     reason: Option<&'static str>,
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct DifferentialTwin {
+    mean: Option<[f64; 16]>,
+    depolarizing: Option<[f64; 16]>,
+    linear_birefringence: Option<f64>,
+    #[serde(rename = "linearBirefringence45")]
+    linear_birefringence_45: Option<f64>,
+    circular_birefringence: Option<f64>,
+    linear_dichroism: Option<f64>,
+    #[serde(rename = "linearDichroism45")]
+    linear_dichroism_45: Option<f64>,
+    circular_dichroism: Option<f64>,
+    reason: Option<&'static str>,
+}
+
+#[derive(Serialize)]
+struct CharacteristicTwin {
+    weight: f64,
+    mueller: [f64; 16],
 }
 
 #[derive(Serialize)]
@@ -270,6 +294,16 @@ impl Writer<'_> {
                 .polar_reverse
                 .as_ref()
                 .map(|factors| self.polar(factors)),
+            differential: found
+                .differential
+                .as_ref()
+                .map(|parts| self.differential(parts)),
+            characteristic: found
+                .characteristic
+                .iter()
+                .flatten()
+                .map(|component| self.characteristic(component))
+                .collect(),
             spectral: found
                 .spectral
                 .iter()
@@ -304,6 +338,31 @@ impl Writer<'_> {
                 .map(|axis| self.0.axis(&axis)),
             residual: factors.residual,
             reason: factors.reason,
+        }
+    }
+
+    /// The six scalars keep their meaning, such as "positive: x is fast", and not
+    /// their cell of the matrix: K M K has other signs there.
+    fn differential(&self, parts: &Differential) -> DifferentialTwin {
+        let birefringence = parts.properties.map(|p| self.0.axis(&p.birefringence));
+        let dichroism = parts.properties.map(|p| self.0.axis(&p.dichroism));
+        DifferentialTwin {
+            mean: parts.mean.map(|mean| self.mueller(&mean)),
+            depolarizing: parts.depolarizing.map(|part| self.mueller(&part)),
+            linear_birefringence: birefringence.map(|b| b[0]),
+            linear_birefringence_45: birefringence.map(|b| b[1]),
+            circular_birefringence: birefringence.map(|b| b[2]),
+            linear_dichroism: dichroism.map(|d| d[0]),
+            linear_dichroism_45: dichroism.map(|d| d[1]),
+            circular_dichroism: dichroism.map(|d| d[2]),
+            reason: parts.reason,
+        }
+    }
+
+    fn characteristic(&self, component: &MixedComponent) -> CharacteristicTwin {
+        CharacteristicTwin {
+            weight: component.weight,
+            mueller: self.mueller(&component.mueller),
         }
     }
 

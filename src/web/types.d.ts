@@ -115,6 +115,25 @@ export interface PolarDecomposition {
 /** `[re, im]` of the four entries, row by row. */
 export type JonesMatrix = [number, number][];
 
+/**
+ * The principal logarithm of the normalised matrix in two parts. Birefringences are
+ * differences of phase in radians, dichroisms half of the logarithm of a ratio of
+ * transmittances: pure numbers, accumulated along the path. In every convention a
+ * positive one means that light along the zero of angles, at +45°, or of positive S3
+ * is fast, or more transmitted. All are null where there is no logarithm.
+ */
+export interface DifferentialDecomposition {
+    mean: Matrix16 | null;
+    depolarizing: Matrix16 | null;
+    linearBirefringence: number | null;
+    linearBirefringence45: number | null;
+    circularBirefringence: number | null;
+    linearDichroism: number | null;
+    linearDichroism45: number | null;
+    circularDichroism: number | null;
+    reason: string | null;
+}
+
 export interface Examination {
     realizability: Realizability;
     nearest: {
@@ -129,8 +148,15 @@ export interface Examination {
         polarForward: PolarDecomposition | null;
         /** The depolarizer is first. */
         polarReverse: PolarDecomposition | null;
+        /** Of the measured matrix. */
+        differential: DifferentialDecomposition | null;
         /** Of the nearest realizable matrix; empty where M00 is not positive. */
         spectral: { weight: number; jones: JonesMatrix; mueller: Matrix16 }[];
+        /**
+         * Of the nearest realizable matrix: a pure part, equal mixtures of two and of
+         * three, and an ideal depolarizer. Empty where M00 is not positive.
+         */
+        characteristic: { weight: number; mueller: Matrix16 }[];
         isotropic: {
             alpha: Figure;
             jones: JonesMatrix | null;

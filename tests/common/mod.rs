@@ -157,6 +157,16 @@ pub fn all_finite(found: &Examination) {
                 .flat_map(|z| [z.re, z.im]),
         );
     }
+    for component in found.characteristic.iter().flatten() {
+        numbers.push(component.weight);
+        numbers.extend(component.mueller.row_major());
+    }
+    if let Some(parts) = &found.differential {
+        assert!(parts.mean.is_some() != parts.reason.is_some());
+        for part in [parts.mean, parts.depolarizing].into_iter().flatten() {
+            numbers.extend(part.row_major());
+        }
+    }
     if let Some(model) = &found.isotropic {
         numbers.extend(model.mueller.row_major());
         numbers.push(model.alpha);

@@ -134,6 +134,12 @@ test("an element comes back as the person would write it, in all sixteen convent
     close(axis?.[0], Math.cos((read * Math.PI) / 90));
     close(axis?.[1], Math.sin((read * Math.PI) / 90));
     mueller.forEach((v, n) => close(found.nearest.mueller[n], v, 1e-12));
+    const logarithm = found.decompositions.differential;
+    close(logarithm?.linearBirefringence, (Math.PI / 2) * Math.cos((read * Math.PI) / 90));
+    close(logarithm?.linearBirefringence45, (Math.PI / 2) * Math.sin((read * Math.PI) / 90));
+    close(logarithm?.circularBirefringence, 0);
+    close(found.decompositions.characteristic[0]?.weight, 1);
+    mueller.forEach((v, n) => close(found.decompositions.characteristic[0]?.mueller[n], v));
 
     const byColumns = mueller.map((_, n) => mueller[4 * (n & 3) + (n >> 2)]);
     const same = engine.examine({ mueller: byColumns, convention: { ...convention, order: "columns" }, draws: 0 });
@@ -148,6 +154,15 @@ test("circular diattenuation keeps its sense", () => {
   close(engine.examine({ mueller }).figures.circularDiattenuation.value, 1 / 3);
   const other = engine.examine({ mueller: theirs, convention: { positiveS3: "counterclockwise" } });
   close(other.figures.circularDiattenuation.value, -1 / 3);
+  close(other.decompositions.differential?.circularDichroism, -Math.atanh(1 / 3));
+});
+
+test("a half-wave retarder has no principal logarithm, and says why", () => {
+  const mueller = IDENTITY.map((v, k) => (k === 10 || k === 15 ? -v : v));
+  const found = engine.examine({ mueller }).decompositions.differential;
+  assert.equal(found?.mean, null);
+  assert.equal(found?.linearBirefringence, null);
+  assert.match(found?.reason ?? "", /negative/);
 });
 
 test("passivity of absolute matrices only", () => {

@@ -58,6 +58,8 @@ def examine(mueller, normalised):
         {key: transposed(x) if isinstance(x, list) else x for key, x in reverse.items()}
     )
     result["spectralWeights"] = doubles(x / sum(spectrum) for x in spectrum)
+    result["characteristic"] = characteristic(spectrum, vectors)
+    result["differential"] = differential(unit)
     result["isotropic"] = isotropic(values, vectors, scale)
     result["figures"]["isotropicAlpha"] = result["isotropic"]["alpha"]
     return without_omitted(result)
@@ -414,6 +416,70 @@ def isotropic(values, vectors, scale):
     return {"alpha": double(alpha), "mueller": doubles(x * scale for x in mueller_of(h))}
 
 
+# Characteristic decomposition (Gil 2007), by the indices of purity of the nearest matrix.
+
+def characteristic(spectrum, vectors):
+    """Weights P1, P2 − P1, P3 − P2, 1 − P3; each matrix with M00 = 1.
+
+    A mixture of the first k is unique only where its eigenvalue and the next differ.
+    """
+    a, b, c, d = [x / mp.fsum(spectrum) for x in spectrum]
+    p1, p2, p3 = a - b, a + b - 2 * c, a + b + c - 3 * d
+    parts = []
+    for count, weight in zip(range(1, 5), (p1, p2 - p1, p3 - p2, 1 - p3)):
+        h = assembled([mpf(1) / count] * count, vectors[:count])
+        parts.append({"weight": double(weight), "mueller": doubles(mueller_of(h)) if weight > PLENTY else OMIT})
+    return parts
+
+
+# Differential decomposition (Ossikovski 2011): the principal logarithm of m = M/M00.
+
+def differential(unit):
+    """Of the measured matrix. `None` where m is singular or has a real eigenvalue ≤ 0, no
+    expectation where the problem is ill-conditioned: where the condition number of m is
+    above 1e5, or an eigenvalue's argument is within 1e-5 of π, and not exactly so.
+    """
+    m = mp.matrix(4, 4)
+    for k in range(16):
+        m[k // 4, k % 4] = unit[k]
+    reciprocal = 0 if mp.det(m) == 0 else 1 / (mp.mnorm(m, "f") * mp.mnorm(mp.inverse(m), "f"))
+    if reciprocal < NOTHING:
+        return None
+    values = mp.eig(m, left=False, right=False)
+    distance = min(mp.pi - abs(mp.arg(x)) for x in values)
+    if distance < NOTHING:
+        return None
+    if reciprocal < PLENTY or distance < PLENTY:
+        return OMIT
+    whole = logarithm(m)
+    metric = mp.diag([1, -1, -1, -1])
+    mean = (whole - metric * whole.T * metric) / 2
+    rest = (whole + metric * whole.T * metric) / 2
+    return {
+        "mean": doubles(flat(mean)), "depolarizing": doubles(flat(rest - mp.eye(4) * rest[0, 0])),
+        "linearBirefringence": double(mean[2, 3]), "linearBirefringence45": double(mean[3, 1]),
+        "circularBirefringence": double(mean[1, 2]), "linearDichroism": double(mean[0, 1]),
+        "linearDichroism45": double(mean[0, 2]), "circularDichroism": double(mean[0, 3]),
+    }
+
+
+def logarithm(m):
+    """From the eigenvectors, or by mpmath's roots where they don't span. Either way its
+    exponential is m again, its eigenvalues are the principal ones, and SciPy agrees."""
+    values, columns = mp.eig(m)
+    if abs(mp.det(columns)) > mpf("1e-20"):
+        found = columns * mp.diag([mp.log(x) for x in values]) * mp.inverse(columns)
+    else:
+        found = mp.logm(m)
+    assert max(abs(mp.im(x)) for x in found) < mpf("1e-30")
+    real = found.apply(mp.re)
+    assert mp.mnorm(mp.expm(real) - m, "f") < mpf("1e-30") * mp.mnorm(m, "f")
+    assert max(abs(mp.im(x)) for x in mp.eig(real, left=False, right=False)) < mp.pi
+    by_scipy = linalg.logm(np.array(m.tolist(), float))
+    assert np.allclose(by_scipy, np.array(real.tolist(), float), rtol=0, atol=1e-7)
+    return real
+
+
 # Small helpers.
 
 def norm(vector):
@@ -441,6 +507,8 @@ def doubles(values):
 
 
 def without_omitted(value):
+    if isinstance(value, list):
+        return [without_omitted(x) for x in value]
     if isinstance(value, dict):
         return {key: without_omitted(x) for key, x in value.items() if x is not OMIT}
     return value

@@ -4,6 +4,8 @@ Convention: angles counter-clockwise from x for an observer facing the source, S
 clockwise for that observer, time dependence exp(+iωt). Angles in degrees, 4x4 NumPy arrays.
 """
 
+import math
+
 import numpy as np
 
 PAULI = np.array(
@@ -70,6 +72,37 @@ def elliptical_diattenuator(transmittance, vector):
     if size2 > 0:
         mueller[1:, 1:] = root * np.eye(3) + (1 - root) * np.outer(vector, vector) / size2
     return transmittance * mueller
+
+
+def aligned_diattenuating_retarder(transmittance, diattenuation, retardance, axis):
+    """As the Jones matrix of its two principal amplitudes, x advanced in phase."""
+    high, low = np.sqrt(transmittance * np.array([1 + diattenuation, 1 - diattenuation]))
+    return turned(of_jones(np.diag([high * np.exp(1j * np.radians(retardance)), low])), axis)
+
+
+def isotropic_reflector(psi, delta, reflectance, plane):
+    """As the Jones matrix diag(rp, rs) with rp/rs = tan Ψ exp(iΔ) and (|rp|² + |rs|²)/2 = R."""
+    amplitudes = [sine(psi) * np.exp(1j * np.radians(delta)), cosine(psi)]
+    return turned(of_jones(np.sqrt(2 * reflectance) * np.diag(amplitudes)), plane)
+
+
+def refracted(before, behind, incidence):
+    """n1 cosθi, n1 cosθt, n2 cosθi, n2 cosθt by Snell's law; behind = n - ik, fading away."""
+    c = cosine(incidence)
+    ct = np.sqrt(1 - (before * sine(incidence) / behind) ** 2 + 0j)
+    if (behind * ct).imag > 0:
+        ct = -ct
+    return before * c, before * ct, behind * c, behind * ct
+
+
+def fresnel_reflection(before, behind, incidence, plane):
+    ic, it, bc, bt = refracted(before, behind, incidence)
+    return turned(of_jones(np.diag([(bc - it) / (bc + it), (ic - bt) / (ic + bt)])), plane)
+
+
+def fresnel_transmission(before, behind, incidence, plane):
+    ic, it, bc, bt = refracted(before, behind, incidence)
+    return turned(of_jones(np.diag([2 * ic / (bc + it), 2 * ic / (ic + bt)]) * np.sqrt(bt / ic)), plane)
 
 
 def rotator(angle):

@@ -91,6 +91,9 @@ def difference(stored, expected, where):
     if isinstance(stored, list) and isinstance(expected, list):
         if len(stored) != len(expected):
             return f"{where}: {len(stored)} numbers, now {len(expected)}"
+        if any(isinstance(x, dict) for x in stored + expected):
+            pairs = enumerate(zip(stored, expected))
+            return next(filter(None, (difference(a, b, f"{where}[{k}]") for k, (a, b) in pairs)), "")
         # A matrix has one scale, also at 1e-150.
         size = max([1e-300] + [abs(x) for x in expected])
         pairs = enumerate(zip(stored, expected))

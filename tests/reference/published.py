@@ -43,16 +43,29 @@ def element(item):
         case "circularRetarder":
             return elements.circular_retarder(p["retardanceDeg"])
         case "ellipticalRetarder":
-            azimuth, ellipticity = 2 * p["azimuthDeg"], 2 * p["ellipticityDeg"]
-            axis = [elements.cosine(ellipticity) * elements.cosine(azimuth),
-                    elements.cosine(ellipticity) * elements.sine(azimuth), elements.sine(ellipticity)]
-            return elements.elliptical_retarder(p["retardanceDeg"], axis)
+            return elements.elliptical_retarder(p["retardanceDeg"], direction(p))
+        case "ellipticalDiattenuator":
+            return elements.elliptical_diattenuator(p["transmittance"], p["diattenuation"] * direction(p))
+        case "alignedDiattenuatingRetarder":
+            return elements.aligned_diattenuating_retarder(
+                p["transmittance"], p["diattenuation"], p["retardanceDeg"], p["axisDeg"])
+        case "isotropicReflector":
+            return elements.isotropic_reflector(p["psiDeg"], p["deltaDeg"], p["reflectance"], p["planeDeg"])
+        case "fresnelReflection" | "fresnelTransmission" as kind:
+            of = elements.fresnel_reflection if kind == "fresnelReflection" else elements.fresnel_transmission
+            return of(p["indexBefore"], p["indexAfter"] - 1j * p["absorption"], p["incidenceDeg"], p["planeDeg"])
         case "rotator":
             return elements.rotator(p["angleDeg"])
         case "isotropicDepolarizer":
             return elements.isotropic_depolarizer(p["alpha"])
         case other:
             raise ValueError(other)
+
+
+def direction(p):
+    azimuth, ellipticity = 2 * p["azimuthDeg"], 2 * p["ellipticityDeg"]
+    return np.array([elements.cosine(ellipticity) * elements.cosine(azimuth),
+                     elements.cosine(ellipticity) * elements.sine(azimuth), elements.sine(ellipticity)])
 
 
 def matrix(given):
@@ -153,6 +166,10 @@ def polar_product(given, expect, tolerance):
     return near(product.ravel(), expect["mueller"], tolerance)
 
 
+def differential(given, expect, tolerance):
+    return all_near(examined(given)["differential"], expect, tolerance)
+
+
 def spectral(given, expect, tolerance):
     """Weights from the definitions; the parts again from NumPy's eigenvectors."""
     h = coherency(matrix(given))
@@ -249,7 +266,7 @@ CHECKS = {
     "element-matrix": element_matrix, "stokes-through-train": stokes_through_train, "figures": figures,
     "figure-bounds": figure_bounds, "nested-indices": nested_indices, "eigenvalues": eigenvalues,
     "realizability": realizability, "nearest": nearest, "polar": polar, "polar-product": polar_product,
-    "spectral": spectral, "coherency-norm": coherency_norm, "passivity": passivity,
+    "differential": differential, "spectral": spectral, "coherency-norm": coherency_norm, "passivity": passivity,
     "jones-to-mueller": jones_to_mueller, "state-in-convention": state_in_convention,
     "matrix-in-convention": matrix_in_convention, "eigenvalue-error": eigenvalue_error,
     "noise-on-pure": noise_on_pure, "rounding": rounding,
