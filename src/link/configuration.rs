@@ -9,6 +9,7 @@ pub const SCHEMA_VERSION: u32 = 1;
 
 const LONGEST_LABEL: usize = 80;
 const LONGEST_TEXT: usize = 200_000;
+const LARGEST_FILE: usize = 16 << 20;
 const DEEPEST: usize = 8;
 const MOST_MEMBERS: usize = 100;
 
@@ -25,6 +26,9 @@ pub fn known_blocks() -> &'static [&'static str] {
         "task",
         "label",
         "measurement",
+        "compareWith",
+        "series",
+        "dataFile",
         "examine",
         "view",
     ]
@@ -52,6 +56,37 @@ pub fn decode(fragment: &str) -> Result<Value> {
             "This link does not hold a Halfshade configuration.",
         )
     })?;
+    checked(configuration)
+}
+
+/// Writes a configuration as the text of a file: the same values, for people to read.
+///
+/// # Errors
+/// Those of [`encode`].
+pub fn write_file(configuration: &Value) -> Result<String> {
+    let configuration = checked(configuration.clone())?;
+    Ok(format!("{configuration:#}\n"))
+}
+
+/// Reads what [`write_file`] wrote.
+///
+/// # Errors
+/// `file-damaged` for what is no JSON, `too-large`; else those of [`decode`].
+pub fn read_file(text: &str) -> Result<Value> {
+    if text.len() > LARGEST_FILE {
+        return Err(Error::new(
+            "too-large",
+            "This file is larger than 16 MiB, which is more than is read at once.",
+        ));
+    }
+    let configuration =
+        serde_json::from_str(text.trim_start_matches('\u{feff}')).map_err(|error| {
+            Error::new(
+                "file-damaged",
+                "This file does not hold a Halfshade configuration: here it stops being JSON.",
+            )
+            .at_text(error.line(), error.column().max(1), 1)
+        })?;
     checked(configuration)
 }
 
@@ -102,7 +137,14 @@ fn check(configuration: &Value) -> Result<()> {
             ));
         }
     }
-    measurement(&blocks)?;
+    for name in ["measurement", "compareWith"] {
+        measurement(&blocks, name)?;
+    }
+    series(&blocks)?;
+    if let Some(file) = blocks.object("dataFile", &["name", "sha256"])? {
+        file.text("name")?;
+        file.text("sha256")?;
+    }
     if let Some(examine) = blocks.object("examine", &["draws", "seed"])? {
         examine.whole("draws")?;
         examine.whole("seed")?;
@@ -140,7 +182,50 @@ fn few(names: &[&str], path: &str) -> Result<()> {
     Ok(())
 }
 
-fn measurement(blocks: &Fields) -> Result<()> {
+/// Several matrices and what they are to each other.
+fn series(blocks: &Fields) -> Result<()> {
+    let known = ["use", "matrices", "labels", "coordinates"];
+    let Some(series) = blocks.object("series", &known)? else {
+        return Ok(());
+    };
+    let uses = ["ask", "pick", "series", "repeats", "pair"].map(|name| (name, ()));
+    series.choice("use", &uses)?;
+    let count = match series.get("matrices") {
+        None => None,
+        Some(_) => Some(matrices(&series, "matrices")?),
+    };
+    let wrong = |name, sentence| Err(series.error("bad-request", name, sentence));
+    for (name, fits) in [
+        ("labels", Value::is_string as fn(&Value) -> bool),
+        ("coordinates", is_finite),
+    ] {
+        let Some(items) = series.get(name) else {
+            continue;
+        };
+        match items.as_array() {
+            Some(items) if Some(items.len()) == count && items.iter().all(fits) => {}
+            _ => return wrong(name, "There must be one for each of the matrices."),
+        }
+    }
+    Ok(())
+}
+
+/// A list of matrices; how many.
+fn matrices(fields: &Fields, name: &str) -> Result<usize> {
+    let items = fields.required(name, fields.get(name))?.as_array();
+    items
+        .filter(|items| items.iter().all(is_matrix))
+        .map(Vec::len)
+        .ok_or_else(|| {
+            fields.error(
+                "bad-request",
+                name,
+                &format!("'{name}' must be a list of lists of 16 numbers."),
+            )
+        })
+}
+
+fn measurement(blocks: &Fields, name: &str) -> Result<()> {
     let known = [
         "mueller",
         "normalised",
@@ -150,7 +235,7 @@ fn measurement(blocks: &Fields) -> Result<()> {
         "text",
         "example",
     ];
-    let Some(measurement) = blocks.object("measurement", &known)? else {
+    let Some(measurement) = blocks.object(name, &known)? else {
         return Ok(());
     };
     measurement.numbers::<16>("mueller")?;
@@ -227,19 +312,7 @@ fn noise(measurement: &Fields) -> Result<()> {
         "uniform" | "relative" | "rounding" => noise.required(part, noise.number(part)?).map(drop),
         "perElement" => noise.required(part, noise.numbers::<16>(part)?).map(drop),
         "covariance" => noise.required(part, noise.numbers::<256>(part)?).map(drop),
-        _ => {
-            let matrices = noise.required(part, noise.get(part))?;
-            let items = matrices
-                .as_array()
-                .filter(|items| items.iter().all(is_matrix));
-            items.map(drop).ok_or_else(|| {
-                noise.error(
-                    "bad-request",
-                    part,
-                    "'matrices' must be a list of lists of 16 numbers.",
-                )
-            })
-        }
+        _ => matrices(&noise, part).map(drop),
     }
 }
 

@@ -3,5 +3,5 @@
 mod configuration;
 mod envelope;
 
-pub use configuration::{SCHEMA_VERSION, decode, encode, known_blocks};
+pub use configuration::{SCHEMA_VERSION, decode, encode, known_blocks, read_file, write_file};
 pub use envelope::{open, seal};

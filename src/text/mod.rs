@@ -5,6 +5,7 @@
 //! the numbers make 4×4 matrices.
 
 mod assembly;
+mod export;
 mod file;
 mod literal;
 mod notation;
@@ -13,6 +14,7 @@ mod number;
 mod source;
 mod table;
 
+pub use export::{Column, Content, Entry, NamedMatrix, NamedTable, OutputForm, export_text};
 pub use file::{decode, parse_file};
 pub use number::{DecimalMark, NumberProblem, PrintedNumber, parse_number};
 

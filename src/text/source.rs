@@ -77,6 +77,7 @@ impl Source {
         if first.trim().len() == 5 && first.trim().starts_with("sep=") {
             source.lines[0].content.end = source.lines[0].content.start;
         }
+        source.is_typeset = !is_object && source.has_typesetting();
         source.rewrite();
         source.apply_headings();
         Ok(source)
@@ -115,10 +116,13 @@ impl Source {
         });
     }
 
+    fn has_typesetting(&self) -> bool {
+        (0..self.lines.len()).any(|k| notation::is_typeset(self.line(k)))
+    }
+
     /// Typeset matrices in brackets, powers of ten as exponents, uncertainties without
     /// gaps: all of it character for character.
     fn rewrite(&mut self) {
-        self.is_typeset = (0..self.lines.len()).any(|k| notation::is_typeset(self.line(k)));
         for line in &self.lines {
             let content = &mut self.characters[line.content.clone()];
             if self.is_typeset {

@@ -16,7 +16,7 @@ use crate::error::Result as EngineResult;
 use crate::{examine, link, stats, text};
 use convert::{MatricesTwin, to_js, to_js_error};
 use examination::ExaminationTwin;
-use request::{ExamineRequest, format_request, plain, read_options};
+use request::{ExamineRequest, export_request, format_request, plain, read_options};
 
 #[wasm_bindgen(typescript_custom_section)]
 const TYPES: &str = include_str!("types.d.ts");
@@ -70,8 +70,8 @@ pub fn parse_file(
 ///
 /// # Errors
 /// `form-not-read` for what is no text.
-#[wasm_bindgen(js_name = decodeText)]
-pub fn decode_text(bytes: &[u8]) -> Result<String, JsValue> {
+#[wasm_bindgen(js_name = fileText)]
+pub fn file_text(bytes: &[u8]) -> Result<String, JsValue> {
     thrown(text::decode(bytes)).map(|(text, _)| text)
 }
 
@@ -114,6 +114,18 @@ pub fn format_value(
     })
 }
 
+/// Writes matrices and tables for other programs, at full precision.
+///
+/// # Errors
+/// For a request that is not understood, at its field.
+#[wasm_bindgen(js_name = exportText)]
+pub fn export_text(
+    #[wasm_bindgen(unchecked_param_type = "ExportRequest")] request: &JsValue,
+) -> Result<String, JsValue> {
+    let request = plain(request).and_then(|request| export_request(&request));
+    thrown(request.and_then(|(form, content)| text::export_text(form, &content)))
+}
+
 /// Writes a configuration as the text behind the `#` of a link.
 ///
 /// # Errors
@@ -132,6 +144,26 @@ pub fn encode_link(
 #[wasm_bindgen(js_name = decodeLink, unchecked_return_type = "Configuration")]
 pub fn decode_link(fragment: &str) -> JsResult {
     thrown(link::decode(fragment)).map(|configuration| value::to_js(&configuration))
+}
+
+/// Writes a configuration as the text of a file.
+///
+/// # Errors
+/// For a configuration that is not valid, at its field.
+#[wasm_bindgen(js_name = encodeFile)]
+pub fn encode_file(
+    #[wasm_bindgen(unchecked_param_type = "Configuration")] configuration: &JsValue,
+) -> Result<String, JsValue> {
+    thrown(value::from_js(configuration).and_then(|read| link::write_file(&read)))
+}
+
+/// Reads what [`encode_file`] wrote, every bit of every number.
+///
+/// # Errors
+/// For a text that is no configuration, with line and character, or is a newer one.
+#[wasm_bindgen(js_name = decodeFile, unchecked_return_type = "Configuration")]
+pub fn decode_file(text: &str) -> JsResult {
+    thrown(link::read_file(text)).map(|configuration| value::to_js(&configuration))
 }
 
 /// Which engine this is.

@@ -9,7 +9,10 @@ use crate::error::Result;
 use crate::json::Fields;
 use crate::mueller::Mueller;
 use crate::noise::{Measurement, Noise};
-use crate::text::{DecimalMark, Delimiter, ReadOptions, Stacking};
+use crate::text::{
+    Column, Content, DecimalMark, Delimiter, Entry, NamedMatrix, NamedTable, OutputForm,
+    ReadOptions, Stacking,
+};
 
 /// A request as a plain value; `undefined` and `null` are an empty one.
 pub fn plain(value: &JsValue) -> Result<Value> {
@@ -173,4 +176,91 @@ pub fn read_options(request: &Value) -> Result<ReadOptions> {
             &[("first", Stacking::First), ("last", Stacking::Last)],
         )?,
     })
+}
+
+/// What is to be written, and how.
+pub fn export_request(request: &Value) -> Result<(OutputForm, Content)> {
+    let fields = Fields::of(
+        request,
+        "",
+        &["form", "title", "notes", "matrices", "tables"],
+    )?;
+    let forms = [
+        ("tsv", OutputForm::Tsv),
+        ("csv", OutputForm::Csv),
+        ("csvEuropean", OutputForm::CsvEuropean),
+        ("json", OutputForm::Json),
+        ("latex", OutputForm::Latex),
+        ("python", OutputForm::Python),
+        ("matlab", OutputForm::Matlab),
+    ];
+    let form = fields.required("form", fields.choice("form", &forms)?)?;
+    let mut content = Content {
+        title: fields.text("title")?.unwrap_or_default().to_owned(),
+        ..Content::default()
+    };
+    for (k, note) in items(&fields, "notes")?.iter().enumerate() {
+        let note = note.as_str();
+        let wrong = || {
+            fields.error(
+                "bad-request",
+                &format!("notes[{k}]"),
+                "This must be a text.",
+            )
+        };
+        content.notes.push(note.ok_or_else(wrong)?.to_owned());
+    }
+    for (k, matrix) in items(&fields, "matrices")?.iter().enumerate() {
+        let path = format!("matrices[{k}]");
+        let matrix = Fields::of(matrix, &path, &["name", "unit", "mueller", "sigma"])?;
+        content.matrices.push(NamedMatrix {
+            name: matrix.required("name", matrix.text("name")?)?.to_owned(),
+            unit: matrix.text("unit")?.map(str::to_owned),
+            mueller: matrix.required("mueller", matrix.numbers("mueller")?)?,
+            sigma: matrix.numbers("sigma")?,
+        });
+    }
+    for (k, table) in items(&fields, "tables")?.iter().enumerate() {
+        let path = format!("tables[{k}]");
+        let table = Fields::of(table, &path, &["name", "columns"])?;
+        let mut columns = Vec::new();
+        for (i, column) in items(&table, "columns")?.iter().enumerate() {
+            let path = format!("{path}.columns[{i}]");
+            let column = Fields::of(column, &path, &["name", "unit", "values"])?;
+            let mut values = Vec::new();
+            for (j, value) in items(&column, "values")?.iter().enumerate() {
+                let wrong = || {
+                    column.error(
+                        "bad-request",
+                        &format!("values[{j}]"),
+                        "This must be a number, a text or null.",
+                    )
+                };
+                values.push(match value {
+                    Value::Null => Entry::Nothing,
+                    Value::String(text) => Entry::Text(text.clone()),
+                    _ => Entry::Number(value.as_f64().ok_or_else(wrong)?),
+                });
+            }
+            columns.push(Column {
+                name: column.required("name", column.text("name")?)?.to_owned(),
+                unit: column.text("unit")?.map(str::to_owned),
+                values,
+            });
+        }
+        content.tables.push(NamedTable {
+            name: table.required("name", table.text("name")?)?.to_owned(),
+            columns,
+        });
+    }
+    Ok((form, content))
+}
+
+/// The items of a list; none where it is left out.
+fn items<'a>(fields: &Fields<'a>, name: &str) -> Result<&'a [Value]> {
+    match fields.get(name) {
+        None | Some(Value::Null) => Ok(&[]),
+        Some(Value::Array(items)) => Ok(items),
+        Some(_) => Err(fields.error("bad-request", name, &format!("'{name}' must be a list."))),
+    }
 }

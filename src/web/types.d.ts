@@ -191,6 +191,21 @@ export interface EngineInfo {
 }
 
 /** A session, as a link holds it. Blocks that this version does not know are kept. */
+/** A table for other programs; all columns have as many values. */
+export interface ExportTable {
+    name: string;
+    columns: { name: string; unit?: string; values: (number | string | null)[] }[];
+}
+
+/** What is to be written; at least one matrix or table. */
+export interface ExportRequest {
+    form: "tsv" | "csv" | "csvEuropean" | "json" | "latex" | "python" | "matlab";
+    title?: string;
+    notes?: string[];
+    matrices?: { name: string; unit?: string; mueller: number[]; sigma?: number[] | null }[];
+    tables?: ExportTable[];
+}
+
 export interface Configuration {
     v: number;
     app?: string;
@@ -201,6 +216,17 @@ export interface Configuration {
         text?: string;
         example?: boolean;
     };
+    /** The other one of a pair. */
+    compareWith?: Omit<Measurement, "mueller"> & { mueller: Matrix16 | null };
+    /** Several matrices and what they are to each other; left out where the text holds them. */
+    series?: {
+        use: "ask" | "pick" | "series" | "repeats" | "pair";
+        matrices?: Matrix16[];
+        labels?: string[];
+        coordinates?: number[];
+    };
+    /** The file that the matrices came from. */
+    dataFile?: { name: string; sha256: string };
     examine?: { draws: number; seed: number };
     view?: Record<string, number>;
     [block: string]: unknown;

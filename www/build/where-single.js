@@ -5,6 +5,30 @@
 /** Whether the page is the single file. */
 export const isSingleFile = true;
 
+/** Of the browser, and not of the work: no measured number is kept there. */
+const ADDRESS = "halfshade-address";
+
+/** Where a colleague finds the page, as the person said once; empty where nobody did. */
+export function publicAddress() {
+  try {
+    return localStorage.getItem(ADDRESS) ?? "";
+  } catch {
+    return "";
+  }
+}
+
+/**
+ * @param {string} address anything else than a web address forgets it
+ */
+export function setPublicAddress(address) {
+  const plain = address.trim().split("#")[0] ?? "";
+  try {
+    localStorage.setItem(ADDRESS, /^https?:\/\/\S+$/.test(plain) ? plain : "");
+  } catch {
+    // Storage can be switched off: then links hold the fragment alone.
+  }
+}
+
 /**
  * Compiles the engine.
  * @returns {Promise<WebAssembly.Module>}

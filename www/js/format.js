@@ -100,17 +100,6 @@ export function significant(value, digits = 2) {
 }
 
 /**
- * Sixteen numbers as a spreadsheet reads them: full precision, ASCII.
- * @param {number[]} matrix
- * @returns {string}
- */
-export function tsv(matrix) {
-  return rows(matrix)
-    .map((row) => row.map((value) => fullText(value)).join("\t"))
-    .join("\n");
-}
-
-/**
  * Sixteen things as four rows.
  * @template T
  * @param {T[]} matrix
@@ -118,6 +107,26 @@ export function tsv(matrix) {
  */
 export function rows(matrix) {
   return [0, 1, 2, 3].map((row) => matrix.slice(4 * row, 4 * row + 4));
+}
+
+/** What the first row and column are called. A matter of display alone. */
+let firstIndex = 0;
+
+/**
+ * Count rows and columns from 0, as m00 to m33, or from 1.
+ * @param {number} first
+ */
+export function countFrom(first) {
+  firstIndex = first === 1 ? 1 : 0;
+}
+
+/**
+ * What an element is called.
+ * @param {number} row
+ * @param {number} column
+ */
+export function elementName(row, column) {
+  return `m${row + firstIndex}${column + firstIndex}`;
 }
 
 /**

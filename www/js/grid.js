@@ -1,11 +1,13 @@
 /** The grid of the measured matrix: sixteen cells, walked by arrows, edited by typing. */
 import { make } from "./dom.js";
-import { cellText, place, readNumber, withMinus } from "./format.js";
+import { cellText, elementName, place, readNumber, withMinus } from "./format.js";
 
 /**
+ * @typedef {{ index: number, text: string }} Change new text for the cell with this place in the sixteen
  * @typedef {object} GridActions
- * @property {(index: number, text: string, name: string) => void} edit a cell got new text
+ * @property {(changes: Change[], name: string) => void} edit cells got new text, in one action
  * @property {() => void} editing the editor was opened
+ * @property {(message: string) => void} tell
  */
 
 export class Grid {
@@ -18,6 +20,8 @@ export class Grid {
     this.actions = actions;
     this.row = 0;
     this.column = 0;
+    /** The other corner of the selection. */
+    this.anchor = { row: 0, column: 0 };
     /** @type {HTMLInputElement | null} */
     this.editor = null;
     /** @type {string[]} */
@@ -30,7 +34,7 @@ export class Grid {
     this.errors = make("ul", { id: "grid-errors", class: "errors", hidden: true });
     const table = make(
       "table",
-      { role: "grid", id: "matrix-grid", class: "grid", "aria-labelledby": labelledBy, "aria-describedby": "grid-hint" },
+      { role: "grid", id: "matrix-grid", class: "grid", "aria-labelledby": labelledBy, "aria-describedby": "grid-hint", "aria-multiselectable": "true" },
       make("tbody", null, this.boxes.map((boxes) => make("tr", null, boxes))),
     );
     root.append(table, this.hint, this.errors);
@@ -50,8 +54,8 @@ export class Grid {
     const complaints = [];
     this.boxes.forEach((boxes, row) => {
       boxes.forEach((box, column) => {
-        const name = `m${row}${column}`;
-        const text = cells[place(order, row, column)] ?? "";
+        const name = elementName(row, column);
+        const text = this.textAt(row, column);
         const { error } = readNumber(text);
         const wrong = error !== null && text !== "";
         if (!(this.editor && box.contains(this.editor))) {
@@ -82,17 +86,71 @@ export class Grid {
     return !this.editor && this.boxes.flat().some((box) => box === document.activeElement);
   }
 
-  /** The text of the cell that the keyboard is in. */
-  get current() {
-    return this.cells[place(this.order, this.row, this.column)] ?? "";
+  /**
+   * @param {number} row
+   * @param {number} column
+   */
+  textAt(row, column) {
+    return this.cells[place(this.order, row, column)] ?? "";
+  }
+
+  /** The rows and columns of the selection, first and last. */
+  get span() {
+    const { row, column, anchor } = this;
+    return {
+      top: Math.min(row, anchor.row),
+      bottom: Math.max(row, anchor.row),
+      left: Math.min(column, anchor.column),
+      right: Math.max(column, anchor.column),
+    };
+  }
+
+  /** Rows of places that are selected. @returns {[number, number][][]} */
+  get selected() {
+    const { top, bottom, left, right } = this.span;
+    return range(top, bottom).map((row) => range(left, right).map((column) => [row, column]));
+  }
+
+  /** The selected cells as a spreadsheet reads them. */
+  get selectedText() {
+    return this.selected.map((places) => places.map(([row, column]) => this.textAt(row, column)).join("\t")).join("\n");
+  }
+
+  /** Empty the selected cells, as one step. @param {string} verb what it is called */
+  clearSelected(verb) {
+    const places = this.selected.flat();
+    this.change(places.map(([row, column]) => ({ row, column, text: "" })), `${verb} ${this.nameOf(places)}`);
   }
 
   /**
-   * Put text into the cell that the keyboard is in.
-   * @param {string} text
+   * Put numbers into the cells from the corner of the selection on, as one step.
+   * @param {string[][]} block
+   * @returns {boolean} whether it fits
    */
-  fill(text) {
-    this.commit(this.row, this.column, text);
+  fill(block) {
+    const { top, left } = this.span;
+    const width = Math.max(...block.map((row) => row.length));
+    if (top + block.length > 4 || left + width > 4) {
+      this.actions.tell(`${block.length} × ${width} numbers do not fit from ${elementName(top, left)} on. Nothing was changed.`);
+      return false;
+    }
+    const changes = block.flatMap((texts, i) => texts.map((text, j) => ({ row: top + i, column: left + j, text })));
+    const places = changes.map(({ row, column }) => /** @type {[number, number]} */ ([row, column]));
+    this.anchor = { row: top, column: left };
+    this.row = top + block.length - 1;
+    this.column = left + width - 1;
+    this.rove();
+    this.box().focus();
+    this.change(changes, `the paste into ${this.nameOf(places)}`);
+    return true;
+  }
+
+  /** @param {[number, number][]} places */
+  nameOf(places) {
+    const [fromRow, fromColumn] = places[0] ?? [0, 0];
+    const [toRow, toColumn] = places.at(-1) ?? [0, 0];
+    const name = elementName(fromRow, fromColumn);
+    return places.length === 1 ? name : `${name} to ${elementName(toRow, toColumn)}`;
   }
 
   /** Close the editor without taking its text. */
@@ -110,36 +168,73 @@ export class Grid {
   makeCell(row, column) {
     const box = make("td", { tabindex: "-1" });
     box.addEventListener("focus", () => {
-      this.row = row;
-      this.column = column;
-      this.rove();
+      if (this.row === row && this.column === column) return;
+      this.select(row, column, false);
     });
     box.addEventListener("keydown", (event) => this.key(event));
     box.addEventListener("dblclick", () => this.open(this.current));
+    box.addEventListener("pointerdown", (event) => {
+      if (this.editor || event.button !== 0 || event.pointerType === "touch") return;
+      event.preventDefault();
+      this.select(row, column, event.shiftKey);
+      box.focus();
+    });
+    box.addEventListener("pointerenter", (event) => {
+      if (this.editor || event.pointerType === "touch" || event.buttons !== 1 || !this.walking) return;
+      this.select(row, column, true);
+      box.focus();
+    });
     box.addEventListener("click", (event) => {
       // A phone has no F2 and no double click worth the name: one tap opens.
-      if (!this.editor && event instanceof PointerEvent && event.pointerType === "touch") this.open(this.current);
+      if (this.editor || !(event instanceof PointerEvent) || event.pointerType !== "touch") return;
+      this.select(row, column, false);
+      this.open(this.current);
     });
     return box;
+  }
+
+  /** The text of the cell that the keyboard is in. */
+  get current() {
+    return this.textAt(this.row, this.column);
   }
 
   box() {
     return /** @type {HTMLTableCellElement} */ (this.boxes[this.row]?.[this.column]);
   }
 
+  /** One cell takes the keyboard; those between it and the anchor are selected. */
   rove() {
-    for (const box of this.boxes.flat()) box.tabIndex = -1;
-    this.box().tabIndex = 0;
+    const { top, bottom, left, right } = this.span;
+    const several = top !== bottom || left !== right;
+    this.boxes.forEach((boxes, row) => {
+      boxes.forEach((box, column) => {
+        box.tabIndex = row === this.row && column === this.column ? 0 : -1;
+        const selected = several && row >= top && row <= bottom && column >= left && column <= right;
+        if (selected) box.setAttribute("aria-selected", "true");
+        else box.removeAttribute("aria-selected");
+      });
+    });
   }
 
   /**
    * @param {number} row
    * @param {number} column
+   * @param {boolean} extends_ whether the selection grows to there
    */
-  go(row, column) {
+  select(row, column, extends_) {
     this.row = Math.min(3, Math.max(0, row));
     this.column = Math.min(3, Math.max(0, column));
+    if (!extends_) this.anchor = { row: this.row, column: this.column };
     this.rove();
+  }
+
+  /**
+   * @param {number} row
+   * @param {number} column
+   * @param {boolean} [extends_]
+   */
+  go(row, column, extends_ = false) {
+    this.select(row, column, extends_);
     this.box().focus();
   }
 
@@ -160,13 +255,19 @@ export class Grid {
     const move = moves[event.key];
     if (move && !event.altKey) {
       event.preventDefault();
-      this.go(...move);
+      this.go(...move, event.shiftKey);
     } else if (event.key === "Enter" || event.key === "F2") {
       event.preventDefault();
       this.open(this.current);
     } else if (event.key === "Delete" || event.key === "Backspace") {
       event.preventDefault();
-      this.fill("");
+      this.clearSelected("the clearing of");
+    } else if (event.key === "Escape") {
+      this.select(row, column, false);
+    } else if (command && !event.altKey && event.key.toLowerCase() === "a") {
+      event.preventDefault();
+      this.anchor = { row: 0, column: 0 };
+      this.go(3, 3, true);
     } else if (event.key.length === 1 && event.key !== " " && !command && !event.altKey) {
       event.preventDefault();
       this.open(event.key);
@@ -180,7 +281,8 @@ export class Grid {
   open(text) {
     if (this.editor) return;
     const { row, column } = this;
-    const name = `m${row}${column}`;
+    this.select(row, column, false);
+    const name = elementName(row, column);
     const editor = make("input", {
       type: "text",
       inputmode: "decimal",
@@ -246,19 +348,30 @@ export class Grid {
     const box = this.boxes[row]?.[column];
     this.editor = null;
     box?.replaceChildren();
-    this.commit(row, column, text);
+    this.change([{ row, column, text }], `the edit of ${elementName(row, column)}`);
   }
 
   /**
-   * @param {number} row
-   * @param {number} column
-   * @param {string} text
+   * @param {{ row: number, column: number, text: string }[]} cells
+   * @param {string} name of the step
    */
-  commit(row, column, text) {
-    const read = readNumber(text);
-    const index = place(this.order, row, column);
-    const kept = read.error === null ? read.plain : text.trim();
-    if (kept === this.cells[index]) this.show(this.cells, this.order);
-    else this.actions.edit(index, kept, `m${row}${column}`);
+  change(cells, name) {
+    const changes = cells
+      .map(({ row, column, text }) => {
+        const read = readNumber(text);
+        return { index: place(this.order, row, column), text: read.error === null ? read.plain : text.trim() };
+      })
+      .filter(({ index, text }) => text !== this.cells[index]);
+    if (changes.length === 0) this.show(this.cells, this.order);
+    else this.actions.edit(changes, name);
   }
+}
+
+/**
+ * Whole numbers from the first to the last.
+ * @param {number} first
+ * @param {number} last
+ */
+function range(first, last) {
+  return Array.from({ length: last - first + 1 }, (_, k) => first + k);
 }

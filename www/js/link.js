@@ -12,7 +12,10 @@ import { noMeasurement, usualConvention } from "./state.js";
  */
 
 /** The blocks that the page itself shows. All others are only kept. */
-const SHOWN = new Set(["v", "app", "task", "label", "measurement", "examine", "view"]);
+const SHOWN = new Set(["v", "app", "task", "label", "measurement", "compareWith", "series", "dataFile", "examine", "view"]);
+
+/** In a view all values are numbers. */
+const RETARDANCE_UNITS = /** @type {const} */ (["deg", "waves", "nm"]);
 
 /**
  * @param {Work} work
@@ -24,6 +27,9 @@ const SHOWN = new Set(["v", "app", "task", "label", "measurement", "examine", "v
  */
 export function configurationOf(work, view, request, textHolds, app) {
   const { measurement } = work;
+  const measured = { normalised: request.normalised, absolute: request.absolute, convention: request.convention, noise: request.noise };
+  const { many } = measurement;
+  const second = many?.use === "pair" ? many.matrices[1] : undefined;
   return {
     ...work.kept,
     v: 1,
@@ -32,15 +38,46 @@ export function configurationOf(work, view, request, textHolds, app) {
     ...(measurement.label ? { label: measurement.label } : {}),
     measurement: {
       mueller: request.mueller,
-      normalised: request.normalised,
-      absolute: request.absolute,
-      convention: request.convention,
-      noise: request.noise,
+      ...measured,
       ...(textHolds && measurement.text ? { text: measurement.text } : {}),
       ...(measurement.example ? { example: true } : {}),
     },
+    ...(second ? { compareWith: { mueller: second, ...measured } } : {}),
+    ...(many ? { series: seriesOf(many, textHolds) } : {}),
+    ...(many?.source ? { dataFile: { name: many.source, sha256: many.sha256 } } : {}),
     examine: work.examine,
-    view: { azimuthDeg: view.azimuthDeg, elevationDeg: view.elevationDeg },
+    view: {
+      azimuthDeg: view.azimuthDeg,
+      elevationDeg: view.elevationDeg,
+      firstIndex: view.firstIndex,
+      retardanceUnit: RETARDANCE_UNITS.indexOf(view.retardanceUnit),
+      wavelengthNm: view.wavelengthNm,
+    },
+  };
+}
+
+/**
+ * The same with the shown matrix alone, where all of them are too much for a link.
+ * @param {Configuration} configuration
+ * @returns {Configuration}
+ */
+export function withoutSeries({ series, measurement, ...rest }) {
+  const { text, ...measured } = measurement;
+  return { ...rest, measurement: measured };
+}
+
+/**
+ * Several matrices: in full where the text does not hold them already.
+ * @param {import("./types.js").Many} many
+ * @param {boolean} textHolds
+ */
+function seriesOf({ use, matrices, labels, coordinates, source }, textHolds) {
+  if (textHolds && source === "" && use !== "repeats") return { use };
+  return {
+    use,
+    matrices,
+    ...(labels.some((label) => label !== null) ? { labels: labels.map((label) => label ?? "") } : {}),
+    ...(coordinates.every((coordinate) => coordinate !== null) ? { coordinates } : {}),
   };
 }
 
@@ -65,9 +102,13 @@ export function fromConfiguration(configuration, before, parse) {
       kept,
     },
     view: {
+      ...before,
       task: configuration.task === "properties" ? "properties" : "realizability",
       azimuthDeg: view.azimuthDeg ?? before.azimuthDeg,
       elevationDeg: view.elevationDeg ?? before.elevationDeg,
+      firstIndex: (view.firstIndex ?? before.firstIndex) === 1 ? 1 : 0,
+      retardanceUnit: RETARDANCE_UNITS[view.retardanceUnit] ?? before.retardanceUnit,
+      wavelengthNm: view.wavelengthNm > 0 ? view.wavelengthNm : before.wavelengthNm,
     },
   };
 }
@@ -99,6 +140,27 @@ function measurementOf(configuration, parse) {
     noise: noiseChoice(noise),
     example: given.example ?? false,
     label: configuration.label ?? "",
+    many: manyOf(configuration, read?.matrices ?? []),
+  };
+}
+
+/**
+ * The several matrices that a configuration holds or its text gives.
+ * @param {Configuration} configuration
+ * @param {Parsed["matrices"]} read from its text
+ * @returns {import("./types.js").Many | null}
+ */
+function manyOf({ series, compareWith, measurement, dataFile }, read) {
+  const matrices = series?.matrices ?? (compareWith && read.length !== 2 ? [measurement.mueller, compareWith.mueller] : read.map((matrix) => matrix.mueller));
+  if (matrices.length < 2) return null;
+  const inText = !series?.matrices;
+  return {
+    use: series?.use ?? (compareWith ? "pair" : "pick"),
+    matrices,
+    labels: series?.labels ?? matrices.map((/** @type {unknown} */ _, /** @type {number} */ k) => (inText ? (read[k]?.label ?? null) : null)),
+    coordinates: series?.coordinates ?? matrices.map((/** @type {unknown} */ _, /** @type {number} */ k) => (inText ? (read[k]?.coordinate ?? null) : null)),
+    source: dataFile?.name ?? "",
+    sha256: dataFile?.sha256 ?? "",
   };
 }
 
@@ -135,7 +197,7 @@ function readAgain(text, mueller, parse) {
     try {
       const { matrices } = parse(text, options);
       const pick = matrices.findIndex((matrix) => matrix.mueller.every((value, index) => Object.is(value, mueller[index])));
-      if (pick >= 0) return { options, pick, decimals: matrices[pick]?.decimals ?? null };
+      if (pick >= 0) return { options, pick, decimals: matrices[pick]?.decimals ?? null, matrices };
     } catch {
       // This way of reading does not fit; the next may.
     }

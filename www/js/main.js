@@ -1,18 +1,22 @@
 /** Wiring: the one state object, what is computed from it, and the one place for errors. */
-import { ConventionPanel } from "./convention.js";
+import { ConventionPanel, conventionInWords } from "./convention.js";
 import { byId, isTextField, make, repaint } from "./dom.js";
-import { ask, isDropped, quick, startEngine } from "./engine.js";
-import { fullText, place, readNumber } from "./format.js";
+import { DisplayPanel } from "./display.js";
+import { ENDINGS, exported, resultsOf } from "./exports.js";
+import { ask, cancel, isDropped, quick, startEngine } from "./engine.js";
+import { fileStem, isConfiguration, listenForFiles, saveFile, textIn } from "./files.js";
+import { countFrom, fullText, place, readNumber } from "./format.js";
 import { Grid } from "./grid.js";
-import { configurationOf, fromConfiguration, textOf } from "./link.js";
-import { NoisePanel, noiseOf } from "./noise.js";
+import { configurationOf, fromConfiguration, textOf, withoutSeries } from "./link.js";
+import { ManyPanel, manyOf, meanOf } from "./many.js";
+import { NoisePanel, noiseOf, printedNoise } from "./noise.js";
 import { PropertiesPanel } from "./panels/properties.js";
 import { RealizabilityPanel } from "./panels/realizability.js";
 import { linkIn, listen, writeClipboard } from "./paste.js";
 import { followTheme } from "./plots.js";
 import { ReadingPanel } from "./reading.js";
 import { Store, noMeasurement } from "./state.js";
-import { isSingleFile, loadExamples } from "./where.js";
+import { isSingleFile, loadExamples, publicAddress } from "./where.js";
 import { verdictOf } from "./words.js";
 
 /**
@@ -26,6 +30,10 @@ import { verdictOf } from "./words.js";
 
 /** A fragment beyond this length is cut by some mail and chat programs. */
 const LONG_LINK = 2000;
+/** A fragment beyond this length is not made: a file serves better. */
+const LONGEST_LINK = 8000;
+/** A longer text is read in the worker, and not kept as a text. */
+const LONG_TEXT = 200_000;
 
 const store = new Store(render);
 /** The last examination and what it answers. @type {{ key: string, request: Request, result: Examination, pending: boolean } | null} */
@@ -41,35 +49,36 @@ let isReady = false;
 const format = (request) => quick.formatValue(request);
 
 const grid = new Grid(byId("grid"), "measured-heading", {
-  edit: (index, text, name) => editCell(index, text, name),
+  edit: (changes, name) => editCells(changes, name),
   editing: () => store.endMerge(),
+  tell: (message) => tell(message),
 });
 const reading = new ReadingPanel(byId("reading"), {
   type: (text) => take(text, "the edit of the text", { merge: "text", options: store.work.measurement.options }),
   typed: () => store.endMerge(),
   reread: (options) => take(store.work.measurement.text, "the other reading", { options }),
-  pick: (pick) => take(store.work.measurement.text, "the choice of a matrix", { options: store.work.measurement.options, pick }),
   order: (order) => change("the change of order", { convention: { ...store.work.measurement.convention, order } }),
   normalised: (normalised) => change("the change of normalisation", { normalised }),
   absolute: (absolute) => change("the change of unit", { absolute }),
   clear: () => store.commit("clearing", { ...store.work, measurement: noMeasurement() }),
 });
+const many = new ManyPanel(byId("many"), { use: useMany, pick: pickOne });
+const display = new DisplayPanel(byId("display"), { view: (view) => store.setView(view), save: saveResults });
 const noise = new NoisePanel(byId("noise"), (choice, name, merge) => change(name, { noise: choice }, merge ? { merge } : {}));
 const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
 const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell: (message) => tell(message), failed: fail, format });
 const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell: (message) => tell(message), failed: fail, format });
 
 listen({
-  matrix: (text) => take(text, "the paste", { fresh: true }),
+  matrix: (text) => takeText(text, "the paste"),
   link: (fragment) => openLink(fragment),
-  cell: (text) => {
-    if (!grid.walking) return false;
-    grid.fill(text);
-    return true;
-  },
-  copyCell: () => (grid.walking ? grid.current : null),
+  block: (block) => grid.fill(block),
+  copySelected: () => (grid.walking ? grid.selectedText : null),
+  cutSelected: () => grid.clearSelected("the cutting of"),
   leaveEditor: () => grid.cancel(),
 });
+listenForFiles(byId("open-file"), { open: (file) => void takeFile(file), text: (text) => takeText(text, "the drop of a text"), failed: fail });
+byId("save-file").addEventListener("click", saveConfiguration);
 
 byId("undo").addEventListener("click", undo);
 byId("redo").addEventListener("click", redo);
@@ -137,6 +146,7 @@ function take(text, name, { fresh = false, merge, options = {}, pick = 0, exampl
   const base = fresh && before.example ? noMeasurement() : before;
   const { parsed } = read(text, options);
   const matrix = parsed?.matrices[pick] ?? parsed?.matrices[0];
+  const use = fresh ? "ask" : (before.many?.use ?? "ask");
   /** @type {Measurement} */
   const measurement = {
     ...base,
@@ -153,6 +163,8 @@ function take(text, name, { fresh = false, merge, options = {}, pick = 0, exampl
     if (fresh) measurement.normalised = matrix.mueller[0] === 1;
     if (fresh && matrix.label) measurement.label = matrix.label.slice(0, 80);
     if (measurement.noise.kind === "rounding" && matrix.decimals === null) measurement.noise = noMeasurement().noise;
+    if (matrix.sigma) measurement.noise = printedNoise(matrix.sigma, measurement.normalised);
+    measurement.many = manyOf(parsed, use === "repeats" ? "ask" : use);
   } else {
     // The old matrix stays in the grid until the text can be read.
     Object.assign(measurement, { ...before, text, options });
@@ -167,6 +179,138 @@ function take(text, name, { fresh = false, merge, options = {}, pick = 0, exampl
   }
   hideProblem();
   store.commit(name, { ...store.work, measurement }, { ...(merge ? { merge } : {}), safe: example !== undefined });
+}
+
+/**
+ * A pasted or dropped text, whatever is in it and however long it is.
+ * @param {string} text
+ * @param {string} name
+ */
+function takeText(text, name) {
+  if (isConfiguration(text)) openConfiguration(() => quick.decodeFile(text), "file");
+  else if (text.length > LONG_TEXT) void takeLarge("parseMatrices", text, name, { name: "", sha256: "" });
+  else take(text, name, { fresh: true });
+}
+
+/** @param {import("./files.js").OpenedFile} file */
+async function takeFile(file) {
+  const text = textIn(file.bytes, LONG_TEXT);
+  if (text !== null) takeText(text, `the opening of ${file.name}`);
+  else await takeLarge("parseFile", file.bytes, `the opening of ${file.name}`, file);
+}
+
+/**
+ * Read in the worker what is large or no text; its matrices are kept, the text is not.
+ * @param {"parseMatrices" | "parseFile"} how
+ * @param {string | Uint8Array<ArrayBuffer>} content
+ * @param {string} name
+ * @param {{ name: string, sha256: string }} file
+ * @param {import("./types.js").ReadOptions} [options]
+ */
+async function takeLarge(how, content, name, file, options = {}) {
+  const start = performance.now();
+  const size = `${(content.length / 1e6).toFixed(1)} MB`;
+  const progress = setInterval(() => {
+    const seconds = Math.round((performance.now() - start) / 1000);
+    const stop = make("button", { type: "button", id: "stop-reading", class: "inline", onclick: () => cancel("read") }, "Stop");
+    showBanner([make("progress", { "aria-label": "Reading" }), ` Reading ${size}, ${seconds} s. `, stop], false);
+  }, 300);
+  try {
+    const parsed = await (how === "parseFile"
+      ? ask("parseFile", [/** @type {Uint8Array} */ (content), options], { channel: "read" })
+      : ask("parseMatrices", [/** @type {string} */ (content), options], { channel: "read" }));
+    takeParsed(parsed, name, file);
+    const others = parsed.alternatives;
+    if (others.length > 0) {
+      showBanner(
+        [
+          "This array can be read in more than one way. Its matrices are counted by ",
+          [parsed, ...others].map(({ reading }) => {
+            const stacking = reading.stacking === "last" ? "last" : "first";
+            return [make("button", { type: "button", id: `stack-${stacking}`, onclick: () => void takeLarge(how, content, name, file, { stacking }) }, `the ${stacking} axis`), " "];
+          }),
+        ],
+        true,
+      );
+    }
+  } catch (error) {
+    if (isDropped(error)) tell("The reading was stopped. Nothing was changed.");
+    else fail(error);
+  } finally {
+    clearInterval(progress);
+    if (document.getElementById("stop-reading")) hideBanner();
+  }
+}
+
+/**
+ * @param {import("./types.js").Parsed} parsed
+ * @param {string} name
+ * @param {{ name: string, sha256: string }} file
+ */
+function takeParsed(parsed, name, file) {
+  const [matrix] = parsed.matrices;
+  if (!matrix) return;
+  const cells = matrix.mueller.map((value) => fullText(value, matrix.decimals));
+  const before = store.work.measurement;
+  const normalised = matrix.mueller[0] === 1;
+  const base = before.example ? noMeasurement() : before;
+  hideProblem();
+  store.commit(name, {
+    ...store.work,
+    measurement: {
+      ...base,
+      cells,
+      text: textOf(cells),
+      options: {},
+      pick: 0,
+      decimals: matrix.decimals,
+      normalised,
+      noise: matrix.sigma ? printedNoise(matrix.sigma, normalised) : base.noise,
+      label: matrix.label?.slice(0, 80) ?? file.name,
+      story: "",
+      example: false,
+      many: manyOf(parsed, "ask", file),
+    },
+  });
+  const refused = parsed.notes.filter((note) => note.severity === "refusal");
+  const said = parsed.notes.map((note) => note.message).slice(0, 3).join(" ");
+  tell(`Read ${parsed.matrices.length} matrices.${said ? ` ${said}` : ""}`);
+  if (refused[0]) showBanner([`${refused.length} ${refused.length === 1 ? "part" : "parts"} could not be read. The first: ${refused[0].message}`], true);
+}
+
+/** @param {number} pick which of several matrices is shown */
+function pickOne(pick) {
+  const { measurement } = store.work;
+  const matrix = measurement.many?.matrices[pick];
+  if (!matrix || !measurement.many) return;
+  const inText = measurement.many.source === "" && read(measurement.text, measurement.options).parsed?.matrices.length === measurement.many.matrices.length;
+  if (inText) {
+    take(measurement.text, "the choice of a matrix", { options: measurement.options, pick });
+    return;
+  }
+  const cells = matrix.map((value) => fullText(value));
+  change("the choice of a matrix", { cells, text: textOf(cells), options: {}, pick, decimals: null, label: measurement.many.labels[pick]?.slice(0, 80) ?? measurement.label });
+}
+
+/** @param {import("./types.js").Use} use */
+function useMany(use) {
+  const { measurement } = store.work;
+  const { many } = measurement;
+  if (!many) return;
+  const name = "the choice of what the matrices are";
+  if (use === "repeats") {
+    const { mean, sigma } = meanOf(many.matrices, measurement.normalised);
+    const cells = mean.map((value) => fullText(value));
+    const note = `The scatter of ${many.matrices.length} repeats about their mean, pooled over the elements, over √${many.matrices.length}.`;
+    /** @type {import("./types.js").NoiseChoice} */
+    const noise = sigma > 0 ? { kind: "uniform", sigma: fullText(Number(sigma.toPrecision(3))), given: null, note } : { kind: "none", sigma: "", given: null };
+    change(name, { many: { ...many, use }, cells, text: textOf(cells), options: {}, pick: 0, decimals: null, noise });
+  } else if (many.use === "repeats") {
+    const cells = (many.matrices[0] ?? []).map((value) => fullText(value));
+    change(name, { many: { ...many, use }, cells, text: textOf(cells), options: {}, pick: 0, decimals: null });
+  } else {
+    change(name, { many: { ...many, use } });
+  }
 }
 
 /** @param {Example} example */
@@ -184,17 +328,17 @@ function change(name, part, how = {}) {
 }
 
 /**
- * @param {number} index
- * @param {string} text
+ * @param {import("./grid.js").Change[]} changes
  * @param {string} name
  */
-function editCell(index, text, name) {
+function editCells(changes, name) {
   const { measurement } = store.work;
-  const cells = measurement.cells.with(index, text);
+  const cells = [...measurement.cells];
+  for (const { index, text } of changes) cells[index] = text;
   const numbers = cells.map(readNumber);
   const whole = numbers.every((number) => number.error === null);
   const decimals = whole ? Math.max(0, ...numbers.map((number) => number.decimals ?? 0)) : null;
-  change(`the edit of ${name}`, {
+  change(name, {
     cells,
     text: whole ? textOf(cells) : "",
     options: {},
@@ -203,6 +347,7 @@ function editCell(index, text, name) {
     example: false,
     story: "",
     label: measurement.example ? "" : measurement.label,
+    many: null,
   });
 }
 
@@ -215,7 +360,7 @@ function useNearest() {
   nearest.forEach((value, k) => {
     cells[place(order, Math.floor(k / 4), k % 4)] = fullText(value);
   });
-  change("the step to the nearest realizable matrix", { cells, text: textOf(cells), options: {}, pick: 0, decimals: null });
+  change("the step to the nearest realizable matrix", { cells, text: textOf(cells), options: {}, pick: 0, decimals: null, many: null });
   byId("task").focus();
 }
 
@@ -278,8 +423,11 @@ function render() {
   if (isReady && request) compute(request);
   else if (!filled && !outcome.error) answer = null;
 
+  countFrom(view.firstIndex);
   grid.show(measurement.cells, measurement.convention.order);
   reading.show(measurement, outcome, filled);
+  many.show(measurement.many, measurement.pick);
+  display.show(view);
   noise.show(measurement.noise, measurement.decimals, filled);
   convention.show(measurement.convention);
   showOrigin(measurement);
@@ -410,18 +558,45 @@ function redo() {
   if (name) tell(`Done again: ${name}.`);
 }
 
-async function copyLink() {
-  const outcome = read(store.work.measurement.text, store.work.measurement.options);
+/**
+ * The configuration of the present work, or what is missing for one.
+ * @returns {{ configuration: import("./link.js").Configuration | null, waiting: string | null }}
+ */
+function configurationNow() {
+  const { measurement } = store.work;
+  const outcome = read(measurement.text, measurement.options);
   const { request, waiting } = requestNow(outcome);
-  if (!request) {
-    tell(waiting ?? "There is nothing to link to yet.");
+  if (!request) return { configuration: null, waiting: waiting ?? "There is no matrix yet." };
+  const textHolds = outcome.parsed !== null && measurement.text.length <= LONG_TEXT;
+  return { configuration: configurationOf(store.work, store.view, request, textHolds, quick.engineInfo().version), waiting: null };
+}
+
+/**
+ * A fragment for the configuration; with the shown matrix alone where all are too many.
+ * @param {import("./link.js").Configuration} configuration
+ */
+function fragmentOf(configuration) {
+  const bulk = configuration["series"]?.matrices?.length ?? 0;
+  try {
+    const fragment = bulk > LONGEST_LINK / 10 ? "" : quick.encodeLink(configuration);
+    if (fragment !== "" && fragment.length <= LONGEST_LINK) return { fragment, whole: true };
+  } catch (error) {
+    if (bulk === 0 && !configuration["measurement"]?.text) throw error;
+  }
+  return { fragment: quick.encodeLink(withoutSeries(configuration)), whole: false };
+}
+
+async function copyLink() {
+  const { configuration, waiting } = configurationNow();
+  if (!configuration) {
+    tell(waiting ?? "");
     return;
   }
   try {
-    const fragment = quick.encodeLink(configurationOf(store.work, store.view, request, outcome.parsed !== null, quick.engineInfo().version));
-    const address = isSingleFile ? `#${fragment}\nHalfshade: open halfshade.html and paste this text, or put it behind the address of the page.` : `${location.href.split("#")[0]}#${fragment}`;
+    const { fragment, whole } = fragmentOf(configuration);
+    const address = isSingleFile && publicAddress() === "" ? `#${fragment}\nHalfshade: open halfshade.html and paste this text, or put it behind the address of the page.` : `${isSingleFile ? publicAddress() : location.href.split("#")[0]}#${fragment}`;
     store.fragment = fragment;
-    store.markSafe();
+    if (whole) store.markSafe();
     try {
       history.replaceState(null, "", `#${fragment}`);
     } catch {
@@ -429,8 +604,60 @@ async function copyLink() {
     }
     render();
     const done = await writeClipboard(address);
-    if (done) tell(`Link copied, ${fragment.length} characters.${fragment.length > LONG_LINK ? " Some mail and chat programs cut it." : ""}`);
-    else offerText(address);
+    const size = `Link copied, ${fragment.length} characters.`;
+    const warning = fragment.length > LONG_LINK ? " Some mail and chat programs cut it: Save makes a file instead." : "";
+    if (!done) offerText(address);
+    else if (whole) tell(`${size}${warning}`);
+    else {
+      tell(`${size} It holds the shown matrix alone.`);
+      showBanner(["All matrices together do not fit into a link: this one holds the shown matrix alone. ", make("button", { type: "button", id: "save-instead", class: "inline", onclick: saveConfiguration }, "Save a file with all of them")], true);
+    }
+  } catch (error) {
+    fail(error);
+  }
+}
+
+function saveConfiguration() {
+  const { configuration, waiting } = configurationNow();
+  if (!configuration) {
+    tell(waiting ?? "");
+    return;
+  }
+  try {
+    const name = `${fileStem(store.work.measurement.label)}.json`;
+    saveFile(name, new Blob([quick.encodeFile(configuration)], { type: "application/json" }));
+    store.markSafe();
+    render();
+    tell(`Saved as ${name}. Drop it on the page to open it again.`);
+  } catch (error) {
+    fail(error);
+  }
+}
+
+/** What a result stands on. */
+function notesNow() {
+  if (!answer) return [];
+  const { title } = verdictOf(answer.result, answer.request, answer.pending, format);
+  const { noise: stated, convention: used, normalised } = answer.request;
+  return [
+    title,
+    `Halfshade ${quick.engineInfo().version}; matrices row by row; ${normalised ? "normalised to m00" : "not normalised"}`,
+    `Noise: ${JSON.stringify(stated)}`,
+    `Convention: facing the source, ${conventionInWords(used)}; time dependence exp(${used.time === "plus" ? "+" : "-"}i omega t)`,
+  ];
+}
+
+/** Everything that is known of the shown matrix, as a file in the chosen form. */
+function saveResults() {
+  if (!answer) {
+    tell("There is no result yet.");
+    return;
+  }
+  try {
+    const { form } = store.view;
+    const name = `${fileStem(store.work.measurement.label)}-results.${ENDINGS[form]}`;
+    saveFile(name, new Blob([exported(resultsOf(answer.result, answer.request, store.work.measurement.label, notesNow()), form)], { type: "text/plain" }));
+    tell(`Saved as ${name}.`);
   } catch (error) {
     fail(error);
   }
@@ -447,20 +674,31 @@ function offerText(text) {
 
 /** @param {string} fragment */
 function openLink(fragment) {
+  openConfiguration(() => quick.decodeLink(fragment), "link", fragment);
+}
+
+/**
+ * @param {() => import("./link.js").Configuration} decode
+ * @param {"link" | "file"} from
+ * @param {string} [fragment]
+ */
+function openConfiguration(decode, from, fragment) {
   if (!isReady) return;
   try {
-    const configuration = quick.decodeLink(fragment);
+    const configuration = decode();
     const { work, view } = fromConfiguration(configuration, store.view, (text, options) => quick.parseMatrices(text, options));
-    store.fragment = fragment;
+    if (fragment !== undefined) store.fragment = fragment;
     store.view = view;
     hideProblem();
-    store.commit("the opening of a link", work, { safe: true });
-    const by = typeof configuration.app === "string" ? configuration.app : "another version";
+    store.commit(`the opening of a ${from}`, work, { safe: true });
+    const by = typeof configuration["app"] === "string" ? configuration["app"] : "another version";
     const kept = Object.keys(work.kept);
+    const file = work.measurement.many ? null : configuration["dataFile"];
     showBanner(
       [
-        `Loaded from a link made with version ${by}.`,
+        `Loaded from a ${from} made with version ${by}.`,
         kept.length > 0 ? ` It also holds ${kept.join(", ")}, which this version does not show but keeps.` : null,
+        file ? ` The other matrices are in ${file.name}: open that file to see them.` : null,
         " ",
         make("button", { type: "button", id: "banner-undo", class: "inline", onclick: () => { hideBanner(); undo(); } }, "Undo"),
       ],

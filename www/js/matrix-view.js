@@ -1,6 +1,7 @@
 /** Matrices on the page: as numbers, and as coloured cells. */
 import { make } from "./dom.js";
-import { fixed, fullText, rows, significant, tsv } from "./format.js";
+import { matrixText } from "./exports.js";
+import { elementName, fixed, fullText, rows, significant } from "./format.js";
 import { writeClipboard } from "./paste.js";
 
 /** The strongest tint, so that text on it stays readable. */
@@ -19,7 +20,7 @@ export function matrixTable(id, title, matrix, tell) {
   return make(
     "figure",
     { class: "matrix" },
-    make("figcaption", null, make("span", null, title), copyButton(`copy-${id}`, title, () => tsv(matrix), tell)),
+    make("figcaption", null, make("span", null, title), copyButton(`copy-${id}`, title, () => matrixText(title, matrix), tell)),
     make(
       "table",
       { class: "numbers", "aria-label": title },
@@ -46,7 +47,7 @@ export function colouredCells(label, matrix, { full, write }) {
           "tr",
           null,
           row.map((value, j) => {
-            const cell = make("td", { title: `m${i}${j}: ${significant(value, 6)}` }, write(value));
+            const cell = make("td", { title: `${elementName(i, j)}: ${significant(value, 6)}` }, write(value));
             const share = full > 0 ? Math.min(1, Math.abs(value) / full) : 0;
             cell.style.setProperty("--tint", `${Math.round(100 * TINT * share)}%`);
             if (value > 0) cell.classList.add("above");

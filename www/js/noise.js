@@ -1,6 +1,6 @@
 /** What is known of the noise, asked once and quietly. */
 import { make, repaint } from "./dom.js";
-import { readNumber } from "./format.js";
+import { fullText, readNumber, significant } from "./format.js";
 
 /**
  * @typedef {import("./types.js").NoiseChoice} NoiseChoice
@@ -22,6 +22,24 @@ export function noiseOf(choice, decimals) {
     return { noise: { kind: "uniform", sigma: read.value }, error: null };
   }
   return { noise: { kind: "none" }, error: null };
+}
+
+/**
+ * The uncertainties that were printed with the numbers, as one σ.
+ * @param {number[]} sigma
+ * @param {boolean} exactFirst whether the first element has none
+ * @returns {NoiseChoice}
+ */
+export function printedNoise(sigma, exactFirst) {
+  const counted = exactFirst ? sigma.slice(1) : sigma;
+  const [least, most] = [Math.min(...counted), Math.max(...counted)];
+  const mean = Math.sqrt(counted.reduce((sum, value) => sum + value * value, 0) / counted.length);
+  if (!(mean > 0)) return { kind: "none", sigma: "", given: null };
+  const note =
+    least === most
+      ? "Read with the numbers."
+      : `Read with the numbers: from ${significant(least)} to ${significant(most)}. Their root mean square stands for all of them.`;
+  return { kind: "uniform", sigma: fullText(least === most ? least : Number(mean.toPrecision(4))), given: null, note };
 }
 
 export class NoisePanel {
@@ -100,6 +118,7 @@ export class NoisePanel {
    */
   hint(choice, decimals) {
     if (choice.kind === "other") return "The link states a noise that this version cannot use. It is kept in the link; here, none is stated.";
+    if (choice.kind === "uniform" && choice.note) return choice.note;
     if (choice.kind === "uniform") return "Standard deviation of one element, in the unit of the matrix as given.";
     if (choice.kind === "rounding" && decimals === null) return "The digits do not show a resolution, so no noise is stated.";
     if (choice.kind === "rounding") return "Rounding alone: the least noise that printed numbers can have.";

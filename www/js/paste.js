@@ -6,8 +6,9 @@ import { readNumber } from "./format.js";
  * @typedef {object} PasteActions
  * @property {(text: string) => void} matrix text that is to be read as matrices
  * @property {(fragment: string) => void} link
- * @property {(text: string) => boolean} cell one number for the cell under the keyboard; false when it is in none
- * @property {() => string | null} copyCell text of the cell under the keyboard
+ * @property {(block: string[][]) => boolean} block a few numbers for the cells under the keyboard; false when it is in none
+ * @property {() => string | null} copySelected text of the selected cells, if the keyboard is in one
+ * @property {() => void} cutSelected empty them
  * @property {() => void} leaveEditor a whole matrix was pasted into the editor of a cell
  */
 
@@ -32,6 +33,21 @@ export function isMany(text) {
   return /[\s;\[\](){}]/.test(text.trim());
 }
 
+/**
+ * Fewer numbers than a matrix has, as rows.
+ * @param {string} text
+ * @returns {string[][] | null}
+ */
+export function blockIn(text) {
+  const rows = text
+    .replace(/\s+$/, "")
+    .split(/\r\n|\r|\n/)
+    .map((line) => line.trim().split(/\t|;|\s+/).filter((cell) => cell !== ""));
+  const cells = rows.flat();
+  const few = cells.length > 0 && cells.length < 16 && rows.every((row) => row.length > 0);
+  return few && cells.every((cell) => readNumber(cell).error === null) ? rows : null;
+}
+
 /** @param {PasteActions} actions */
 export function listen(actions) {
   document.addEventListener("paste", (event) => {
@@ -43,24 +59,33 @@ export function listen(actions) {
     if (isTextField(active) && !(inGrid && isMany(text))) return;
     event.preventDefault();
     const link = linkIn(text);
+    const block = inGrid ? blockIn(text) : null;
     if (link) {
       actions.link(link);
-    } else if (!isMany(text) && readNumber(text).error === null && actions.cell(text)) {
-      // One number went into the cell under the keyboard.
+    } else if (block) {
+      if (isTextField(active)) actions.leaveEditor();
+      actions.block(block);
     } else {
       if (inGrid) actions.leaveEditor();
       actions.matrix(text);
     }
   });
 
-  document.addEventListener("copy", (event) => {
-    if (!event.clipboardData || isTextField(document.activeElement)) return;
+  /** @param {ClipboardEvent} event @returns {boolean} whether cells were copied */
+  const copy = (event) => {
+    if (!event.clipboardData || isTextField(document.activeElement)) return false;
     const selected = String(document.getSelection() ?? "");
-    const text = selected === "" ? actions.copyCell() : selected;
-    if (text === null || text === "") return;
+    const cells = selected === "" ? actions.copySelected() : null;
+    const text = cells ?? selected;
+    if (text === "") return false;
     // Spreadsheets and programs do not read the typographic minus.
     event.clipboardData.setData("text/plain", text.replace(/\u2212/g, "-"));
     event.preventDefault();
+    return cells !== null;
+  };
+  document.addEventListener("copy", copy);
+  document.addEventListener("cut", (event) => {
+    if (copy(event)) actions.cutSelected();
   });
 }
 

@@ -1,6 +1,6 @@
 /** What was understood of the pasted text, with a control for each guess, and the text itself. */
 import { choice, fold, make, repaint } from "./dom.js";
-import { cellText, fullText, rows } from "./format.js";
+import { cellText, elementName, fullText, rows } from "./format.js";
 
 /**
  * @typedef {import("./types.js").Measurement} Measurement
@@ -14,7 +14,6 @@ import { cellText, fullText, rows } from "./format.js";
  * @property {(text: string) => void} type the text was edited
  * @property {() => void} typed the edit of the text is over
  * @property {(options: ReadOptions) => void} reread
- * @property {(pick: number) => void} pick
  * @property {(order: "rows" | "columns") => void} order
  * @property {(normalised: boolean) => void} normalised
  * @property {(absolute: boolean) => void} absolute
@@ -179,11 +178,11 @@ export class ReadingPanel {
         "; ",
         choice({
           id: "normalised",
-          label: "Whether m00 is exact",
+          label: `Whether ${elementName(0, 0)} is exact`,
           value: measurement.normalised ? "yes" : "no",
           options: [
             ["no", "not normalised"],
-            ["yes", "normalised to m00"],
+            ["yes", `normalised to ${elementName(0, 0)}`],
           ],
           change: (value) => this.actions.normalised(value === "yes"),
         }),
@@ -203,29 +202,9 @@ export class ReadingPanel {
         " ",
         clear,
       ),
-      several && parsed ? this.picker(parsed, measurement.pick) : null,
       parsed && parsed.alternatives.length > 0 && !measurement.options.decimal ? this.alternatives(parsed) : null,
       parsed && parsed.notes.length > 0 ? notes(parsed) : null,
     ];
-  }
-
-  /**
-   * @param {Parsed} parsed
-   * @param {number} pick
-   */
-  picker(parsed, pick) {
-    /** @type {[string, string][]} */
-    const options = parsed.matrices.map((matrix, index) => [
-      String(index),
-      `${index + 1}${matrix.label ? `: ${matrix.label}` : ""} (line ${matrix.line})`,
-    ]);
-    return make(
-      "p",
-      { class: "said" },
-      "Shown: matrix ",
-      choice({ id: "pick", label: "Which matrix of the text", value: String(pick), options, change: (value) => this.actions.pick(Number(value)) }),
-      ` of ${parsed.matrices.length}.`,
-    );
   }
 
   /** @param {Parsed} parsed */

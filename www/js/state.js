@@ -10,6 +10,8 @@ const SNAPSHOT = "halfshade";
 const SNAPSHOT_VERSION = 1;
 /** The history is cut by its size in characters, not by a number of steps. */
 const HISTORY_CHARACTERS = 16e6;
+/** More matrices than these are not written into the snapshot at every change. */
+const MOST_KEPT = 300;
 
 /** @returns {import("./types.js").Convention} */
 export function usualConvention() {
@@ -31,6 +33,7 @@ export function noMeasurement() {
     example: false,
     label: "",
     story: "",
+    many: null,
   };
 }
 
@@ -41,7 +44,7 @@ export function noWork() {
 
 /** @returns {View} */
 export function usualView() {
-  return { task: "realizability", azimuthDeg: 30, elevationDeg: 20 };
+  return { task: "realizability", azimuthDeg: 30, elevationDeg: 20, firstIndex: 0, retardanceUnit: "deg", wavelengthNm: 550, form: "tsv" };
 }
 
 /**
@@ -142,7 +145,7 @@ export class Store {
 
   /** Keep a snapshot in this tab, so that a reload brings it back. */
   keep() {
-    const snapshot = { version: SNAPSHOT_VERSION, work: this.work, view: this.view, fragment: this.fragment, safe: !this.unsaved };
+    const snapshot = { version: SNAPSHOT_VERSION, work: withoutBulk(this.work), view: this.view, fragment: this.fragment, safe: !this.unsaved };
     try {
       sessionStorage.setItem(SNAPSHOT, JSON.stringify(snapshot));
     } catch {
@@ -165,10 +168,21 @@ export class Store {
       return false;
     }
     if (snapshot?.version !== SNAPSHOT_VERSION || !snapshot.work || !snapshot.view) return false;
-    this.work = snapshot.work;
+    this.work = { ...snapshot.work, measurement: { ...noMeasurement(), ...snapshot.work.measurement } };
     this.view = { ...usualView(), ...snapshot.view };
     this.fragment = snapshot.fragment ?? "";
     this.safe = snapshot.safe ? this.work : noWork();
     return this.fragment === fragment || fragment === "";
   }
+}
+
+/**
+ * The work as a reload brings it back: of a large file only the matrix that is shown.
+ * @param {Work} work
+ * @returns {Work}
+ */
+function withoutBulk(work) {
+  const { many } = work.measurement;
+  if (!many || many.matrices.length <= MOST_KEPT) return work;
+  return { ...work, measurement: { ...work.measurement, many: null } };
 }

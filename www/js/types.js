@@ -35,6 +35,7 @@
  * @property {"none" | "rounding" | "uniform" | "other"} kind
  * @property {string} sigma
  * @property {object | null} given a statement from a link that this version cannot use
+ * @property {string} [note] where σ came from, if not from the person
  *
  * @typedef {object} Measurement the measured matrix as the person gave it
  * @property {string[]} cells sixteen texts, laid out as `convention.order` says
@@ -49,6 +50,17 @@
  * @property {boolean} example
  * @property {string} label
  * @property {string} story
+ * @property {Many | null} many all matrices of what was read, where they are several
+ *
+ * @typedef {"ask" | "pick" | "series" | "repeats" | "pair"} Use what several matrices are
+ *
+ * @typedef {object} Many
+ * @property {Use} use
+ * @property {number[][]} matrices in the order of the text
+ * @property {(string | null)[]} labels
+ * @property {(number | null)[]} coordinates
+ * @property {string} source name of the file; empty where they are in the text
+ * @property {string} sha256 of the file; empty where they are in the text
  *
  * @typedef {object} Work everything that undo covers; never changed in place
  * @property {Measurement} measurement
@@ -59,6 +71,12 @@
  * @property {Task} task
  * @property {number} azimuthDeg
  * @property {number} elevationDeg
+ * @property {0 | 1} firstIndex what the first row and column are called
+ * @property {"deg" | "waves" | "nm"} retardanceUnit
+ * @property {number} wavelengthNm
+ * @property {Form} form what is copied and saved
+ *
+ * @typedef {"tsv" | "csv" | "csvEuropean" | "json" | "latex" | "python" | "matlab"} Form
  *
  * @typedef {object} Shown what the panels get to show
  * @property {Work} work

@@ -8,6 +8,17 @@ const EXAMPLES = new URL("../demo-data/", import.meta.url);
 /** Whether the page is the single file. */
 export const isSingleFile = false;
 
+/** Where a colleague finds the page: this one is there already. */
+export function publicAddress() {
+  return "";
+}
+
+/**
+ * A public address is asked for in the single file alone.
+ * @param {string} _address
+ */
+export function setPublicAddress(_address) {}
+
 /**
  * Compiles the engine.
  * @returns {Promise<WebAssembly.Module>}

@@ -2,7 +2,7 @@
  * Verdicts as sentences. Pure: an engine's result goes in, text comes out, so that
  * every case can be tested without a page.
  */
-import { fixed, significant } from "./format.js";
+import { elementName, fixed, significant } from "./format.js";
 
 /**
  * @typedef {import("./types.js").Examination} Examination
@@ -69,17 +69,17 @@ function withoutEigenvalues(request) {
     return {
       tone: "good",
       title: "The zero matrix: no light comes out",
-      reason: ["It can be physical, like a perfect absorber, but it has no other properties: every figure is relative to m00, and m00 is 0."],
+      reason: [`It can be physical, like a perfect absorber, but it has no other properties: every figure is relative to ${elementName(0, 0)}, and ${elementName(0, 0)} is 0.`],
       next: [],
     };
   }
   return {
     tone: "bad",
-    title: "Not realizable: m00 is 0, other elements are not",
+    title: `Not realizable: ${elementName(0, 0)} is 0, other elements are not`,
     reason: [
-      "m00 is what passes of unpolarized light. Where it is 0, nothing passes, and every other element must be 0 too.",
+      `${elementName(0, 0)} is what passes of unpolarized light. Where it is 0, nothing passes, and every other element must be 0 too.`,
     ],
-    next: ["Look for a lost m00: some programs leave it out of a normalised matrix, where it is 1."],
+    next: [`Look for a lost ${elementName(0, 0)}: some programs leave it out of a normalised matrix, where it is 1.`],
   };
 }
 
@@ -90,8 +90,8 @@ function withoutEigenvalues(request) {
 function negative(m00) {
   return {
     tone: "bad",
-    title: "Not realizable: m00 is negative",
-    reason: ["m00 is what passes of unpolarized light, here ", { number: significant(m00, 4) }, ". Light cannot be less than none."],
+    title: `Not realizable: ${elementName(0, 0)} is negative`,
+    reason: [`${elementName(0, 0)} is what passes of unpolarized light, here `, { number: significant(m00, 4) }, ". Light cannot be less than none."],
     next: ["Either the sign of the whole matrix is reversed, or more background was subtracted than there was light."],
   };
 }
@@ -107,7 +107,7 @@ function realizable(realizability, request, format) {
   /** @type {Part[]} */
   const reason = ["All four coherency eigenvalues are at or above zero"];
   if (Math.abs(value) < 1e-11) reason.push("; the smallest is 0 within the accuracy of the arithmetic. ");
-  else reason.push("; the smallest is ", { number: eigenvalueText(value, se, format) }, " of m00. ");
+  else reason.push("; the smallest is ", { number: eigenvalueText(value, se, format) }, ` of ${elementName(0, 0)}. `);
   if (se !== null && value < 2 * se) reason.push({ mute: "The margin is within two standard errors of zero." });
   if (request.noise.kind === "none") reason.push({ mute: "No noise is stated, so the margin has no uncertainty." });
   return {
@@ -177,12 +177,12 @@ function beyondNoise(realizability, request, format) {
     reason,
     next: rounding
       ? ["Rounding is the least noise there can be. If you know σ of the measurement, state it; else look for an error, as below."]
-      : [CAUSES],
+      : [causes()],
   };
 }
 
-const CAUSES =
-  "Usual causes: one side counted the other way round (a sign, or two rows or columns exchanged), m00 too small or background over-subtracted, one wrong element, a wrong contrast or retardance of one side; or the noise is larger than stated.";
+const causes = () =>
+  `Usual causes: one side counted the other way round (a sign, or two rows or columns exchanged), ${elementName(0, 0)} too small or background over-subtracted, one wrong element, a wrong contrast or retardance of one side; or the noise is larger than stated.`;
 
 /**
  * @param {import("./types.js").Realizability} realizability
@@ -250,8 +250,8 @@ function negatives(realizability, format) {
   const count = (realizability.eigenvalues ?? []).filter((value) => value < -1e-12).length;
   const { value, se } = smallest(realizability);
   const number = { number: eigenvalueText(value, se, format) };
-  if (count <= 1) return ["One coherency eigenvalue is negative, ", number, " of m00."];
-  return [`${COUNTS[count] ?? count} coherency eigenvalues are negative, the smallest `, number, " of m00."];
+  if (count <= 1) return ["One coherency eigenvalue is negative, ", number, ` of ${elementName(0, 0)}.`];
+  return [`${COUNTS[count] ?? count} coherency eigenvalues are negative, the smallest `, number, ` of ${elementName(0, 0)}.`];
 }
 
 /**
@@ -337,7 +337,7 @@ export function checksOf(result, request, pending, format) {
     name: "Coherency eigenvalues ≥ 0",
     answer: !realizability.eigenvalues ? "not defined" : rounded ? "within rounding" : (answers[realizability.verdict] ?? "no"),
     value: realizability.eigenvalues ? eigenvalueText(value, se, format) : "",
-    note: "The necessary and sufficient condition; the number is the smallest eigenvalue of H over m00.",
+    note: `The necessary and sufficient condition; the number is the smallest eigenvalue of H over ${elementName(0, 0)}.`,
   });
   const { stokesCondition, stokesMargin } = realizability;
   checks.push({
@@ -353,7 +353,7 @@ export function checksOf(result, request, pending, format) {
     name: "Passive: gives out no more light than it gets",
     answer: passivity ? (passive[passivity.verdict] ?? passivity.verdict) : "not tested",
     value: passivity ? (figureText(passivity.margin, format) ?? "") : "relative units",
-    note: passivity ? "m00 (1 + the larger of D and P) − 1; above zero means gain." : "Only an absolute transmittance or reflectance can be tested.",
+    note: passivity ? `${elementName(0, 0)} (1 + the larger of D and P) − 1; above zero means gain.` : "Only an absolute transmittance or reflectance can be tested.",
   });
   return checks;
 }
@@ -371,7 +371,7 @@ export function changeInWords(nearest) {
   });
   const largest = changes[index] ?? 0;
   if (Math.abs(largest) < 1e-12) return "The matrix is realizable: nothing changes.";
-  const name = `m${Math.floor(index / 4)}${index % 4}`;
+  const name = elementName(Math.floor(index / 4), index % 4);
   return `Largest change ${significant(largest)}${nearest.changeInSigma ? " σ" : ""}, in ${name}.`;
 }
 

@@ -1,7 +1,8 @@
 /** The Properties task: what the element does to light, each figure with its uncertainty. */
 import { DEFINITIONS, GROUPS, METHODS } from "../definitions.js";
 import { fold, make, repaint, sentence } from "../dom.js";
-import { fixed, fullText, significant } from "../format.js";
+import { exported, figuresTable } from "../exports.js";
+import { elementName, fixed, significant } from "../format.js";
 import { copyButton, matrixTable } from "../matrix-view.js";
 import { DRAWINGS, Plot } from "../plots.js";
 import { figureText, summaryOf, verdictOf } from "../words.js";
@@ -127,7 +128,7 @@ export class PropertiesPanel {
     const figures = /** @type {Record<string, Figure>} */ (result.figures);
     repaint(
       this.figures,
-      make("p", { class: "fine about" }, about, " ", copyButton("copy-figures", "all figures", () => figuresAsText(result), tell)),
+      make("p", { class: "fine about" }, about, " ", copyButton("copy-figures", "all figures", () => exported({ tables: [figuresTable(result)] }), tell)),
       GROUPS.map((group) => [
         make("h2", null, group.title),
         make("table", { class: "figures" }, make("tbody", null, group.names.flatMap((name, index) => this.figureRows(name, figures[name], figures[group.names[index - 1] ?? ""], format)))),
@@ -239,7 +240,7 @@ export class PropertiesPanel {
                   : make("figure", { class: "matrix" }, make("figcaption", null, capital(factor)), make("p", { class: "mute" }, "not determined"));
               }),
             ),
-            make("p", { class: "fine" }, `Their product is the nearest realizable matrix over m00${polar.residual === null ? "" : `, to ${significant(polar.residual, 1)}`}.`),
+            make("p", { class: "fine" }, `Their product is the nearest realizable matrix over ${elementName(0, 0)}${polar.residual === null ? "" : `, to ${significant(polar.residual, 1)}`}.`),
           ]
         : make("p", { class: "mute" }, reason ?? "Not determined."),
     );
@@ -328,14 +329,6 @@ function noteOf(name, figure, above) {
   }
   if (["retardanceDeg", "linearRetardanceDeg", "fastAxisDeg", "rotationDeg", "retarderAzimuthDeg", "retarderEllipticityDeg", "depolarizationPower", "entropy"].includes(name) && figure.value !== null) notes.push("nearest");
   return notes.join("; ");
-}
-
-/** @param {Examination} result */
-function figuresAsText({ figures }) {
-  const lines = Object.entries(figures).map(([name, figure]) =>
-    [name, figure.value === null ? "" : fullText(figure.value), figure.se === null ? "" : fullText(figure.se), DEFINITIONS[name]?.unit === "°" ? "deg" : "", figure.reason ?? ""].join("\t"),
-  );
-  return ["figure\tvalue\tstandard uncertainty\tunit\tnote", ...lines].join("\n");
 }
 
 /**

@@ -1,7 +1,7 @@
 /** The Realizability task: can the matrix be physical, how sure is that, what is nearest. */
 import { METHODS } from "../definitions.js";
 import { fold, make, repaint, sentence } from "../dom.js";
-import { fixed, significant } from "../format.js";
+import { elementName, fixed, significant } from "../format.js";
 import { colouredCells, matrixTable } from "../matrix-view.js";
 import { DRAWINGS, Plot } from "../plots.js";
 import { BLIND, GLOSS, changeInWords, checksOf, eigenvalueText, verdictOf } from "../words.js";
@@ -171,7 +171,7 @@ function eigenvalueTable(values, errors, format) {
   return make(
     "table",
     { class: "data" },
-    make("thead", null, make("tr", null, make("th", { scope: "col" }, "eigenvalue of H / m00"), make("th", { scope: "col" }, "value"), make("th", { scope: "col" }, "standard error"))),
+    make("thead", null, make("tr", null, make("th", { scope: "col" }, `eigenvalue of H / ${elementName(0, 0)}`), make("th", { scope: "col" }, "value"), make("th", { scope: "col" }, "standard error"))),
     make("tbody", null, values.map((value, index) =>
       make(
         "tr",
@@ -194,6 +194,6 @@ function testNumbers({ realizability }, request, examine) {
   return make(
     "p",
     { class: "fine" },
-    `Here T = ${significant(realizability.statistic ?? 0, 4)}, p = ${significant(realizability.pValue, 3)} from ${realizability.simulations} simulations, seed ${examine.seed}. The tolerance for a zero eigenvalue is 10⁻¹² of m00, the accuracy of the arithmetic.`,
+    `Here T = ${significant(realizability.statistic ?? 0, 4)}, p = ${significant(realizability.pValue, 3)} from ${realizability.simulations} simulations, seed ${examine.seed}. The tolerance for a zero eigenvalue is 10⁻¹² of ${elementName(0, 0)}, the accuracy of the arithmetic.`,
   );
 }

@@ -1,0 +1,155 @@
+/** Several matrices at once: what they are to each other, and the one that is shown. */
+import { choice, fold, make, repaint } from "./dom.js";
+import { fullText, significant } from "./format.js";
+import { colouredCells } from "./matrix-view.js";
+
+/**
+ * @typedef {import("./types.js").Many} Many
+ * @typedef {import("./types.js").Use} Use
+ * @typedef {import("./types.js").Parsed} Parsed
+ *
+ * @typedef {object} ManyActions
+ * @property {(use: Use) => void} use
+ * @property {(index: number) => void} pick
+ */
+
+/** More choices than this do not help in a list. */
+const LONGEST_LIST = 200;
+
+/**
+ * The matrices of a text or a file, where they are several.
+ * @param {Parsed | null} parsed
+ * @param {Use} use
+ * @param {{ name: string, sha256: string }} [file] none: they are in the text
+ * @returns {Many | null}
+ */
+export function manyOf(parsed, use, file = { name: "", sha256: "" }) {
+  if (!parsed || parsed.matrices.length < 2) return null;
+  return {
+    use,
+    matrices: parsed.matrices.map((matrix) => matrix.mueller),
+    labels: parsed.matrices.map((matrix) => matrix.label),
+    coordinates: parsed.matrices.map((matrix) => matrix.coordinate),
+    source: file.name,
+    sha256: file.sha256,
+  };
+}
+
+/**
+ * Mean of repeats, and the standard deviation of one element of the mean: the scatter
+ * about it, pooled over the elements.
+ * @param {number[][]} matrices
+ * @param {boolean} exactFirst whether the first element has no error
+ * @returns {{ mean: number[], sigma: number }}
+ */
+export function meanOf(matrices, exactFirst) {
+  const count = matrices.length;
+  const mean = Array.from({ length: 16 }, (_, k) => matrices.reduce((sum, matrix) => sum + (matrix[k] ?? 0), 0) / count);
+  let squares = 0;
+  for (const matrix of matrices) matrix.forEach((value, k) => (squares += (value - (mean[k] ?? 0)) ** 2));
+  const elements = exactFirst ? 15 : 16;
+  return { mean, sigma: Math.sqrt(squares / (elements * (count - 1)) / count) };
+}
+
+/**
+ * What a matrix is called in a list.
+ * @param {Many} many
+ * @param {number} index
+ */
+export function nameOf({ labels, coordinates }, index) {
+  const label = labels[index];
+  const coordinate = coordinates[index];
+  const more = label ?? (coordinate !== null && coordinate !== undefined ? fullText(coordinate) : "");
+  return `${index + 1}${more ? `: ${more}` : ""}`;
+}
+
+export class ManyPanel {
+  /**
+   * @param {HTMLElement} root
+   * @param {ManyActions} actions
+   */
+  constructor(root, actions) {
+    this.root = root;
+    this.actions = actions;
+  }
+
+  /**
+   * @param {Many | null} many
+   * @param {number} pick
+   */
+  show(many, pick) {
+    this.root.hidden = !many;
+    if (!many) {
+      repaint(this.root);
+      return;
+    }
+    const count = many.matrices.length;
+    const use = choice({
+      id: "many-use",
+      label: "What these matrices are",
+      value: many.use,
+      options: [
+        ...(many.use === "ask" ? /** @type {[string, string][]} */ ([["ask", "… choose what they are"]]) : []),
+        ["pick", "to pick one from"],
+        ["repeats", "repeats of one measurement"],
+        ["series", "a series"],
+        ...(count === 2 ? /** @type {[string, string][]} */ ([["pair", "a pair to compare"]]) : []),
+      ],
+      change: (value) => this.actions.use(/** @type {Use} */ (value)),
+    });
+    repaint(
+      this.root,
+      make("p", { class: many.use === "ask" ? "said notice-line" : "said" }, `${count.toLocaleString("en").replace(/,/g, "\u202f")} matrices${many.source ? ` from ${many.source}` : ""}: `, use, "."),
+      many.use === "repeats" ? make("p", { class: "fine" }, "Shown is their mean.") : this.stepper(many, pick),
+      many.use === "pair" ? difference(many, pick) : null,
+    );
+  }
+
+  /**
+   * @param {Many} many
+   * @param {number} pick
+   */
+  stepper(many, pick) {
+    const count = many.matrices.length;
+    /** @param {string} id @param {string} label @param {string} sign @param {number} to */
+    const step = (id, label, sign, to) => {
+      const button = make("button", { type: "button", id, class: "small", "aria-label": label, onclick: () => this.actions.pick(to) }, sign);
+      button.disabled = to < 0 || to >= count;
+      return button;
+    };
+    /** @type {HTMLElement} */
+    let list;
+    if (count <= LONGEST_LIST) {
+      list = choice({
+        id: "pick",
+        label: "Which matrix is shown",
+        value: String(pick),
+        options: many.matrices.map((_, index) => [String(index), nameOf(many, index)]),
+        change: (value) => this.actions.pick(Number(value)),
+      });
+    } else {
+      const field = make("input", { type: "text", inputmode: "numeric", id: "pick", class: "sigma", "aria-label": `Which matrix is shown, 1 to ${count}`, autocomplete: "off" });
+      field.value = String(pick + 1);
+      field.addEventListener("change", () => {
+        const index = Number(field.value) - 1;
+        if (Number.isInteger(index) && index >= 0 && index < count) this.actions.pick(index);
+        else field.value = String(pick + 1);
+      });
+      list = field;
+    }
+    return make("p", { class: "said stepper" }, "Shown: ", step("pick-previous", "Previous matrix", "‹", pick - 1), list, step("pick-next", "Next matrix", "›", pick + 1));
+  }
+}
+
+/**
+ * The other one of a pair minus the one that is shown.
+ * @param {Many} many
+ * @param {number} pick
+ */
+function difference(many, pick) {
+  const shown = many.matrices[pick] ?? [];
+  const other = many.matrices[1 - pick] ?? [];
+  const change = other.map((value, k) => value - (shown[k] ?? 0));
+  const full = Math.max(...change.map(Math.abs));
+  return fold("pair-difference", `Matrix ${2 - pick} minus matrix ${pick + 1}: at most ${significant(full)}`, colouredCells("Difference of the pair", change, { full, write: (value) => significant(value, 3) }));
+}
