@@ -259,4 +259,19 @@ export const METHODS = {
     formula: "H = Σ λi hi hi†",
     source: "Cloude 1986",
   },
+  characteristic: {
+    title: "Characteristic decomposition",
+    unit: "",
+    definition: "Of the nearest realizable matrix: its leading pure element, the equal mixtures of its first two and first three elements, and an ideal depolarizer. The weights are differences of the indices of polarimetric purity. A part of weight zero is not unique.",
+    formula: "m = P1 m1 + (P2 − P1) m2 + (P3 − P2) m3 + (1 − P3) diag(1, 0, 0, 0)",
+    source: "Gil 2007",
+  },
+  differential: {
+    title: "Differential decomposition",
+    unit: "",
+    definition:
+      "Of the measured matrix, normalised: its logarithm, as if all properties acted at once along the path. The mean part holds birefringence and dichroism, the other part depolarization; for a pure element that is zero. A matrix with a real eigenvalue at or below zero, as of a polarizer or a half-wave retarder, has no such logarithm. Retardances above half a wave come back folded.",
+    formula: "L = ln m;  mean part ½(L − G Lᵀ G);  the other ½(L + G Lᵀ G), less its element 00 times I;  G = diag(1, −1, −1, −1)",
+    source: "Ossikovski 2011",
+  },
 };

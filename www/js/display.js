@@ -75,7 +75,7 @@ export class DisplayPanel {
           ],
           change: (value) => change({ retardanceUnit: value === "waves" || value === "nm" ? value : "deg" }),
         }),
-        view.retardanceUnit === "nm" ? make("label", { class: "with-field" }, " at ", this.wavelength, " nm") : null,
+        view.retardanceUnit === "nm" ? [" at ", this.wavelength, " nm"] : null,
         ".",
       ),
       make(

@@ -60,6 +60,7 @@ const reading = new ReadingPanel(byId("reading"), {
   order: (order) => change("the change of order", { convention: { ...store.work.measurement.convention, order } }),
   normalised: (normalised) => change("the change of normalisation", { normalised }),
   absolute: (absolute) => change("the change of unit", { absolute }),
+  divide: (by) => divide(by),
   clear: () => store.commit("clearing", { ...store.work, measurement: noMeasurement() }),
 });
 const many = new ManyPanel(byId("many"), { use: useMany, pick: pickOne });
@@ -347,6 +348,31 @@ function editCells(changes, name) {
     example: false,
     story: "",
     label: measurement.example ? "" : measurement.label,
+    many: null,
+  });
+}
+
+/**
+ * Digits are shifted, and not rounded, where that is possible: 98.5 over 100 is 0.985.
+ * @param {number} by a power of ten
+ */
+function divide(by) {
+  const { measurement } = store.work;
+  const power = Math.round(Math.log10(by));
+  /** @param {string} text */
+  const shifted = (text) => {
+    const read = readNumber(text);
+    return read.error === null ? fullText(Number(`${read.plain.replace(/e.*/, "")}e${Number(/e(.*)/.exec(read.plain)?.[1] ?? 0) - power}`)) : text;
+  };
+  const cells = measurement.cells.map(shifted);
+  const { noise: stated } = measurement;
+  change(`the division by ${by}`, {
+    cells,
+    text: textOf(cells),
+    options: {},
+    pick: 0,
+    decimals: measurement.decimals === null ? null : Math.min(15, measurement.decimals + power),
+    noise: stated.kind === "uniform" ? { ...stated, sigma: shifted(stated.sigma) } : stated,
     many: null,
   });
 }

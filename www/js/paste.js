@@ -12,7 +12,9 @@ import { readNumber } from "./format.js";
  * @property {() => void} leaveEditor a whole matrix was pasted into the editor of a cell
  */
 
-const LINK = /#?(v\d+\.[A-Za-z0-9_%-]+\.[A-Za-z0-9]+)\s*$/;
+const LINK = /#?(v\d+\.[A-Za-z0-9_%-]+\.[A-Za-z0-9]+)(?![A-Za-z0-9_.%-])/;
+/** A link that a mail program has broken into lines, or cut. */
+const BROKEN_LINK = /(?:^|#)(v\d+\.[A-Za-z0-9_%-]{8}[\s\S]*)$/;
 
 /**
  * The fragment in a pasted link, if the text is one.
@@ -21,8 +23,9 @@ const LINK = /#?(v\d+\.[A-Za-z0-9_%-]+\.[A-Za-z0-9]+)\s*$/;
  */
 export function linkIn(text) {
   const trimmed = text.trim();
-  if (/\s/.test(trimmed) && !/#v\d+\./.test(trimmed)) return null;
-  return LINK.exec(trimmed)?.[1] ?? null;
+  const isOne = /#v\d+\.[A-Za-z0-9_%-]{8}/.test(trimmed) || /^v\d+\.[A-Za-z0-9_%-]{8}/.test(trimmed);
+  if (!isOne) return null;
+  return LINK.exec(trimmed)?.[1] ?? BROKEN_LINK.exec(trimmed)?.[1]?.split(/\n\s*\n|\nHalfshade:/)[0]?.replace(/[\s>\u200b-\u200f\ufeff]+/g, "") ?? null;
 }
 
 /**

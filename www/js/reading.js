@@ -1,6 +1,6 @@
 /** What was understood of the pasted text, with a control for each guess, and the text itself. */
 import { choice, fold, make, repaint } from "./dom.js";
-import { cellText, elementName, fullText, rows } from "./format.js";
+import { cellText, elementName, fullText, readNumber, rows, withMinus } from "./format.js";
 
 /**
  * @typedef {import("./types.js").Measurement} Measurement
@@ -17,6 +17,7 @@ import { cellText, elementName, fullText, rows } from "./format.js";
  * @property {(order: "rows" | "columns") => void} order
  * @property {(normalised: boolean) => void} normalised
  * @property {(absolute: boolean) => void} absolute
+ * @property {(by: number) => void} divide all elements, and σ
  * @property {() => void} clear
  */
 
@@ -202,9 +203,27 @@ export class ReadingPanel {
         " ",
         clear,
       ),
+      this.scale(measurement),
       parsed && parsed.alternatives.length > 0 && !measurement.options.decimal ? this.alternatives(parsed) : null,
       parsed && parsed.notes.length > 0 ? notes(parsed) : null,
     ];
+  }
+
+  /**
+   * What a large first element means.
+   * @param {Measurement} measurement
+   */
+  scale({ cells, absolute }) {
+    const first = readNumber(cells[0] ?? "").value ?? 0;
+    if (first <= 1.5) return null;
+    const name = elementName(0, 0);
+    if (!absolute) return make("p", { class: "fine", id: "scale-note" }, `${name} is ${withMinus(cells[0] ?? "")}: per cent, volts or counts are fine. Figures are relative to ${name}, and σ is in the same unit.`);
+    return make(
+      "p",
+      { class: "fine", id: "scale-note" },
+      `An absolute ${name} of ${withMinus(cells[0] ?? "")} means gain. If it is in per cent: `,
+      make("button", { type: "button", id: "per-cent", class: "inline", onclick: () => this.actions.divide(100) }, "divide by 100"),
+    );
   }
 
   /** @param {Parsed} parsed */

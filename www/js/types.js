@@ -12,6 +12,7 @@
  * @typedef {import("../halfshade.js").Examination} Examination
  * @typedef {Examination["nearest"]} Nearest
  * @typedef {import("../halfshade.js").PolarDecomposition} Polar
+ * @typedef {import("../halfshade.js").DifferentialDecomposition} Differential
  * @typedef {import("../halfshade.js").Reading} Reading
  * @typedef {import("../halfshade.js").MatricesRead} Parsed
  * @typedef {import("../halfshade.js").ReadOptions} ReadOptions

@@ -1,6 +1,7 @@
 /** The Properties task: what the element does to light, each figure with its uncertainty. */
 import { DEFINITIONS, GROUPS, METHODS } from "../definitions.js";
 import { fold, make, repaint, sentence } from "../dom.js";
+import { RETARDANCE_UNIT, retardanceIn } from "../display.js";
 import { exported, figuresTable } from "../exports.js";
 import { elementName, fixed, significant } from "../format.js";
 import { copyButton, matrixTable } from "../matrix-view.js";
@@ -165,15 +166,19 @@ export class PropertiesPanel {
       },
       definition.title,
     );
-    const text = figureText(figure, format);
-    const value = text === null ? make("td", { class: "number mute" }, "not determined") : make("td", { class: "number" }, text, make("span", { class: "unit" }, definition.unit));
+    const view = this.shown?.view;
+    const isRetardance = name === "retardanceDeg" || name === "linearRetardanceDeg";
+    const shown = isRetardance && view ? inUnit(figure, view) : figure;
+    const text = figureText(shown, format);
+    const unit = isRetardance && view ? RETARDANCE_UNIT[view.retardanceUnit] : definition.unit;
+    const value = text === null ? make("td", { class: "number mute" }, "not determined") : make("td", { class: "number" }, text, make("span", { class: "unit" }, unit));
     return [make("tr", { class: text === null ? "undetermined" : null }, make("th", { scope: "row" }, toggle), value, make("td", { class: "mute note" }, noteOf(name, figure, above))), more];
   }
 
   /** @param {Examination} result */
   decompositions({ decompositions }) {
     const { format, tell } = this.actions;
-    const { polarForward, polarReverse, isotropic, spectral, reason } = decompositions;
+    const { polarForward, polarReverse, isotropic, spectral, characteristic, differential, reason } = decompositions;
     if (!polarForward && !polarReverse && !isotropic && spectral.length === 0) {
       return [make("h2", null, "Decompositions"), make("p", { class: "mute" }, reason ?? "Not determined.")];
     }
@@ -213,6 +218,56 @@ export class PropertiesPanel {
           ]
         : make("p", { class: "mute" }, reason ?? "Not determined."),
       fold("about-spectral", "What it is", definitionNodes("spectral", METHODS)),
+      make("h2", null, "Characteristic decomposition"),
+      characteristic.length > 0
+        ? [
+            make("p", null, "A pure element, equal mixtures of two and of three, and an ideal depolarizer, with the weights ", make("span", { class: "number" }, characteristic.map((part) => fixed(part.weight, 4)).join(", ")), "."),
+            fold(
+              "characteristic-parts",
+              "The four parts",
+              make("div", { class: "matrices" }, characteristic.map((part, index) => matrixTable(`characteristic-${index}`, `${CHARACTERISTIC[index]}, weight ${fixed(part.weight, 4)}`, part.mueller, tell))),
+            ),
+          ]
+        : make("p", { class: "mute" }, reason ?? "Not determined."),
+      fold("about-characteristic", "What it is", definitionNodes("characteristic", METHODS)),
+      make("h2", null, "Differential decomposition"),
+      this.differential(differential, reason),
+      fold("about-differential", "What it is", definitionNodes("differential", METHODS)),
+    ];
+  }
+
+  /**
+   * @param {import("../types.js").Differential | null} differential
+   * @param {string | null} reason
+   */
+  differential(differential, reason) {
+    const view = this.shown?.view;
+    const { mean, depolarizing } = differential ?? {};
+    if (!differential || !view || !mean || !depolarizing) return make("p", { class: "mute" }, `Not determined: ${differential?.reason ?? reason ?? "there is no matrix"}.`);
+    const { tell } = this.actions;
+    /** @param {string} name @param {number | null} birefringence @param {number | null} dichroism */
+    const line = (name, birefringence, dichroism) =>
+      make(
+        "tr",
+        null,
+        make("th", { scope: "row" }, name),
+        make("td", { class: "number" }, birefringence === null ? "" : fixed(retardanceIn((birefringence * 180) / Math.PI, view), view.retardanceUnit === "waves" ? 5 : 3), make("span", { class: "unit" }, RETARDANCE_UNIT[view.retardanceUnit])),
+        make("td", { class: "number" }, dichroism === null ? "" : fixed(dichroism, 5)),
+      );
+    return [
+      make(
+        "table",
+        { class: "data", id: "differential" },
+        make("thead", null, make("tr", null, make("th", { scope: "col" }, "summed up along the path"), make("th", { scope: "col" }, "birefringence"), make("th", { scope: "col" }, "dichroism"))),
+        make(
+          "tbody",
+          null,
+          line("linear, 0° / 90°", differential.linearBirefringence, differential.linearDichroism),
+          line("linear, ±45°", differential.linearBirefringence45, differential.linearDichroism45),
+          line("circular", differential.circularBirefringence, differential.circularDichroism),
+        ),
+      ),
+      fold("differential-parts", "The two parts of the logarithm", make("div", { class: "matrices" }, matrixTable("differential-mean", "Mean part", mean, tell), matrixTable("differential-depolarizing", "Depolarizing part", depolarizing, tell))),
     ];
   }
 
@@ -309,6 +364,21 @@ export class PropertiesPanel {
       by(...move);
     });
   }
+}
+
+/** The parts of the characteristic decomposition. */
+const CHARACTERISTIC = ["Pure", "Mixture of two", "Mixture of three", "Ideal depolarizer"];
+
+/**
+ * A retardance and its uncertainties in the unit of the view.
+ * @param {Figure} figure degrees
+ * @param {import("../types.js").View} view
+ * @returns {Figure}
+ */
+function inUnit(figure, view) {
+  /** @param {number | null} deg */
+  const convert = (deg) => (deg === null ? null : retardanceIn(deg, view));
+  return { ...figure, value: convert(figure.value), se: convert(figure.se), low: convert(figure.low), high: convert(figure.high) };
 }
 
 /**
