@@ -42,7 +42,7 @@ pub struct Examination {
 pub fn examine(measurement: &Measurement, seed: Option<u64>) -> Result<Examination> {
     let analysis = Analysis::of(measurement)?;
     let nearest = analysis.nearest.as_ref();
-    let components = nearest.and_then(|nearest| spectral(&nearest.eigenvalues, &analysis.eigen));
+    let components = nearest.and_then(|nearest| spectral(&nearest.eigen.values, &nearest.eigen));
     Ok(Examination {
         realizability: realizability(measurement, &analysis.eigen, nearest, seed)?,
         figures: figures(&analysis, seed.is_some())?,

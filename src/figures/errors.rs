@@ -1,5 +1,5 @@
 use super::values::{Analysis, FigureName};
-use crate::coherency::eigenvalue_error;
+use crate::coherency::eigenvalue_errors;
 use crate::error::Result;
 use crate::mueller::Mueller;
 use crate::tolerance;
@@ -59,11 +59,12 @@ const NOT_SMOOTH: &str =
 /// All figures of one analysis; with their standard errors where `with_errors`.
 pub(crate) fn figures(analysis: &Analysis, with_errors: bool) -> Result<FigureTable> {
     let values = FigureName::ALL.map(|name| analysis.value(name));
-    let errors = match analysis.measurement.sigma() {
-        Some(sigma) if with_errors => Some(standard_errors(analysis, sigma)?),
-        _ => None,
+    let errors = if with_errors && analysis.measurement.has_noise() {
+        Some(standard_errors(analysis)?)
+    } else {
+        None
     };
-    let none = if analysis.measurement.sigma().is_some() {
+    let none = if analysis.measurement.has_noise() {
         NOT_ASKED
     } else {
         NO_NOISE
@@ -111,31 +112,26 @@ fn judge(name: FigureName, value: f64, error: Option<f64>, analysis: &Analysis) 
 }
 
 fn distinct_eigenvalues(analysis: &Analysis) -> bool {
-    let Some(sigma) = analysis.measurement.sigma() else {
+    let Some(errors) = eigenvalue_errors(&analysis.measurement, &analysis.eigen) else {
         return false;
     };
-    let se = eigenvalue_error(analysis.measurement.m00_is_exact()) * sigma;
-    analysis
-        .eigen
-        .values
-        .windows(2)
-        .all(|pair| pair[0] - pair[1] > tolerance::STANDARD_ERRORS * se)
+    (0..3).all(|k| {
+        let gap = analysis.eigen.values[k] - analysis.eigen.values[k + 1];
+        gap > tolerance::STANDARD_ERRORS * errors[k].max(errors[k + 1])
+    })
 }
 
 /// `sqrt(gᵀ Σ g)` with the gradient g by central differences.
-fn standard_errors(
-    analysis: &Analysis,
-    sigma: f64,
-) -> Result<[Option<f64>; FigureName::ALL.len()]> {
+fn standard_errors(analysis: &Analysis) -> Result<[Option<f64>; FigureName::ALL.len()]> {
     let measurement = &analysis.measurement;
     let elements = measurement.mueller().row_major();
+    let sigma = measurement.element_sigma().unwrap_or_default();
     let step = 1e-6 * measurement.mueller().m00().abs();
-    let mut squares = [Some(0.0); FigureName::ALL.len()];
+    let mut gradients = [Some([0.0; 16]); FigureName::ALL.len()];
     if step == 0.0 {
         return Ok([None; FigureName::ALL.len()]);
     }
-    let first = usize::from(measurement.m00_is_exact());
-    for k in first..16 {
+    for k in (0..16).filter(|&k| sigma[k] > 0.0) {
         let moved = |by: f64| {
             let mut elements = elements;
             elements[k] += by;
@@ -143,18 +139,22 @@ fn standard_errors(
             Analysis::of(&measurement.with_mueller(mueller))
         };
         let (above, below) = (moved(step)?, moved(-step)?);
-        for (square, name) in squares.iter_mut().zip(FigureName::ALL) {
-            *square = match (*square, above.value(name), below.value(name)) {
-                (Some(sum), Ok(high), Ok(low)) => {
+        for (gradient, name) in gradients.iter_mut().zip(FigureName::ALL) {
+            match (gradient.as_mut(), above.value(name), below.value(name)) {
+                (Some(gradient), Ok(high), Ok(low)) => {
                     let mut difference = high - low;
                     if let Some(period) = name.period() {
                         difference -= period * (difference / period).round();
                     }
-                    Some(sum + (difference / (2.0 * step) * sigma).powi(2))
+                    gradient[k] = difference / (2.0 * step);
                 }
-                _ => None,
-            };
+                _ => *gradient = None,
+            }
         }
     }
-    Ok(squares.map(|square| square.map(f64::sqrt).filter(|se| se.is_finite())))
+    Ok(gradients.map(|gradient| {
+        gradient
+            .and_then(|gradient| measurement.standard_error(&gradient))
+            .filter(|se| se.is_finite())
+    }))
 }

@@ -1,8 +1,10 @@
 //! Distributions, seeded draws and rounding to the uncertainty.
 
+mod covariance;
 mod draws;
 mod rounding;
 
+pub use covariance::Covariance;
 pub use draws::NormalDraws;
 pub use rounding::{RoundedValue, printed_decimals, rounded, rounding_sigma};
 

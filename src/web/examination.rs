@@ -155,7 +155,7 @@ impl ExaminationTwin {
             realizability: realizability(found),
             nearest: writer.nearest(found, measurement),
             figures: writer.figures(&found.figures),
-            decompositions: writer.decompositions(found),
+            decompositions: writer.decompositions(found, measurement),
         }
     }
 }
@@ -170,7 +170,7 @@ fn realizability(found: &Examination) -> RealizabilityTwin {
             Verdict::NotRealizable => "notRealizable",
         },
         eigenvalues: r.eigenvalues,
-        eigenvalue_se: r.eigenvalue_se.map(|se| [se; 4]),
+        eigenvalue_se: r.eigenvalue_se,
         violation: r.violation,
         statistic: r.significance.map(|test| test.statistic),
         p_value: r.significance.map(|test| test.p_value),
@@ -230,15 +230,20 @@ impl Writer<'_> {
             mueller: nearest.map(|nearest| self.mueller(&nearest.mueller)),
             change,
             change_in_sigma: change
-                .zip(measurement.sigma())
-                .map(|(change, sigma)| change.map(|by: f64| by / sigma)),
+                .zip(measurement.element_sigma())
+                .map(|(change, sigma)| {
+                    std::array::from_fn(|k| {
+                        if sigma[k] > 0.0 {
+                            change[k] / sigma[k]
+                        } else {
+                            0.0
+                        }
+                    })
+                }),
             reason: if nearest.is_none() {
                 found.realizability.reason
             } else {
-                measurement
-                    .sigma()
-                    .is_none()
-                    .then_some("no noise was stated")
+                (!measurement.has_noise()).then_some("no noise was stated")
             },
         }
     }
@@ -283,7 +288,7 @@ impl Writer<'_> {
         }
     }
 
-    fn decompositions(&self, found: &Examination) -> DecompositionsTwin {
+    fn decompositions(&self, found: &Examination, measurement: &Measurement) -> DecompositionsTwin {
         let alpha = found.figures.get(FigureName::IsotropicAlpha);
         DecompositionsTwin {
             polar_forward: found
@@ -320,7 +325,11 @@ impl Writer<'_> {
                 reason: if model.jones.is_none() {
                     Some("an ideal depolarizer has no pure part")
                 } else {
-                    model.chi_square.is_none().then_some("no noise was stated")
+                    model.chi_square.is_none().then_some(if measurement.has_noise() {
+                        "the closed form takes all errors as equal, so its χ² does not judge these"
+                    } else {
+                        "no noise was stated"
+                    })
                 },
             }),
             reason: alpha.value.is_none().then_some(alpha.reason).flatten(),
