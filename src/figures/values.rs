@@ -1,7 +1,7 @@
 use std::f64::consts::PI;
 
 use crate::coherency::{Coherency, Nearest, nearest_to};
-use crate::decompose::{PolarFactors, isotropic, polar_forward};
+use crate::decompose::{PolarFactors, RetarderParameters, isotropic, polar_forward};
 use crate::error::Result;
 use crate::linalg::HermitianEigen;
 use crate::mueller::Mueller;
@@ -198,6 +198,11 @@ impl Analysis {
             normalised_sigma,
             polar,
         })
+    }
+
+    /// The retarder of the forward polar decomposition, where it is determined.
+    pub fn retarder(&self) -> Option<&RetarderParameters> {
+        self.polar.as_ref()?.parameters.as_ref()
     }
 
     /// One figure, or why it is not determined. Radians.

@@ -1,4 +1,4 @@
-use nalgebra::{Cholesky, Matrix4, SMatrix, SVector, SymmetricEigen};
+use nalgebra::{Cholesky, Matrix3, Matrix4, SMatrix, SVector, SymmetricEigen};
 use num_complex::Complex64;
 
 use super::{MOST_ITERATIONS, no_convergence};
@@ -47,4 +47,14 @@ pub fn is_positive4(matrix: &Matrix4<Complex64>) -> bool {
         && Cholesky::new(*matrix).is_some_and(|factor| {
             (0..4).all(|k| factor.l_dirty()[(k, k)].re > 0.0 && factor.l_dirty()[(k, k)].im == 0.0)
         })
+}
+
+/// The inverse of a symmetric positive definite 3×3 matrix; `None` where it is not.
+#[must_use]
+pub fn inverse_symmetric3(matrix: &Matrix3<f64>) -> Option<Matrix3<f64>> {
+    let inverse = Cholesky::new(*matrix)?.inverse();
+    inverse
+        .iter()
+        .all(|entry| entry.is_finite())
+        .then_some(inverse)
 }

@@ -4,7 +4,7 @@ use std::sync::Arc;
 
 use crate::error::{Error, Result};
 use crate::mueller::Mueller;
-use crate::stats::{Covariance, rounding_sigma};
+use crate::stats::{Covariance, NormalDraws, rounding_sigma};
 use crate::tolerance;
 
 /// What the person says of the noise. It refers to the matrix as given.
@@ -218,6 +218,35 @@ impl Measurement {
             Errors::General(covariance) => covariance.variance(gradient),
         };
         Some(variance.max(0.0).sqrt())
+    }
+
+    /// The covariance of two quantities with these gradients, to first order.
+    #[must_use]
+    pub fn covariance_of(&self, one: &[f64; 16], other: &[f64; 16]) -> Option<f64> {
+        match &self.errors {
+            Errors::Unknown => None,
+            Errors::Equal(sigma) => {
+                let first = usize::from(self.m00_is_exact);
+                let pairs = one[first..].iter().zip(&other[first..]);
+                Some(pairs.map(|(a, b)| (a * sigma) * (b * sigma)).sum())
+            }
+            Errors::General(covariance) => Some(covariance.covariance_of(one, other)),
+        }
+    }
+
+    /// One draw of the errors; zeros where nothing was said.
+    pub(crate) fn draw(&self, draws: &mut NormalDraws) -> [f64; 16] {
+        match &self.errors {
+            Errors::Unknown => [0.0; 16],
+            Errors::Equal(sigma) => {
+                let mut errors = draws.draw_matrix().map(|draw| draw * sigma);
+                if self.m00_is_exact {
+                    errors[0] = 0.0;
+                }
+                errors
+            }
+            Errors::General(covariance) => covariance.draw(draws),
+        }
     }
 
     /// The same measurement of another matrix.

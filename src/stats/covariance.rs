@@ -160,6 +160,13 @@ impl Covariance {
         (self.root.transpose() * gradient).norm_squared()
     }
 
+    /// `aᵀ Σ b`.
+    #[must_use]
+    pub fn covariance_of(&self, one: &[f64; 16], other: &[f64; 16]) -> f64 {
+        let turned = self.root.transpose();
+        (turned * SVector::from(*one)).dot(&(turned * SVector::from(*other)))
+    }
+
     /// `vᵀ Σ⁻¹ v` over the free elements.
     #[must_use]
     pub fn squared_distance(&self, difference: &[f64; 16]) -> f64 {

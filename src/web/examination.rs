@@ -9,7 +9,7 @@ use crate::coherency::{PassivityVerdict, Verdict};
 use crate::convention::Convention;
 use crate::decompose::{Differential, MixedComponent, PolarFactors, PureComponent};
 use crate::examine::Examination;
-use crate::figures::{Figure, FigureName, FigureTable, Unit};
+use crate::figures::{Figure, FigureName, FigureTable, Method, Unit};
 use crate::mueller::{Jones, Mueller};
 use crate::noise::Measurement;
 
@@ -258,32 +258,49 @@ impl Writer<'_> {
     }
 
     fn figure(&self, unit: Unit, figure: &Figure) -> FigureTwin {
-        let value = figure.value.map(|value| match unit {
+        let convert = |value: f64| match unit {
             Unit::One | Unit::Transmittance => value,
             Unit::Angle => value.to_degrees(),
             Unit::CircularSign => self.0.circular(value),
             Unit::Ellipticity => self.0.circular(value).to_degrees(),
             Unit::Azimuth => self.0.azimuth(value).to_degrees(),
             Unit::Rotation => self.0.rotation(value).to_degrees(),
-        });
-        let (factor, unit) = match unit {
+        };
+        let (factor, name) = match unit {
             Unit::One | Unit::CircularSign => (1.0, "1"),
             Unit::Transmittance => (1.0, "matrix"),
             _ => (180.0 / PI, "deg"),
         };
-        let half_width = figure.half_width().map(|width| width * factor);
-        let at = |side: f64| {
-            value
-                .zip(half_width)
-                .map(|(value, width)| value + side * width)
+        // A convention may turn the figure over, and its ends with it. An azimuth is
+        // folded, so its ends are counted from the value.
+        let sense = match unit {
+            Unit::Azimuth | Unit::Rotation => self.0.rotation(1.0),
+            Unit::CircularSign | Unit::Ellipticity => self.0.circular(1.0),
+            _ => 1.0,
         };
+        let ends = figure.value.zip(figure.interval).map(|(value, interval)| {
+            let end =
+                |end: Option<f64>| end.map(|end| convert(value) + sense * factor * (end - value));
+            let (low, high) = (end(interval.low), end(interval.high));
+            if sense < 0.0 {
+                (high, low)
+            } else {
+                (low, high)
+            }
+        });
         FigureTwin {
-            value,
+            value: figure.value.map(convert),
             se: figure.se.map(|se| se * factor),
-            low: at(-1.0),
-            high: at(1.0),
-            method: value.and(half_width).map(|_| "first-order"),
-            unit,
+            low: ends.and_then(|(low, _)| low),
+            high: ends.and_then(|(_, high)| high),
+            method: figure.interval.map(|interval| match interval.method {
+                Method::FirstOrder => "first-order",
+                Method::Percentile => "percentile",
+                Method::NoncentralChiSquared => "noncentral",
+                Method::UpperLimit => "upper-limit",
+                Method::OneSided => "one-sided",
+            }),
+            unit: name,
             reason: figure.reason,
         }
     }

@@ -6,6 +6,7 @@ use wasm_bindgen::JsValue;
 use super::value;
 use crate::convention::{AngleSense, Convention, PositiveS3, TimeSign, ZeroAngle};
 use crate::error::Result;
+use crate::examine::Simulation;
 use crate::json::Fields;
 use crate::mueller::Mueller;
 use crate::noise::{Measurement, Noise};
@@ -13,6 +14,9 @@ use crate::text::{
     Column, Content, DecimalMark, Delimiter, Entry, NamedMatrix, NamedTable, OutputForm,
     ReadOptions, Stacking,
 };
+
+/// Draws that take no longer than a minute.
+const MOST_DRAWS: u32 = 100_000;
 
 /// A request as a plain value; `undefined` and `null` are an empty one.
 pub fn plain(value: &JsValue) -> Result<Value> {
@@ -95,7 +99,7 @@ pub struct ExamineRequest {
     pub measurement: Measurement,
     pub convention: Convention,
     /// `None` where no draws were asked for.
-    pub seed: Option<u64>,
+    pub simulation: Option<Simulation>,
 }
 
 impl ExamineRequest {
@@ -111,7 +115,16 @@ impl ExamineRequest {
         ];
         let fields = Fields::of(request, "", &known)?;
         let read = ConventionRead::of(&fields)?;
-        let draws = fields.whole("draws")?.unwrap_or(2000);
+        let draws = u32::try_from(fields.whole("draws")?.unwrap_or(2000))
+            .ok()
+            .filter(|&draws| draws <= MOST_DRAWS)
+            .ok_or_else(|| {
+                fields.error(
+                    "too-large",
+                    "draws",
+                    &format!("At most {MOST_DRAWS} draws can be asked for."),
+                )
+            })?;
         let seed = fields.whole("seed")?.unwrap_or(1);
         Ok(Self {
             measurement: Measurement::new(
@@ -121,7 +134,7 @@ impl ExamineRequest {
                 noise(&fields, &read)?,
             )?,
             convention: read.convention,
-            seed: (draws > 0).then_some(seed),
+            simulation: (draws > 0).then_some(Simulation { seed, draws }),
         })
     }
 }

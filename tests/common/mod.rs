@@ -118,9 +118,14 @@ pub fn all_finite(found: &Examination) {
     numbers.extend(found.nearest.iter().flat_map(|n| n.eigen.values));
     for (_, figure) in found.figures.iter() {
         numbers.extend(
-            [figure.value, figure.se, figure.half_width()]
-                .into_iter()
-                .flatten(),
+            [
+                figure.value,
+                figure.se,
+                figure.interval.and_then(|interval| interval.low),
+                figure.interval.and_then(|interval| interval.high),
+            ]
+            .into_iter()
+            .flatten(),
         );
         assert!(figure.value.is_some() || figure.reason.is_some());
     }
