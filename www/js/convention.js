@@ -13,6 +13,27 @@ export function conventionInWords(convention) {
   return `angles ${sense[convention.angles]} from ${convention.zeroAngle}; S3 > 0 turns ${sense[convention.positiveS3]}`;
 }
 
+/** What no answer changes. */
+export const INDEPENDENT =
+  "the verdict, the coherency eigenvalues, the test against the noise, diattenuation, polarizance, retardance, the transmittance range, every measure of depolarization (α among them), and the weights of the decompositions";
+
+/** What depends on each physical fact. */
+export const DEPENDENCES = [
+  {
+    fact: "sense of the angles",
+    depends: "changes which of its two axes the fast axis of a retarder is (its azimuth moves by 90°), the signs of ellipticity and birefringence, Jones matrices; and the way round in which azimuths and rotations are meant, though their numbers stay",
+  },
+  {
+    fact: "rotation of light with S3 > 0",
+    depends: "changes the same axis, signs and Jones matrices; and which circular light the numbers about it mean. The other answer to both of these facts changes no number",
+  },
+  { fact: "axis of angle zero", depends: "changes no number, only from where azimuths, S1 and S2 are meant" },
+  { fact: "time dependence", depends: "changes Jones matrices alone: they become their complex conjugates" },
+];
+
+/** How to find out. */
+export const TELLING = "Known samples tell: a polarizer turned a little by hand shows the sense and the zero of the angles; light of known handedness, the sign of S3.";
+
 export class ConventionPanel {
   /**
    * @param {HTMLElement} root
@@ -63,17 +84,10 @@ export class ConventionPanel {
       fold(
         "convention-unknown",
         "I don’t know it",
-        make("p", null, "Then leave it as it is. These do not depend on it: whether the matrix is realizable, the coherency eigenvalues, the test against the noise, total diattenuation, polarizance, retardance, every measure of depolarization, and the transmittance range."),
-        make("p", null, "These do:"),
-        make(
-          "ul",
-          null,
-          make("li", null, "sense of the angles: the sign of S2, of every azimuth, and of the rotation; which axis is the fast one"),
-          make("li", null, "sign of S3: which circular light is meant; the sign of circular diattenuation and of ellipticities; which axis is the fast one"),
-          make("li", null, "zero of the angles: every azimuth, by 90°"),
-          make("li", null, "time dependence: Jones matrices become their complex conjugates"),
-        ),
-        make("p", null, "A known sample tells: a polarizer turned a little, and light of known handedness."),
+        make("p", null, `Then leave it as it is. Under every answer these stay the same: ${INDEPENDENT}.`),
+        make("p", null, "The other answer about:"),
+        make("ul", { class: "facts" }, DEPENDENCES.map(({ fact, depends }) => make("li", null, make("b", null, fact), ` ${depends}.`))),
+        make("p", { class: "fine" }, TELLING),
       ),
     );
   }

@@ -7,6 +7,7 @@ import { ask, cancel, isDropped, quick, startEngine } from "./engine.js";
 import { fileStem, isConfiguration, listenForFiles, saveFile, textIn } from "./files.js";
 import { countFrom, fullText, place, readNumber } from "./format.js";
 import { Grid } from "./grid.js";
+import { listenForHelp } from "./help.js";
 import { configurationOf, fromConfiguration, noiseChoice, textOf, withoutSeries } from "./link.js";
 import { ManyPanel, manyOf, meanOf } from "./many.js";
 import { NoisePanel, noiseOf, printedNoise } from "./noise.js";
@@ -14,6 +15,7 @@ import { PropertiesPanel } from "./panels/properties.js";
 import { RealizabilityPanel } from "./panels/realizability.js";
 import { linkIn, listen, writeClipboard } from "./paste.js";
 import { followTheme } from "./plots.js";
+import { ProvenancePanel } from "./provenance.js";
 import { ReadingPanel } from "./reading.js";
 import { Store, noMeasurement } from "./state.js";
 import { isSingleFile, loadExamples, publicAddress } from "./where.js";
@@ -76,6 +78,8 @@ const convention = new ConventionPanel(byId("convention"), (chosen) => change("t
 const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell: (message) => tell(message), failed: fail, format });
 const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell: (message) => tell(message), failed: fail, format });
 
+const provenance = new ProvenancePanel(byId("provenance"), { info: () => quick.engineInfo(), link: linkNow, tell: (message) => tell(message) });
+
 listen({
   matrix: (text) => takeText(text, "the paste"),
   link: (fragment) => openLink(fragment),
@@ -90,6 +94,7 @@ byId("save-file").addEventListener("click", saveConfiguration);
 byId("undo").addEventListener("click", undo);
 byId("redo").addEventListener("click", redo);
 byId("copy-link").addEventListener("click", copyLink);
+listenForHelp(byId("help-button"));
 for (const link of document.querySelectorAll("nav a[data-task]")) {
   link.addEventListener("click", (event) => {
     event.preventDefault();
@@ -502,6 +507,7 @@ function showTask(stale) {
   note.textContent = answer && stale ? `${stale} What is shown below belongs to the last matrix that could be read.` : "";
   byId("task").classList.toggle("is-stale", Boolean(answer && stale));
   const shown = { work, view, result: answer?.result ?? null, request: answer?.request ?? null, pending: answer?.pending ?? false, stale, waiting: stale };
+  provenance.show(shown);
   if (view.task === "properties") {
     realizability.show({ ...shown, result: null, request: null });
     properties.show(shown);
@@ -636,6 +642,13 @@ function fragmentOf(configuration) {
     if (bulk === 0 && !configuration["measurement"]?.text) throw error;
   }
   return { fragment: quick.encodeLink(withoutSeries(configuration)), whole: false };
+}
+
+/** The link to the present work, for the report; null while there is no whole matrix. */
+function linkNow() {
+  const { configuration } = configurationNow();
+  if (!configuration) return null;
+  return `${isSingleFile ? publicAddress() : location.href.split("#")[0]}#${fragmentOf(configuration).fragment}`;
 }
 
 async function copyLink() {
