@@ -48,7 +48,7 @@ export const SECTIONS = [
       "Four physical facts fix a convention; the panel asks for each. The numbers that you read are always in yours. As it comes: the observer faces the source, x, y and the direction of propagation are right-handed, angles count counter-clockwise from x, S3 > 0 turns clockwise, waves are exp(+iωt).",
       "The other answer about:",
       { rows: DEPENDENCES.map(({ fact, depends }) => /** @type {[string, string]} */ ([fact, `${depends}.`])) },
-      `Under every answer stay the same: ${INDEPENDENT}. (p alone may move by the scatter of its simulation.) So “I don’t know” costs nothing of these: leave the panel as it is. ${TELLING}`,
+      `Under every answer stay the same: ${INDEPENDENT}. (p and the ends of simulated intervals may move by the scatter of the simulation.) So “I don’t know” costs nothing of these: leave the panel as it is. ${TELLING}`,
       { formula: "M → K M K, with K = diag(1, 1, −1, 1) for the sense of angles, diag(1, 1, 1, −1) for the sign of S3, diag(1, −1, −1, 1) for the zero at y" },
       "The order, row by row or column by column, is no convention of physics: it transposes the matrix, which exchanges diattenuation and polarizance. No check sees it.",
     ],
