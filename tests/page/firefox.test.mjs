@@ -48,7 +48,7 @@ async function open(browser, address) {
 async function seen(browser) {
   // The size of the noise that would explain the matrix comes last, from the worker.
   const reason = await until("There is no verdict", () =>
-    browser.evaluate("const text = document.getElementById('verdict-reason')?.textContent ?? ''; return /would explain it/.test(text) ? text : ''"),
+    browser.evaluate("const text = document.getElementById('verdict-reason')?.textContent ?? ''; return /on each element would explain it/.test(text) ? text : ''"),
   );
   return {
     reason,
