@@ -214,7 +214,7 @@ export interface Comparison {
     chiSquare: number | null;
     degreesOfFreedom: number;
     pValue: number | null;
-    figures: { name: FigureName; value: number | null; se: number | null; unit: string }[];
+    figures: { name: FigureName; value: number | null; se: number | null; unit: Figure["unit"] }[];
     reason: string | null;
 }
 
