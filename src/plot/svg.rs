@@ -32,13 +32,14 @@ pub(super) fn to_svg(
     Ok(format!(
         "<svg xmlns=\"http://www.w3.org/2000/svg\" role=\"img\" \
          width=\"{}\" height=\"{}\" viewBox=\"0 0 {} {}\">\n\
-         <title>{}</title>\n<desc>{}</desc>\n{body}",
+         <title>{}</title>\n<desc>{}</desc>\n<metadata>Halfshade {}</metadata>\n{body}",
         surface.width,
         surface.height,
         size.0,
         size.1,
         escaped(title),
         escaped(description),
+        env!("CARGO_PKG_VERSION"),
     ))
 }
 

@@ -25,16 +25,42 @@ struct Frame {
 
 impl Frame {
     fn of(request: &Fields, natural_height: fn(f64) -> f64) -> EngineResult<Self> {
-        let fields = request.object("frame", &["width", "height", "ratio", "theme"])?;
+        let fields = request.object("frame", &["width", "height", "ratio", "theme", "colours"])?;
         let fields = request.required("frame", fields)?;
         let width = fields.required("width", fields.number("width")?)?;
         let height = fields.number("height")?;
         let theme = fields.choice("theme", &[("light", 0), ("dark", 1), ("print", 2)])?;
-        let theme = match theme {
+        let mut theme = match theme {
             Some(1) => Theme::dark(),
             Some(2) => Theme::print(),
             _ => Theme::light(),
         };
+        let names = [
+            "background",
+            "panel",
+            "ink",
+            "mute",
+            "line",
+            "accent",
+            "hatch",
+        ];
+        if let Some(colours) = fields.object("colours", &names)? {
+            let places = [
+                &mut theme.background,
+                &mut theme.panel,
+                &mut theme.ink,
+                &mut theme.mute,
+                &mut theme.line,
+                &mut theme.accent,
+                &mut theme.hatch,
+            ];
+            for (name, place) in names.into_iter().zip(places) {
+                if let Some(parts) = colours.numbers::<3>(name)? {
+                    let [red, green, blue] = parts.map(|part| part.clamp(0.0, 255.0) as u8);
+                    *place = (red, green, blue);
+                }
+            }
+        }
         Ok(Self {
             surface: Surface {
                 width,
@@ -130,6 +156,67 @@ fn pair(label: &str, input: [f64; 4], canonical: &Mueller) -> EngineResult<Ellip
         input,
         output: canonical.apply(&Stokes::new(input)?).components(),
     })
+}
+
+/// What becomes of the six standard inputs, in the person's convention.
+///
+/// # Errors
+/// For a request that is not understood, at its field.
+#[wasm_bindgen(js_name = mapStates, unchecked_return_type = "MappedState[]")]
+pub fn map_states(
+    #[wasm_bindgen(unchecked_param_type = "MapStatesRequest")] request: &JsValue,
+) -> Result<JsValue, JsValue> {
+    let mapped = || {
+        let request = plain(request)?;
+        let fields = Fields::of(&request, "", &["mueller", "convention"])?;
+        let read = ConventionRead::of(&fields)?;
+        let canonical = read.mueller(&fields)?;
+        standard_states(&read.convention)
+            .into_iter()
+            .map(|(label, input)| {
+                let input = Stokes::new(input)?;
+                let output = canonical.apply(&input);
+                Ok(MappedTwin {
+                    label,
+                    input: StateTwin::new(&input, &read.convention),
+                    output: StateTwin::new(&output, &read.convention),
+                })
+            })
+            .collect::<EngineResult<Vec<_>>>()
+    };
+    to_js(&thrown(mapped())?)
+}
+
+#[derive(Serialize)]
+struct MappedTwin {
+    label: &'static str,
+    input: StateTwin,
+    output: StateTwin,
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct StateTwin {
+    stokes: [f64; 4],
+    degree: Option<f64>,
+    azimuth_deg: Option<f64>,
+    ellipticity_deg: Option<f64>,
+}
+
+impl StateTwin {
+    fn new(state: &Stokes, convention: &Convention) -> Self {
+        let ellipse = state.ellipse();
+        Self {
+            stokes: convention.stokes(state).components(),
+            degree: state.degree_of_polarization(),
+            azimuth_deg: ellipse
+                .azimuth
+                .map(|azimuth| convention.azimuth(azimuth).to_degrees()),
+            ellipticity_deg: ellipse
+                .ellipticity
+                .map(|ellipticity| convention.circular(ellipticity).to_degrees()),
+        }
+    }
 }
 
 #[derive(Serialize)]

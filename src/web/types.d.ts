@@ -289,6 +289,28 @@ export interface Frame {
     /** Device pixels in a CSS pixel; matters on a canvas only. Default 1. */
     ratio?: number;
     theme?: "light" | "dark" | "print";
+    /** Red, green and blue, 0 to 255, in place of the theme's: the system's, where it forces its colours. */
+    colours?: Partial<Record<"background" | "panel" | "ink" | "mute" | "line" | "accent" | "hatch", [number, number, number]>>;
+}
+
+export interface MapStatesRequest {
+    mueller: Matrix16;
+    convention?: Convention;
+}
+
+/** A state in the person's convention. */
+export interface StateDescription {
+    stokes: [number, number, number, number];
+    /** Of polarization; null where there is no light. */
+    degree: number | null;
+    azimuthDeg: number | null;
+    ellipticityDeg: number | null;
+}
+
+export interface MappedState {
+    label: string;
+    input: StateDescription;
+    output: StateDescription;
 }
 
 export interface EigenvaluesRequest {

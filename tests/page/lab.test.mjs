@@ -327,6 +327,33 @@ test("each form of copies reads back to the same numbers", async () => {
   await clean(watched);
 });
 
+test("causes are looked for, tried and undone; a pair is compared", async () => {
+  const watched = await browser.open("hosted");
+  const { page } = watched;
+  const wrong = FILM.split("\n").map((row, i) => (i === 3 ? row.split(" ").map((text) => String(-Number(text))).join(" ") : row)).join("\n");
+  await paste(page, wrong);
+  await page.locator("#noise-uniform").check();
+  await page.locator("#sigma").fill("0.004");
+  await verdict(page, "Not realizable, beyond noise");
+  await page.locator("#look-for-causes").click();
+  await page.locator("#causes-heading").waitFor({ timeout: 20000 });
+  await says(page, ".causes", /One side counted the other way round \(p = /);
+  await page.locator("#try-0").click();
+  await verdict(page, "Not realizable, but within noise");
+  await page.locator("#undo").click();
+  await verdict(page, "Not realizable, beyond noise");
+  await page.locator("#noise-none").check();
+  await paste(page, `${FILM}\n\n${FILM.replace("0.6733", "0.7733")}`);
+  await page.locator("#many-use").selectOption("pair");
+  await says(page, "#pair-difference", /at most 0\.1/);
+  await page.locator("#noise-uniform").check();
+  await page.locator("#sigma").fill("0.004");
+  await says(page, "#pair-difference", /they differ beyond noise/);
+  await page.locator("#sigma").fill("0.2");
+  await says(page, "#pair-difference", /no difference beyond noise/);
+  await clean(watched);
+});
+
 test("units: waves and nanometres, per cent and counts", async () => {
   const watched = await browser.open("hosted");
   const { page } = watched;
@@ -502,7 +529,9 @@ test("pictures leave as SVG and PNG, with what they show inside", async () => {
       const text = svg.bytes.toString("utf8");
       assert.match(text, /^(<\?xml[^>]*>\s*)?<svg /);
       for (const part of ["<title>", "<desc>", "Halfshade 0."]) assert.ok(text.includes(part), `${name}: ${part}`);
+      await page.locator(`.plot-${name} figcaption select`).selectOption("2");
       const png = await saved(page, `${figure}:text-is("PNG")`);
+      for (const part of ["iTXtTitle", "iTXtDescription", "iTXtSoftware"]) assert.ok(png.bytes.includes(part), `${name}: ${part}`);
       // It opens in a browser, is as large as it says, and is not one colour.
       const shown = await page.evaluate(async (bytes) => {
         const bitmap = await createImageBitmap(new Blob([new Uint8Array(bytes)], { type: "image/png" }));

@@ -45,6 +45,7 @@ let lastReading = { text: "", options: "", outcome: { parsed: null, error: null 
 /** @type {Example[]} */
 let examples = [];
 let said = "";
+let saidVerdict = "";
 let isReady = false;
 
 /** @type {import("./types.js").FormatValue} */
@@ -526,9 +527,14 @@ function showTask(stale) {
   if (answer && !stale) {
     const { title } = verdictOf(answer.result, answer.request, answer.pending, format);
     document.title = `${title} · Halfshade`;
-    if (!answer.pending) tell(title, true);
+    // A verdict is said once: a later message must not be lost behind it.
+    if (!answer.pending && title !== saidVerdict) {
+      saidVerdict = title;
+      tell(title, true);
+    }
     requestAnimationFrame(() => performance.mark("halfshade-verdict"));
   } else {
+    saidVerdict = "";
     document.title = "Halfshade: Mueller matrices, checked and explained";
   }
 }

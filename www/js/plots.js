@@ -1,6 +1,8 @@
 /** The plots: canvases that the engine draws on, kept sharp, and saved as files. */
 import { make, repaint } from "./dom.js";
 import { quick } from "./engine.js";
+import { saveFile } from "./files.js";
+import { withTexts } from "./png.js";
 
 /**
  * @typedef {import("./types.js").Theme} Theme
@@ -16,9 +18,33 @@ export const DRAWINGS = {
   ellipses: { draw: (canvas, request) => quick.drawEllipses(canvas, request), svg: (request) => quick.ellipsesSvg(request) },
 };
 
-const PNG_RATIO = 3;
+const PRINT_RATIO = 3;
 const PRINT_WIDTH = 640;
+/** What a PNG's pixels are to those of the page. */
+const SCALES = [1, 2, 3, 4, 6];
 const dark = matchMedia("(prefers-color-scheme: dark)");
+const forced = matchMedia("(forced-colors: active)");
+
+/** The system's colours for what a plot shows. */
+const SYSTEM = { background: "Canvas", panel: "Canvas", ink: "CanvasText", mute: "CanvasText", line: "GrayText", accent: "LinkText", hatch: "GrayText" };
+
+/**
+ * Where the system forces its colours, those; else none.
+ * @returns {{ [name: string]: number[] } | undefined}
+ */
+function systemColours() {
+  if (!forced.matches || printing) return undefined;
+  const probe = make("span", { class: "offstage", "aria-hidden": "true" });
+  document.body.append(probe);
+  const colours = Object.fromEntries(
+    Object.entries(SYSTEM).map(([name, keyword]) => {
+      probe.style.color = keyword;
+      return [name, (getComputedStyle(probe).color.match(/[\d.]+/g) ?? ["0", "0", "0"]).slice(0, 3).map(Number)];
+    }),
+  );
+  probe.remove();
+  return colours;
+}
 
 /** @type {Set<Plot>} */
 const plots = new Set();
@@ -28,6 +54,7 @@ let printing = false;
 export function followTheme() {
   const all = () => plots.forEach((plot) => plot.request());
   dark.addEventListener("change", all);
+  forced.addEventListener("change", all);
   const watchRatio = () => {
     matchMedia(`(resolution: ${devicePixelRatio}dppx)`).addEventListener(
       "change",
@@ -67,7 +94,13 @@ export class Plot {
     this.asked = 0;
     this.width = 0;
     this.canvas = make("canvas", { id: `plot-${name}`, role: "img", "aria-label": title });
+    this.title = title;
     this.words = make("p", { class: "fine" });
+    this.scale = make(
+      "select",
+      { class: "small", "aria-label": `Scale of ${title} as PNG` },
+      SCALES.map((scale) => make("option", { value: scale, selected: scale === 3 }, `${scale}×`)),
+    );
     this.table = make("div", { class: "scroll", tabindex: "0", role: "region", "aria-label": `${title}: numbers` });
     const fold = make("details", { id: `data-${name}` }, make("summary", null, "In words and numbers"), this.words, this.table);
     this.element = make(
@@ -81,6 +114,7 @@ export class Plot {
         make(
           "span",
           { class: "tools" },
+          this.scale,
           make("button", { type: "button", class: "small", onclick: () => this.savePng(), "aria-label": `Save ${title} as PNG` }, "PNG"),
           make("button", { type: "button", class: "small", onclick: () => this.saveSvg(), "aria-label": `Save ${title} as SVG` }, "SVG"),
         ),
@@ -122,8 +156,9 @@ export class Plot {
     if (!this.data || width < 40) return;
     this.width = width;
     try {
-      const ratio = printing ? PNG_RATIO : Math.max(1, devicePixelRatio);
-      const drawn = this.drawing.draw(this.canvas, { ...this.data, frame: { width, ratio, theme: theme() } });
+      const ratio = printing ? PRINT_RATIO : Math.max(1, devicePixelRatio);
+      const colours = systemColours();
+      const drawn = this.drawing.draw(this.canvas, { ...this.data, frame: { width, ratio, theme: theme(), ...(colours ? { colours } : {}) } });
       this.canvas.style.setProperty("width", `${drawn.width}px`);
       this.canvas.style.setProperty("height", `${drawn.height}px`);
       this.canvas.setAttribute("aria-label", drawn.description);
@@ -141,9 +176,15 @@ export class Plot {
     const canvas = make("canvas", { class: "offstage", "aria-hidden": "true" });
     document.body.append(canvas);
     try {
-      this.drawing.draw(canvas, { ...this.data, frame: { width: this.fileWidth(), ratio: PNG_RATIO, theme: "print" } });
-      canvas.toBlob((blob) => {
-        if (blob) this.save("png", () => blob);
+      const drawn = this.drawing.draw(canvas, { ...this.data, frame: { width: this.fileWidth(), ratio: Number(this.scale.value), theme: "print" } });
+      canvas.toBlob(async (blob) => {
+        if (!blob) return;
+        const bytes = withTexts(new Uint8Array(await blob.arrayBuffer()), [
+          ["Title", this.title],
+          ["Description", drawn.description],
+          ["Software", `Halfshade ${quick.engineInfo().version}`],
+        ]);
+        this.save("png", () => new Blob([bytes], { type: "image/png" }));
       });
     } catch (error) {
       this.failed(error);
@@ -162,10 +203,7 @@ export class Plot {
    */
   save(ending, write) {
     try {
-      const address = URL.createObjectURL(write());
-      const link = make("a", { href: address, download: `halfshade-${this.name}.${ending}` });
-      link.click();
-      setTimeout(() => URL.revokeObjectURL(address), 10000);
+      saveFile(`halfshade-${this.name}.${ending}`, write());
     } catch (error) {
       this.failed(error);
     }

@@ -1,9 +1,10 @@
 /** The Properties task: what the element does to light, each figure with its uncertainty. */
 import { DEFINITIONS, GROUPS, METHODS } from "../definitions.js";
-import { fold, make, repaint, sentence } from "../dom.js";
+import { choice, fold, make, repaint, sentence } from "../dom.js";
 import { RETARDANCE_UNIT, retardanceIn } from "../display.js";
 import { exported, figuresTable } from "../exports.js";
-import { elementName, fixed, significant } from "../format.js";
+import { elementName, fixed, readNumber, significant } from "../format.js";
+import { quick } from "../engine.js";
 import { copyButton, matrixTable } from "../matrix-view.js";
 import { DRAWINGS, Plot } from "../plots.js";
 import { figureText, summaryOf, verdictOf, intervalText } from "../words.js";
@@ -51,11 +52,15 @@ export class PropertiesPanel {
     this.below = make("div", null);
     this.azimuth = this.slider("azimuth", -180, 180, "azimuthDeg");
     this.elevation = this.slider("elevation", -90, 90, "elevationDeg");
+    /** The input whose fate is told in words. */
+    this.state = 0;
+    this.stateWords = make("p", { id: "state-words", class: "fine", "aria-live": "off" });
     this.turnable(this.sphere.canvas);
     this.sphere.canvas.after(
       make(
         "div",
         { class: "turn", role: "group", "aria-label": "Turn the sphere" },
+        this.stateWords,
         this.azimuth.row,
         this.elevation.row,
         make(
@@ -99,7 +104,8 @@ export class PropertiesPanel {
     );
     this.paintFigures(result, request.noise.kind !== "none", pending);
     this.turn(view);
-    this.ellipses.show({ mueller: request.mueller, convention: request.convention });
+    this.readOut(request);
+    this.ellipses.show({ mueller: request.mueller, convention: request.convention }, this.states(request));
     repaint(this.below, this.decompositions(result));
   }
 
@@ -111,7 +117,60 @@ export class PropertiesPanel {
     this.azimuth.set(azimuthDeg);
     this.elevation.set(elevationDeg);
     const request = this.shown?.request;
-    if (request) this.sphere.show({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg });
+    if (request) this.sphere.show({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg }, this.states(request));
+  }
+
+  /**
+   * The chosen input in words, and what becomes of it.
+   * @param {Pick<import("../types.js").Request, "mueller" | "convention">} request
+   */
+  readOut({ mueller, convention }) {
+    const states = quick.mapStates({ mueller, convention });
+    const chosen = states[this.state] ?? states[0];
+    if (!chosen) return;
+    repaint(
+      this.stateWords,
+      choice({
+        id: "state",
+        label: "Input state",
+        value: String(this.state),
+        options: states.map(({ label }, index) => [String(index), label]),
+        change: (value) => {
+          this.state = Number(value);
+          this.readOut({ mueller, convention });
+        },
+      }),
+      ` becomes ${stateText(chosen.output)}.`,
+    );
+  }
+
+  /**
+   * The six inputs and what becomes of them, in numbers.
+   * @param {import("../types.js").Request} request
+   */
+  states({ mueller, convention }) {
+    const head = ["input", "S0", "S1", "S2", "S3", "degree", "azimuth", "ellipticity"];
+    const states = quick.mapStates({ mueller, convention });
+    return make(
+      "table",
+      { class: "data states" },
+      make("thead", null, make("tr", null, head.map((title) => make("th", { scope: "col" }, title)))),
+      make(
+        "tbody",
+        null,
+        states.map(({ label, output }) =>
+          make(
+            "tr",
+            null,
+            make("th", { scope: "row" }, label),
+            output.stokes.map((value) => make("td", { class: "number" }, fixed(value, 4))),
+            make("td", { class: "number" }, output.degree === null ? "none" : fixed(output.degree, 4)),
+            make("td", { class: "number" }, output.azimuthDeg === null ? "none" : `${fixed(output.azimuthDeg, 2)}°`),
+            make("td", { class: "number" }, output.ellipticityDeg === null ? "none" : `${fixed(output.ellipticityDeg, 2)}°`),
+          ),
+        ),
+      ),
+    );
   }
 
   /**
@@ -309,15 +368,20 @@ export class PropertiesPanel {
    */
   slider(name, low, high, key) {
     const input = make("input", { type: "range", id: `view-${name}`, min: low, max: high, step: 1 });
-    const read = make("output", { for: `view-${name}`, class: "number" });
+    const field = make("input", { type: "text", inputmode: "numeric", id: `view-${name}-number`, class: "degrees", autocomplete: "off", "aria-label": `${name} in degrees` });
     input.addEventListener("input", () => this.actions.view({ [key]: Number(input.value) }));
-    const row = make("span", { class: "slider" }, make("label", { for: `view-${name}` }, name), input, read);
+    field.addEventListener("change", () => {
+      const read = readNumber(field.value.replace("°", ""));
+      if (read.error === null && read.value >= low && read.value <= high) this.actions.view({ [key]: read.value });
+      else field.value = `${input.value}°`;
+    });
+    const row = make("span", { class: "slider" }, make("label", { for: `view-${name}` }, name), input, field);
     return {
       row,
       /** @param {number} value */
       set(value) {
         if (Number(input.value) !== Math.round(value)) input.value = String(Math.round(value));
-        read.textContent = `${fixed(Math.round(value), 0)}°`;
+        if (field !== document.activeElement) field.value = `${fixed(Math.round(value), 0)}°`;
       },
     };
   }
@@ -364,6 +428,18 @@ export class PropertiesPanel {
       by(...move);
     });
   }
+}
+
+/**
+ * A state in a sentence.
+ * @param {import("../types.js").State} state
+ */
+function stateText({ stokes, degree, azimuthDeg, ellipticityDeg }) {
+  if (degree === null) return "no light";
+  const parts = [`S = (${stokes.map((value) => fixed(value, 4)).join(", ")})`, `degree of polarization ${fixed(degree, 4)}`];
+  if (azimuthDeg !== null) parts.push(`azimuth ${fixed(azimuthDeg, 2)}°`);
+  if (ellipticityDeg !== null) parts.push(`ellipticity ${fixed(ellipticityDeg, 2)}°`);
+  return parts.join(", ");
 }
 
 /** The parts of the characteristic decomposition. */
