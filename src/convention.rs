@@ -97,6 +97,13 @@ impl Convention {
         Mueller::from_matrix(matrix)
     }
 
+    /// The sign that each element of a matrix takes, row by row.
+    #[must_use]
+    pub fn element_signs(&self) -> [f64; 16] {
+        let k = self.signs();
+        std::array::from_fn(|at| k[at / 4] * k[at % 4])
+    }
+
     /// A state from the canonical convention to this one, or back.
     #[must_use]
     pub fn stokes(&self, stokes: &Stokes) -> Stokes {

@@ -6,7 +6,7 @@ use crate::decompose::{
     differential, isotropic, polar_reverse, spectral,
 };
 use crate::error::Result;
-use crate::figures::{Analysis, FigureTable, figures};
+use crate::figures::{Analysis, FigureTable, Samples, figures};
 use crate::noise::Measurement;
 
 /// What [`examine`] finds, canonical convention, radians.
@@ -32,7 +32,17 @@ pub struct Examination {
     pub isotropic: Option<Isotropic>,
 }
 
-/// Examines a measured matrix.
+/// How much is simulated.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Simulation {
+    /// Where all draws begin.
+    pub seed: u64,
+    /// Simulated measurements for the intervals of the figures; without any, intervals
+    /// are of first order.
+    pub draws: u32,
+}
+
+/// Examines a measured matrix, with intervals of first order.
 ///
 /// `seed` starts the simulation of the significance test and asks for standard
 /// errors; `None` leaves both out and answers at once.
@@ -40,12 +50,30 @@ pub struct Examination {
 /// # Errors
 /// `no-convergence`, which no matrix is known to cause.
 pub fn examine(measurement: &Measurement, seed: Option<u64>) -> Result<Examination> {
+    examine_with(measurement, seed.map(|seed| Simulation { seed, draws: 0 }))
+}
+
+/// The same with simulated intervals.
+///
+/// # Errors
+/// `no-convergence`, which no matrix is known to cause.
+pub fn examine_with(
+    measurement: &Measurement,
+    simulation: Option<Simulation>,
+) -> Result<Examination> {
+    let seed = simulation.map(|simulation| simulation.seed);
     let analysis = Analysis::of(measurement)?;
+    let samples = match simulation {
+        Some(Simulation { seed, draws }) if draws > 0 && measurement.has_noise() => {
+            Some(Samples::of(measurement, draws, seed)?)
+        }
+        _ => None,
+    };
     let nearest = analysis.nearest.as_ref();
-    let components = nearest.and_then(|nearest| spectral(&nearest.eigenvalues, &analysis.eigen));
+    let components = nearest.and_then(|nearest| spectral(&nearest.eigen.values, &nearest.eigen));
     Ok(Examination {
         realizability: realizability(measurement, &analysis.eigen, nearest, seed)?,
-        figures: figures(&analysis, seed.is_some())?,
+        figures: figures(&analysis, seed.is_some(), samples.as_ref())?,
         polar_forward: analysis.polar,
         polar_reverse: analysis
             .normalised_nearest

@@ -27,3 +27,14 @@ pub const ROOT_SETTLED: f64 = 1e-14;
 /// Largest and, inverted, smallest refractive index that is taken: far beyond any
 /// material, and squares stay exact enough.
 pub const LARGEST_INDEX: f64 = 1e6;
+
+/// How far a covariance may be from symmetric, and its correlations from positive, by
+/// the rounding of what printed it.
+pub const SYMMETRY: f64 = 1e-9;
+
+/// Correlations with a smaller eigenvalue make some combination of elements exact.
+pub const SINGULAR_COVARIANCE: f64 = 1e-12;
+
+/// Where the weighted nearest matrix has settled: `tr(H Z)` over the larger of one and
+/// the squared distance.
+pub const COMPLEMENTARITY: f64 = 1e-11;

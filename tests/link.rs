@@ -6,7 +6,7 @@
 use base64::Engine;
 use base64::engine::general_purpose::URL_SAFE_NO_PAD;
 use halfshade::error::{Error, Place};
-use halfshade::link::{decode, encode, known_blocks, open, seal};
+use halfshade::link::{decode, encode, known_blocks, open, read_file, seal, write_file};
 use miniz_oxide::deflate::compress_to_vec;
 use proptest::prelude::*;
 use serde_json::{Value, json};
@@ -123,12 +123,11 @@ fn the_golden_link_is_read() {
 fn blocks_of_later_versions_survive() {
     let mut configuration = configuration();
     for later in [
-        "compareWith",
+        "train",
         "fit",
         "settings",
         "readings",
         "instrument",
-        "dataFile",
         "neverHeardOf",
     ] {
         assert!(!known_blocks().contains(&later));
@@ -590,5 +589,70 @@ proptest! {
     #[test]
     fn any_text_travels(text in ".{0,300}") {
         prop_assert_eq!(open(&seal(&text).unwrap()).unwrap(), text);
+    }
+}
+
+#[test]
+fn several_matrices_travel_and_are_checked() {
+    let one: Vec<f64> = (0..16).map(|k| f64::from(k) / 7.0).collect();
+    let mut configuration = configuration();
+    configuration["compareWith"] =
+        json!({ "mueller": one, "noise": { "kind": "uniform", "sigma": 0.01 } });
+    configuration["dataFile"] = json!({ "name": "film.npy", "sha256": "00ff" });
+    configuration["series"] = json!({ "use": "series", "matrices": [one, one], "labels": ["a", "b"], "coordinates": [450, 500.5] });
+    let back = decode(&encode(&configuration).unwrap()).unwrap();
+    assert_eq!(back.to_string(), configuration.to_string());
+    for (path, bad, field) in [
+        ("series", json!({ "use": "other" }), "series.use"),
+        (
+            "series",
+            json!({ "use": "pick", "matrices": [[1, 2]] }),
+            "series.matrices",
+        ),
+        (
+            "series",
+            json!({ "matrices": [one], "labels": ["a", "b"] }),
+            "series.labels",
+        ),
+        (
+            "series",
+            json!({ "matrices": [one], "coordinates": ["a"] }),
+            "series.coordinates",
+        ),
+        ("series", json!({ "more": 1 }), "series.more"),
+        (
+            "compareWith",
+            json!({ "mueller": [1] }),
+            "compareWith.mueller",
+        ),
+        ("dataFile", json!({ "name": 1 }), "dataFile.name"),
+    ] {
+        let mut configuration = configuration.clone();
+        configuration[path] = bad;
+        let error = encode(&configuration).expect_err(field);
+        assert!(error.to_string().contains(field), "{field}: {error}");
+    }
+}
+
+#[test]
+fn a_file_holds_what_a_link_holds() {
+    let configuration = configuration();
+    let text = write_file(&configuration).unwrap();
+    assert_eq!(
+        read_file(&text).unwrap().to_string(),
+        configuration.to_string()
+    );
+    assert_eq!(
+        read_file(&format!("\u{feff}{text}")).unwrap(),
+        configuration
+    );
+    for (bad, code) in [
+        ("", "file-damaged"),
+        (&text[..text.len() - 5], "file-damaged"),
+        ("[1]", "bad-request"),
+        ("{\"v\": 2}", "link-newer"),
+        ("{}", "bad-request"),
+    ] {
+        assert_eq!(read_file(bad).expect_err(bad).code, code, "{bad}");
     }
 }

@@ -367,7 +367,7 @@ impl Entry<'_> {
                     .realizability
                     .eigenvalue_se
                     .unwrap();
-                self.all_close("eigenvalueSe", &[se; 4], &self.expect["eigenvalueSe"]);
+                self.all_close("eigenvalueSe", &se, &self.expect["eigenvalueSe"]);
             }
             "noise-on-pure" => self.noise_on_pure(),
             "rounding" => self.rounding(),

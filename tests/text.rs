@@ -107,14 +107,15 @@ fn every_form_is_read_exactly() {
             }
         }
         if let Some(sigma) = expected.get("sigma") {
-            let found = serde_json::to_value(
-                read.matrices
-                    .iter()
-                    .map(|one| one.sigma)
-                    .collect::<Vec<_>>(),
-            );
-            if found.as_ref().unwrap().to_string() != sigma.to_string() {
-                bad.push(format!("{name}: sigma {found:?}, expected {sigma}"));
+            let found: Vec<_> = read.matrices.iter().map(|one| one.sigma).collect();
+            let sigma: Vec<Option<[f64; 16]>> = sigma
+                .as_array()
+                .unwrap()
+                .iter()
+                .map(|one| Some(std::array::from_fn(|k| one[k].as_f64().unwrap())))
+                .collect();
+            if found != sigma {
+                bad.push(format!("{name}: sigma {found:?}, expected {sigma:?}"));
             }
         } else if read.matrices.iter().any(|one| one.sigma.is_some()) {
             bad.push(format!("{name}: uncertainties from nowhere"));

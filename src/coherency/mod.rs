@@ -4,15 +4,20 @@
 mod nearest;
 mod realizability;
 mod significance;
+mod weighted;
 
-pub(crate) use nearest::nearest_of;
+pub(crate) use nearest::nearest_to;
 pub use nearest::{Nearest, nearest};
 pub use realizability::{
     Passivity, PassivityVerdict, Realizability, Verdict, is_realizable, passivity, realizability,
     stokes_margin,
 };
-pub(crate) use significance::eigenvalue_error;
-pub use significance::{SIMULATIONS, Significance, explaining_sigma, significance};
+pub(crate) use significance::eigenvalue_errors;
+pub use significance::{
+    SIMULATIONS, Significance, explaining_sigma, significance, weighted_significance,
+};
+
+pub use weighted::{WeightedNearest, weighted_nearest};
 
 use nalgebra::Matrix4;
 use num_complex::Complex64;
@@ -79,6 +84,16 @@ pub(crate) fn jones_of(transmittance: f64, vector: &nalgebra::Vector4<Complex64>
         scaled[0], scaled[1], scaled[2], scaled[3],
     ))
     .phase_fixed()
+}
+
+/// The derivatives of `h† H h` with respect to the elements, row by row:
+/// `¼ h†(σi ⊗ σj*) h`.
+pub(crate) fn eigenvalue_gradient(vector: &nalgebra::Vector4<Complex64>) -> [f64; 16] {
+    let mut gradient = [0.0; 16];
+    each_entry(|k, row, column, phase| {
+        gradient[k] += 0.25 * (vector[row].conj() * phase * vector[column]).re;
+    });
+    gradient
 }
 
 /// Calls `visit(k, row, column, phase)` for each entry other than zero of

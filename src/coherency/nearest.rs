@@ -1,18 +1,21 @@
-use super::Coherency;
+use super::{Coherency, weighted_nearest};
 use crate::error::Result;
 use crate::linalg::HermitianEigen;
 use crate::mueller::Mueller;
+use crate::noise::Measurement;
 use crate::tolerance;
 
-/// The nearest realizable matrix, for equal independent errors.
+/// The nearest realizable matrix.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Nearest {
     /// The matrix itself; the measured one where that is realizable.
     pub mueller: Mueller,
-    /// The eigenvalues of its H, descending.
-    pub eigenvalues: [f64; 4],
+    /// Of its H; no eigenvalue is negative.
+    pub eigen: HermitianEigen,
     /// The Frobenius distance from the measured matrix.
     pub distance: f64,
+    /// `(m̂ − m)ᵀ Σ⁻¹ (m̂ − m)`, where the errors are not equal and independent.
+    pub statistic: Option<f64>,
 }
 
 /// The realizable matrix of least Frobenius distance.
@@ -29,6 +32,47 @@ pub fn nearest(mueller: &Mueller, m00_is_exact: bool) -> Result<Option<Nearest>>
     Ok(nearest_of(mueller, &eigen, m00_is_exact))
 }
 
+/// The nearest realizable matrix under the stated noise; equal errors where none is
+/// stated. `None` where no realizable matrix has the exact elements.
+///
+/// # Errors
+/// As [`Coherency::eigen`] and [`weighted_nearest`].
+pub(crate) fn nearest_to(
+    measurement: &Measurement,
+    eigen: &HermitianEigen,
+) -> Result<Option<Nearest>> {
+    let mueller = measurement.mueller();
+    let Some(covariance) = measurement.covariance() else {
+        return Ok(nearest_of(mueller, eigen, measurement.m00_is_exact()));
+    };
+    if eigen.values[3] >= -tolerance::ZERO * mueller.m00().abs() {
+        let nearest = nearest_of(mueller, eigen, false);
+        return Ok(nearest.map(|nearest| Nearest {
+            statistic: Some(0.0),
+            ..nearest
+        }));
+    }
+    if mueller.m00() < 0.0 && covariance.is_held(0) {
+        return Ok(None);
+    }
+    let Some(found) = weighted_nearest(&mueller.row_major(), covariance)? else {
+        return Ok(None);
+    };
+    let nearest = Mueller::from_row_major(&found.elements)?;
+    let mut eigen = Coherency::from_mueller(&nearest).eigen()?;
+    // What the iteration left above or below zero is rounding.
+    let rounding = 1e-10 * eigen.values[0].abs();
+    eigen.values = eigen
+        .values
+        .map(|value| if value < rounding { 0.0 } else { value });
+    Ok(Some(Nearest {
+        distance: (mueller.matrix() - nearest.matrix()).norm(),
+        mueller: nearest,
+        eigen,
+        statistic: Some(found.statistic),
+    }))
+}
+
 pub(crate) fn nearest_of(
     mueller: &Mueller,
     eigen: &HermitianEigen,
@@ -40,8 +84,12 @@ pub(crate) fn nearest_of(
     if eigen.values[3] >= -tolerance::ZERO * mueller.m00().abs() {
         return Some(Nearest {
             mueller: *mueller,
-            eigenvalues: eigen.values.map(|value| value.max(0.0)),
+            eigen: HermitianEigen {
+                values: eigen.values.map(|value| value.max(0.0)),
+                vectors: eigen.vectors,
+            },
             distance: 0.0,
+            statistic: None,
         });
     }
     let eigenvalues = realizable_spectrum(&eigen.values, m00_is_exact.then(|| mueller.m00()));
@@ -52,8 +100,12 @@ pub(crate) fn nearest_of(
     };
     Some(Nearest {
         mueller: nearest,
-        eigenvalues,
         distance: distance(&eigen.values, &eigenvalues),
+        eigen: HermitianEigen {
+            values: eigenvalues,
+            vectors: eigen.vectors,
+        },
+        statistic: None,
     })
 }
 

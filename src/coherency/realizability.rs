@@ -2,7 +2,9 @@ use nalgebra::{Matrix4, Vector4};
 use num_complex::Complex64;
 
 use super::nearest::Nearest;
-use super::significance::{Significance, eigenvalue_error, explaining_sigma, significance};
+use super::significance::{
+    Significance, eigenvalue_errors, explaining_sigma, significance, weighted_significance,
+};
 use crate::error::Result;
 use crate::linalg::{HermitianEigen, hermitian_eigen};
 use crate::mueller::Mueller;
@@ -30,8 +32,8 @@ pub struct Realizability {
     pub verdict: Verdict,
     /// Of H / |M00|, descending; `None` where M00 is zero.
     pub eigenvalues: Option<[f64; 4]>,
-    /// Standard error of a simple eigenvalue of H, over |M00|.
-    pub eigenvalue_se: Option<f64>,
+    /// Standard errors of the eigenvalues, if they are simple, over |M00|.
+    pub eigenvalue_se: Option<[f64; 4]>,
     /// Frobenius distance to the nearest realizable matrix over |M00|; `None` where
     /// M00 is zero or there is no such matrix.
     pub violation: Option<f64>,
@@ -101,12 +103,12 @@ pub fn realizability(
     let m00 = Some(mueller.m00().abs()).filter(|&m00| m00 > tolerance::ZERO * mueller.largest());
     let realizable = is_realizable(mueller, eigen);
 
-    let test = match (measurement.sigma(), seed) {
-        (Some(sigma), Some(seed)) => significance(mueller, exact, sigma, seed)?,
-        _ => None,
+    let test = match seed {
+        Some(seed) => weighted_significance(measurement, nearest, seed)?,
+        None => None,
     };
-    let rounding_decimals = match *measurement.noise() {
-        Noise::Rounding { decimals } => Some(decimals),
+    let rounding_decimals = match measurement.noise() {
+        &Noise::Rounding { decimals } => Some(decimals),
         // A matrix of zeros and ones was hardly rounded to whole numbers.
         _ => printed_decimals(&mueller.row_major())
             .filter(|&decimals| rounding_sigma(decimals) <= 0.03 * mueller.m00().abs()),
@@ -130,19 +132,23 @@ pub fn realizability(
         (Noise::None, Some(seed)) if !realizable => explaining_sigma(mueller, exact, seed)?,
         _ => None,
     };
-    let verdict = match (measurement.sigma(), test) {
+    let verdict = match (measurement.has_noise(), test) {
         _ if realizable => Verdict::Realizable,
-        (Some(_), Some(test)) if is_noise(&test) => Verdict::WithinNoise,
-        (Some(_), Some(_)) => Verdict::BeyondNoise,
+        (true, Some(test)) if is_noise(&test) => Verdict::WithinNoise,
+        (true, Some(_)) => Verdict::BeyondNoise,
         // M00 is exact and negative: no noise touches it.
-        (Some(_), None) if nearest.is_none() => Verdict::BeyondNoise,
+        (true, None) if nearest.is_none() => Verdict::BeyondNoise,
         _ => Verdict::NotRealizable,
     };
     let reason = if m00.is_none() {
         Some("M00 is zero, so nothing can be given relative to it")
     } else if nearest.is_none() {
-        Some("M00 is exact and negative, and no realizable matrix has a negative M00")
-    } else if measurement.sigma().is_none() {
+        Some(if mueller.m00() < 0.0 {
+            "M00 is exact and negative, and no realizable matrix has a negative M00"
+        } else {
+            "no realizable matrix has the elements that are exact"
+        })
+    } else if !measurement.has_noise() {
         Some("no noise was stated")
     } else if test.is_none() {
         Some("no simulation was asked for")
@@ -153,11 +159,10 @@ pub fn realizability(
     Ok(Realizability {
         verdict,
         eigenvalues: m00.map(|m00| eigen.values.map(|value| value / m00)),
-        eigenvalue_se: measurement
-            .sigma()
+        eigenvalue_se: eigenvalue_errors(measurement, eigen)
             .zip(m00)
-            .map(|(sigma, m00)| eigenvalue_error(exact) * sigma / m00)
-            .filter(|se| se.is_finite()),
+            .map(|(errors, m00)| errors.map(|se| se / m00))
+            .filter(|errors| errors.iter().all(|se| se.is_finite())),
         violation: nearest
             .zip(m00)
             .map(|(nearest, m00)| nearest.distance / m00),
@@ -233,14 +238,7 @@ pub fn passivity(measurement: &Measurement) -> Option<Passivity> {
     let first_row = matrix.fixed_view::<1, 3>(0, 1).norm();
     let first_column = matrix.fixed_view::<3, 1>(1, 0).norm();
     let margin = mueller.m00() + first_row.max(first_column) - 1.0;
-    // A norm has the error of one element; M00 adds its own.
-    let margin_se = measurement.sigma().map(|sigma| {
-        if measurement.m00_is_exact() {
-            sigma
-        } else {
-            sigma * 2f64.sqrt()
-        }
-    });
+    let margin_se = measurement.standard_error(&margin_gradient(mueller));
     // The one-sided 95 % point of the normal distribution.
     let margin_low = margin_se.map(|se| margin - 1.644_853_626_951_472_7 * se);
     let verdict = if margin <= tolerance::ZERO {
@@ -256,6 +254,33 @@ pub fn passivity(measurement: &Measurement) -> Option<Passivity> {
         margin_low,
         verdict,
     })
+}
+
+/// The derivatives of the margin: one for M00, the direction of the longer vector.
+fn margin_gradient(mueller: &Mueller) -> [f64; 16] {
+    let elements = mueller.row_major();
+    let length = |places: [usize; 3]| {
+        places
+            .iter()
+            .fold(0.0_f64, |sum, &k| sum.hypot(elements[k]))
+    };
+    let (row, column) = ([1, 2, 3], [4, 8, 12]);
+    let places = if length(row) >= length(column) {
+        row
+    } else {
+        column
+    };
+    let longest = length(places);
+    let mut gradient = [0.0; 16];
+    gradient[0] = 1.0;
+    for k in places {
+        gradient[k] = if longest > 0.0 {
+            elements[k] / longest
+        } else {
+            3f64.sqrt().recip()
+        };
+    }
+    gradient
 }
 
 /// Whether a realizable matrix prints as the same digits.

@@ -1,8 +1,10 @@
-use super::Coherency;
-use super::nearest::{distance, nearest_of, realizable_spectrum};
+use super::nearest::{Nearest, distance, nearest_of, realizable_spectrum};
+use super::weighted::weighted_distance;
+use super::{Coherency, eigenvalue_gradient};
 use crate::error::Result;
 use crate::linalg::HermitianEigen;
 use crate::mueller::Mueller;
+use crate::noise::Measurement;
 use crate::stats::NormalDraws;
 use crate::tolerance;
 
@@ -53,6 +55,72 @@ pub fn significance(
     Ok(Some(Significance {
         statistic,
         p_value: test.p_value(sigma, &noise)?,
+        simulations: SIMULATIONS,
+    }))
+}
+
+/// The same under any noise, from the nearest matrix under it.
+///
+/// `None` where there is no nearest matrix, or the noise is none.
+///
+/// # Errors
+/// As [`Coherency::eigen`] and `weighted_nearest`.
+pub fn weighted_significance(
+    measurement: &Measurement,
+    nearest: Option<&Nearest>,
+    seed: u64,
+) -> Result<Option<Significance>> {
+    if let Some(sigma) = measurement.equal_sigma() {
+        return significance(
+            measurement.mueller(),
+            measurement.m00_is_exact(),
+            sigma,
+            seed,
+        );
+    }
+    let (Some(covariance), Some(nearest)) = (measurement.covariance(), nearest) else {
+        return Ok(None);
+    };
+    let statistic = nearest.statistic.unwrap_or_default();
+    if statistic == 0.0 {
+        return Ok(Some(Significance {
+            statistic,
+            p_value: 1.0,
+            simulations: 0,
+        }));
+    }
+    let errors = eigenvalue_errors(measurement, &nearest.eigen).unwrap_or_default();
+    let mut spectrum = nearest.eigen.values;
+    for (value, error) in spectrum.iter_mut().zip(errors).skip(1) {
+        if *value < tolerance::STANDARD_ERRORS * error {
+            *value = 0.0;
+        }
+    }
+    let mut mean = Coherency::from_spectrum(&spectrum, &nearest.eigen)
+        .mueller()
+        .row_major();
+    let m00 = measurement.mueller().m00();
+    if covariance.is_held(0) && mean[0] > 0.0 {
+        let factor = m00 / mean[0];
+        mean = mean.map(|element| element * factor);
+    }
+    let mut draws = NormalDraws::new(seed);
+    let mut beyond = 0_u32;
+    for _ in 0..SIMULATIONS {
+        let errors = covariance.draw(&mut draws);
+        let elements = std::array::from_fn(|k| mean[k] + errors[k]);
+        let values = Coherency::from_elements(&elements).eigen()?.values;
+        // Most of the time there is something to do; where not, the distance is zero.
+        let simulated = if values[3] >= 0.0 {
+            0.0
+        } else {
+            weighted_distance(&elements, covariance)?.unwrap_or(f64::MAX)
+        };
+        beyond += u32::from(simulated >= statistic);
+    }
+    Ok(Some(Significance {
+        statistic,
+        p_value: f64::from(1 + beyond) / f64::from(1 + SIMULATIONS),
         simulations: SIMULATIONS,
     }))
 }
@@ -111,8 +179,26 @@ pub fn explaining_sigma(mueller: &Mueller, m00_is_exact: bool, seed: u64) -> Res
 
 /// `se / σ` of a simple eigenvalue of H: ½ for sixteen equal errors, √3/4 where
 /// M00 is exact.
-pub(crate) fn eigenvalue_error(m00_is_exact: bool) -> f64 {
+fn eigenvalue_error(m00_is_exact: bool) -> f64 {
     if m00_is_exact { 3f64.sqrt() / 4.0 } else { 0.5 }
+}
+
+/// First-order standard errors of the eigenvalues of H, in the same order: `gᵀ Σ g`
+/// with `g_ij = ¼ h†(σi ⊗ σj*) h`. `None` without noise.
+pub(crate) fn eigenvalue_errors(
+    measurement: &Measurement,
+    eigen: &HermitianEigen,
+) -> Option<[f64; 4]> {
+    if let Some(sigma) = measurement.equal_sigma() {
+        return Some([eigenvalue_error(measurement.m00_is_exact()) * sigma; 4]);
+    }
+    let covariance = measurement.covariance()?;
+    Some(std::array::from_fn(|k| {
+        covariance
+            .variance(&eigenvalue_gradient(&eigen.vectors[k]))
+            .max(0.0)
+            .sqrt()
+    }))
 }
 
 struct Test {
@@ -129,7 +215,7 @@ impl Test {
         let eigen = Coherency::from_mueller(mueller).eigen()?;
         Ok(
             nearest_of(mueller, &eigen, m00_is_exact).map(|nearest| Self {
-                nearest: nearest.eigenvalues,
+                nearest: nearest.eigen.values,
                 distance: nearest.distance,
                 exact_m00: m00_is_exact.then(|| mueller.m00()),
                 eigen,

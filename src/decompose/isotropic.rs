@@ -15,7 +15,8 @@ pub struct Isotropic {
     pub jones: Option<Jones>,
     /// The fitted matrix.
     pub mueller: Mueller,
-    /// Squared residual over σ²; `None` without noise.
+    /// Squared residual over σ²; `None` without equal errors, for which alone the closed
+    /// form is the best fit.
     pub chi_square: Option<f64>,
     /// 16 − 8, or 15 − 7 where M00 is exact.
     pub degrees_of_freedom: u32,
@@ -48,7 +49,7 @@ pub fn isotropic(measurement: &Measurement, eigen: &HermitianEigen) -> Option<Is
     let spectrum = std::array::from_fn(|k| if k == pure { rest + amplitude } else { rest });
     let mueller = Coherency::from_spectrum(&spectrum, eigen).mueller();
     let degrees_of_freedom = 8;
-    let chi_square = measurement.sigma().map(|sigma| {
+    let chi_square = measurement.equal_sigma().map(|sigma| {
         let residual: f64 = values
             .iter()
             .zip(&spectrum)

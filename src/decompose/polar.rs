@@ -34,6 +34,10 @@ pub struct RetarderParameters {
     /// retardance. Near π, where fast and slow can't be told apart, the first
     /// component that is not zero is positive.
     pub axis: Option<[f64; 3]>,
+    /// Retardance times axis, smooth also where both vanish.
+    pub vector: [f64; 3],
+    /// The same of the linear part: the two components on the equator.
+    pub linear_vector: [f64; 2],
     /// `½ atan2(a1, a0)` in [0, π); `None` also for a circular retarder.
     pub azimuth: Option<f64>,
     /// `½ asin a2`.
@@ -157,7 +161,19 @@ fn parameters(rotation: &Matrix3<f64>, threshold: f64) -> RetarderParameters {
     // digits.
     let linear_retardance = linear_sine.atan2(r[(2, 2)]);
     let half_wave = 1.0 + r[(2, 2)] < threshold;
+    let vector = match axis {
+        Some(axis) => axis.map(|component| component * retardance),
+        // Near zero the sine is the angle.
+        None => sine.into(),
+    };
+    let stretch = if linear_sine > 0.0 {
+        linear_retardance / linear_sine
+    } else {
+        1.0
+    };
     RetarderParameters {
+        vector,
+        linear_vector: [r[(1, 2)] * stretch, -r[(0, 2)] * stretch],
         retardance,
         axis,
         azimuth: axis.and_then(|[a0, a1, _]| {

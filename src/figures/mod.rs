@@ -1,9 +1,12 @@
-//! The scalar figures of a measured matrix, and their standard errors.
+//! The scalar figures of a measured matrix, their standard errors and intervals.
 
 mod errors;
+mod samples;
+mod table;
 mod values;
 
-pub(crate) use errors::figures;
-pub use errors::{Figure, FigureTable};
+pub(crate) use samples::Samples;
+pub(crate) use table::figures;
+pub use table::{Figure, FigureTable, Interval, Method, figures_of};
 pub(crate) use values::Analysis;
 pub use values::{FigureName, Unit};

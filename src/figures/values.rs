@@ -1,7 +1,7 @@
 use std::f64::consts::PI;
 
-use crate::coherency::{Coherency, Nearest, nearest_of};
-use crate::decompose::{PolarFactors, isotropic, polar_forward};
+use crate::coherency::{Coherency, Nearest, nearest_to};
+use crate::decompose::{PolarFactors, RetarderParameters, isotropic, polar_forward};
 use crate::error::Result;
 use crate::linalg::HermitianEigen;
 use crate::mueller::Mueller;
@@ -174,7 +174,7 @@ impl Analysis {
         let mueller = measurement.mueller();
         let exact = measurement.m00_is_exact();
         let eigen = Coherency::from_mueller(mueller).eigen()?;
-        let nearest = nearest_of(mueller, &eigen, exact);
+        let nearest = nearest_to(measurement, &eigen)?;
         let normalised_nearest = nearest
             .as_ref()
             .filter(|nearest| nearest.mueller.m00() > 0.0)
@@ -183,7 +183,7 @@ impl Analysis {
         // element of size one.
         let growth = if exact { 1.0 } else { 2f64.sqrt() };
         let normalised_sigma = measurement
-            .sigma()
+            .typical_sigma()
             .zip(nearest.as_ref())
             .map(|(sigma, nearest)| growth * sigma / nearest.mueller.m00().abs())
             .filter(|sigma| sigma.is_finite());
@@ -191,13 +191,18 @@ impl Analysis {
             .map(|m| polar_forward(&m, normalised_sigma))
             .transpose()?;
         Ok(Self {
-            measurement: *measurement,
+            measurement: measurement.clone(),
             eigen,
             nearest,
             normalised_nearest,
             normalised_sigma,
             polar,
         })
+    }
+
+    /// The retarder of the forward polar decomposition, where it is determined.
+    pub fn retarder(&self) -> Option<&RetarderParameters> {
+        self.polar.as_ref()?.parameters.as_ref()
     }
 
     /// One figure, or why it is not determined. Radians.
@@ -249,7 +254,7 @@ impl Analysis {
             FigureName::PurityIndex2 => Ok(lambda[0] + lambda[1] - 2.0 * lambda[2]),
             FigureName::PurityIndex3 => Ok(lambda[0] + lambda[1] + lambda[2] - 3.0 * lambda[3]),
             FigureName::Entropy => {
-                let values = self.nearest.as_ref().ok_or(NO_M00)?.eigenvalues;
+                let values = self.nearest.as_ref().ok_or(NO_M00)?.eigen.values;
                 let sum: f64 = values.iter().sum();
                 Ok(values
                     .iter()

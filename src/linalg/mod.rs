@@ -6,10 +6,14 @@
 mod eigen;
 mod logarithm;
 mod svd;
+mod symmetric;
 
 pub use eigen::{HermitianEigen, hermitian_eigen};
 pub use logarithm::principal_logarithm;
 pub use svd::{Svd3, svd3};
+pub use symmetric::{
+    eigen_of_symmetric16, inverse_positive4, inverse_symmetric3, is_positive4, solve_positive16,
+};
 
 use crate::error::Error;
 

@@ -1,12 +1,14 @@
 //! What is known of the noise, and the measurement that carries it.
 
+use std::sync::Arc;
+
 use crate::error::{Error, Result};
 use crate::mueller::Mueller;
-use crate::stats::rounding_sigma;
+use crate::stats::{Covariance, NormalDraws, rounding_sigma};
 use crate::tolerance;
 
 /// What the person says of the noise. It refers to the matrix as given.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub enum Noise {
     /// Nothing.
     None,
@@ -14,6 +16,21 @@ pub enum Noise {
     Uniform {
         /// In the unit of the matrix.
         sigma: f64,
+    },
+    /// One standard deviation, as a share of M00.
+    Relative {
+        /// σ over |M00|.
+        fraction: f64,
+    },
+    /// A standard deviation for each element, row by row; zero for an exact one.
+    PerElement {
+        /// In the unit of the matrix.
+        sigma: [f64; 16],
+    },
+    /// The covariance of the elements, row by row; rows of zeros for exact ones.
+    Covariance {
+        /// 16×16 numbers, row by row.
+        covariance: Box<[f64; 256]>,
     },
     /// The numbers were rounded to so many decimals, and nothing else.
     Rounding {
@@ -25,62 +42,86 @@ pub enum Noise {
 impl Noise {
     /// More decimals than a double holds are no statement.
     pub const MOST_DECIMALS: u32 = 17;
+}
 
-    /// The standard deviation of an element that is not exact; `None` where
-    /// nothing was said.
-    #[must_use]
-    pub fn sigma(&self) -> Option<f64> {
-        match *self {
-            Self::None => None,
-            Self::Uniform { sigma } => Some(sigma),
-            Self::Rounding { decimals } => Some(rounding_sigma(decimals)),
-        }
-    }
+/// What the statement makes of the errors of one matrix.
+#[derive(Debug, Clone, PartialEq)]
+enum Errors {
+    /// Nothing was said.
+    Unknown,
+    /// Independent, of this σ, but for an exact M00.
+    Equal(f64),
+    /// Anything else.
+    General(Arc<Covariance>),
 }
 
 /// A measured matrix with what is known of it, canonical convention.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct Measurement {
     mueller: Mueller,
     m00_is_exact: bool,
     absolute: bool,
     noise: Noise,
+    errors: Errors,
 }
 
 impl Measurement {
     /// `m00_is_exact`: the matrix was divided by M00, which therefore has no
-    /// error. `absolute`: M00 is a transmittance or reflectance, not relative.
+    /// error, whatever the noise statement says of it. `absolute`: M00 is a
+    /// transmittance or reflectance, not relative.
     ///
     /// # Errors
-    /// `bad-sigma` for a sigma that is not positive, finite and in range;
-    /// `bad-decimals` for more than [`Noise::MOST_DECIMALS`].
+    /// `bad-sigma` for a sigma that is not positive, finite and in range (an exact
+    /// element may have zero); `bad-decimals` for more than [`Noise::MOST_DECIMALS`];
+    /// those of [`Covariance::new`].
     pub fn new(mueller: Mueller, m00_is_exact: bool, absolute: bool, noise: Noise) -> Result<Self> {
-        match noise {
-            Noise::Uniform { sigma }
-                if !(1.0 / tolerance::LARGEST_NUMBER..=tolerance::LARGEST_NUMBER)
-                    .contains(&sigma) =>
-            {
-                Err(Error::new(
-                    "bad-sigma",
-                    "σ must be a positive number, in the unit of the matrix.",
-                )
-                .at_field("noise.sigma"))
+        let errors = match &noise {
+            Noise::None => Errors::Unknown,
+            &Noise::Uniform { sigma } => Errors::Equal(in_range(sigma, "noise.sigma")?),
+            &Noise::Relative { fraction } => {
+                Errors::Equal(in_range(fraction * mueller.m00().abs(), "noise.fraction")?)
             }
-            Noise::Rounding { decimals } if decimals > Noise::MOST_DECIMALS => Err(Error::new(
-                "bad-decimals",
-                format!(
-                    "The number of decimals must lie between 0 and {}.",
-                    Noise::MOST_DECIMALS
-                ),
-            )
-            .at_field("noise.decimals")),
-            _ => Ok(Self {
-                mueller,
-                m00_is_exact,
-                absolute,
-                noise,
-            }),
-        }
+            Noise::PerElement { sigma } => {
+                let mut sigma = *sigma;
+                if m00_is_exact {
+                    sigma[0] = 0.0;
+                }
+                for (k, &value) in sigma.iter().enumerate() {
+                    if value != 0.0 {
+                        in_range(value, &format!("noise.sigma[{k}]"))?;
+                    }
+                }
+                errors_of(Covariance::diagonal(&sigma)?)?
+            }
+            Noise::Covariance { covariance } => {
+                let covariance = Covariance::new(covariance)?;
+                errors_of(if m00_is_exact && !covariance.is_held(0) {
+                    covariance.holding(0)?
+                } else {
+                    covariance
+                })?
+            }
+            &Noise::Rounding { decimals } if decimals <= Noise::MOST_DECIMALS => {
+                Errors::Equal(rounding_sigma(decimals))
+            }
+            Noise::Rounding { .. } => {
+                return Err(Error::new(
+                    "bad-decimals",
+                    format!(
+                        "The number of decimals must lie between 0 and {}.",
+                        Noise::MOST_DECIMALS
+                    ),
+                )
+                .at_field("noise.decimals"));
+            }
+        };
+        Ok(Self {
+            mueller,
+            m00_is_exact,
+            absolute,
+            noise,
+            errors,
+        })
     }
 
     /// The matrix as given.
@@ -107,14 +148,135 @@ impl Measurement {
         &self.noise
     }
 
-    /// The standard deviation of an element that is not exact.
+    /// Whether anything was said of the noise.
     #[must_use]
-    pub fn sigma(&self) -> Option<f64> {
-        self.noise.sigma()
+    pub fn has_noise(&self) -> bool {
+        self.errors != Errors::Unknown
+    }
+
+    /// The σ of independent equal errors; `None` for all others.
+    #[must_use]
+    pub fn equal_sigma(&self) -> Option<f64> {
+        match self.errors {
+            Errors::Equal(sigma) => Some(sigma),
+            _ => None,
+        }
+    }
+
+    /// The covariance of errors that are not independent and equal.
+    #[must_use]
+    pub fn covariance(&self) -> Option<&Covariance> {
+        match &self.errors {
+            Errors::General(covariance) => Some(covariance),
+            _ => None,
+        }
+    }
+
+    /// The standard deviation of each element, zero for an exact one; `None` where
+    /// nothing was said.
+    #[must_use]
+    pub fn element_sigma(&self) -> Option<[f64; 16]> {
+        match &self.errors {
+            Errors::Unknown => None,
+            Errors::Equal(sigma) => Some(std::array::from_fn(|k| {
+                if k == 0 && self.m00_is_exact {
+                    0.0
+                } else {
+                    *sigma
+                }
+            })),
+            Errors::General(covariance) => Some(std::array::from_fn(|k| covariance.sigma(k))),
+        }
+    }
+
+    /// The root mean square of the standard deviations of the elements that are not
+    /// exact.
+    #[must_use]
+    pub fn typical_sigma(&self) -> Option<f64> {
+        match &self.errors {
+            Errors::Unknown => None,
+            Errors::Equal(sigma) => Some(*sigma),
+            Errors::General(covariance) => Some(covariance.typical_sigma()),
+        }
+    }
+
+    /// The first-order standard error of a quantity with this gradient with respect to
+    /// the elements, row by row.
+    #[must_use]
+    pub fn standard_error(&self, gradient: &[f64; 16]) -> Option<f64> {
+        let variance = match &self.errors {
+            Errors::Unknown => return None,
+            Errors::Equal(sigma) => {
+                let first = usize::from(self.m00_is_exact);
+                // Each term scaled by itself: squares of tiny gradients must not vanish.
+                return Some(
+                    gradient[first..]
+                        .iter()
+                        .fold(0.0_f64, |length, g| length.hypot(g * sigma)),
+                );
+            }
+            Errors::General(covariance) => covariance.variance(gradient),
+        };
+        Some(variance.max(0.0).sqrt())
+    }
+
+    /// The covariance of two quantities with these gradients, to first order.
+    #[must_use]
+    pub fn covariance_of(&self, one: &[f64; 16], other: &[f64; 16]) -> Option<f64> {
+        match &self.errors {
+            Errors::Unknown => None,
+            Errors::Equal(sigma) => {
+                let first = usize::from(self.m00_is_exact);
+                let pairs = one[first..].iter().zip(&other[first..]);
+                Some(pairs.map(|(a, b)| (a * sigma) * (b * sigma)).sum())
+            }
+            Errors::General(covariance) => Some(covariance.covariance_of(one, other)),
+        }
+    }
+
+    /// One draw of the errors; zeros where nothing was said.
+    pub(crate) fn draw(&self, draws: &mut NormalDraws) -> [f64; 16] {
+        match &self.errors {
+            Errors::Unknown => [0.0; 16],
+            Errors::Equal(sigma) => {
+                let mut errors = draws.draw_matrix().map(|draw| draw * sigma);
+                if self.m00_is_exact {
+                    errors[0] = 0.0;
+                }
+                errors
+            }
+            Errors::General(covariance) => covariance.draw(draws),
+        }
     }
 
     /// The same measurement of another matrix.
     pub(crate) fn with_mueller(&self, mueller: Mueller) -> Self {
-        Self { mueller, ..*self }
+        Self {
+            mueller,
+            ..self.clone()
+        }
     }
+}
+
+fn in_range(sigma: f64, field: &str) -> Result<f64> {
+    let range = 1.0 / tolerance::LARGEST_NUMBER..=tolerance::LARGEST_NUMBER;
+    if range.contains(&sigma) {
+        return Ok(sigma);
+    }
+    Err(Error::new(
+        "bad-sigma",
+        "σ must be a positive number, in the unit of the matrix.",
+    )
+    .at_field(field))
+}
+
+fn errors_of(covariance: Covariance) -> Result<Errors> {
+    if (0..16).all(|k| covariance.is_held(k)) {
+        return Err(Error::new(
+            "bad-sigma",
+            "At least one element must have an error, or no noise be stated.",
+        )
+        .at_field("noise"));
+    }
+    Ok(Errors::General(Arc::new(covariance)))
 }

@@ -1,9 +1,13 @@
 //! Distributions, seeded draws and rounding to the uncertainty.
 
+mod covariance;
 mod draws;
+mod noncentral;
 mod rounding;
 
+pub use covariance::Covariance;
 pub use draws::NormalDraws;
+pub use noncentral::{chi_squared_95, noncentral_chi_squared, noncentrality_at};
 pub use rounding::{RoundedValue, printed_decimals, rounded, rounding_sigma};
 
 use statrs::distribution::{ChiSquared, ContinuousCDF};

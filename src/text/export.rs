@@ -318,7 +318,11 @@ impl Delimited {
 }
 
 fn json(content: &Content) -> String {
-    let text = |text: &str| serde_json::Value::from(line(text)).to_string();
+    let text = |text: &str| {
+        // Control characters are gone by now.
+        let escaped = line(text).replace('\\', "\\\\").replace('"', "\\\"");
+        format!("\"{escaped}\"")
+    };
     let list = |items: Vec<String>| format!("[{}]", items.join(", "));
     let matrix = |elements: &[f64; 16]| {
         list(

@@ -250,7 +250,7 @@ impl Source {
                 continue;
             };
             if line.iter().all(|&c| is_blank(c) || matches!(c, '.' | '…')) {
-                let end = seen.last().map_or(start, |(end, _)| end) + 1;
+                let end = seen.next_back().map_or(start, |(end, _)| end) + 1;
                 return Err(Error::new("elided-print", ELIDED).at_text(
                     k + 1,
                     start + 1,

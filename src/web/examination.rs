@@ -9,7 +9,7 @@ use crate::coherency::{PassivityVerdict, Verdict};
 use crate::convention::Convention;
 use crate::decompose::{Differential, MixedComponent, PolarFactors, PureComponent};
 use crate::examine::Examination;
-use crate::figures::{Figure, FigureName, FigureTable, Unit};
+use crate::figures::{Figure, FigureName, FigureTable, Method, Unit};
 use crate::mueller::{Jones, Mueller};
 use crate::noise::Measurement;
 
@@ -155,7 +155,7 @@ impl ExaminationTwin {
             realizability: realizability(found),
             nearest: writer.nearest(found, measurement),
             figures: writer.figures(&found.figures),
-            decompositions: writer.decompositions(found),
+            decompositions: writer.decompositions(found, measurement),
         }
     }
 }
@@ -170,7 +170,7 @@ fn realizability(found: &Examination) -> RealizabilityTwin {
             Verdict::NotRealizable => "notRealizable",
         },
         eigenvalues: r.eigenvalues,
-        eigenvalue_se: r.eigenvalue_se.map(|se| [se; 4]),
+        eigenvalue_se: r.eigenvalue_se,
         violation: r.violation,
         statistic: r.significance.map(|test| test.statistic),
         p_value: r.significance.map(|test| test.p_value),
@@ -230,15 +230,20 @@ impl Writer<'_> {
             mueller: nearest.map(|nearest| self.mueller(&nearest.mueller)),
             change,
             change_in_sigma: change
-                .zip(measurement.sigma())
-                .map(|(change, sigma)| change.map(|by: f64| by / sigma)),
+                .zip(measurement.element_sigma())
+                .map(|(change, sigma)| {
+                    std::array::from_fn(|k| {
+                        if sigma[k] > 0.0 {
+                            change[k] / sigma[k]
+                        } else {
+                            0.0
+                        }
+                    })
+                }),
             reason: if nearest.is_none() {
                 found.realizability.reason
             } else {
-                measurement
-                    .sigma()
-                    .is_none()
-                    .then_some("no noise was stated")
+                (!measurement.has_noise()).then_some("no noise was stated")
             },
         }
     }
@@ -253,37 +258,54 @@ impl Writer<'_> {
     }
 
     fn figure(&self, unit: Unit, figure: &Figure) -> FigureTwin {
-        let value = figure.value.map(|value| match unit {
+        let convert = |value: f64| match unit {
             Unit::One | Unit::Transmittance => value,
             Unit::Angle => value.to_degrees(),
             Unit::CircularSign => self.0.circular(value),
             Unit::Ellipticity => self.0.circular(value).to_degrees(),
             Unit::Azimuth => self.0.azimuth(value).to_degrees(),
             Unit::Rotation => self.0.rotation(value).to_degrees(),
-        });
-        let (factor, unit) = match unit {
+        };
+        let (factor, name) = match unit {
             Unit::One | Unit::CircularSign => (1.0, "1"),
             Unit::Transmittance => (1.0, "matrix"),
             _ => (180.0 / PI, "deg"),
         };
-        let half_width = figure.half_width().map(|width| width * factor);
-        let at = |side: f64| {
-            value
-                .zip(half_width)
-                .map(|(value, width)| value + side * width)
+        // A convention may turn the figure over, and its ends with it. An azimuth is
+        // folded, so its ends are counted from the value.
+        let sense = match unit {
+            Unit::Azimuth | Unit::Rotation => self.0.rotation(1.0),
+            Unit::CircularSign | Unit::Ellipticity => self.0.circular(1.0),
+            _ => 1.0,
         };
+        let ends = figure.value.zip(figure.interval).map(|(value, interval)| {
+            let end =
+                |end: Option<f64>| end.map(|end| convert(value) + sense * factor * (end - value));
+            let (low, high) = (end(interval.low), end(interval.high));
+            if sense < 0.0 {
+                (high, low)
+            } else {
+                (low, high)
+            }
+        });
         FigureTwin {
-            value,
+            value: figure.value.map(convert),
             se: figure.se.map(|se| se * factor),
-            low: at(-1.0),
-            high: at(1.0),
-            method: value.and(half_width).map(|_| "first-order"),
-            unit,
+            low: ends.and_then(|(low, _)| low),
+            high: ends.and_then(|(_, high)| high),
+            method: figure.interval.map(|interval| match interval.method {
+                Method::FirstOrder => "first-order",
+                Method::Percentile => "percentile",
+                Method::NoncentralChiSquared => "noncentral",
+                Method::UpperLimit => "upper-limit",
+                Method::OneSided => "one-sided",
+            }),
+            unit: name,
             reason: figure.reason,
         }
     }
 
-    fn decompositions(&self, found: &Examination) -> DecompositionsTwin {
+    fn decompositions(&self, found: &Examination, measurement: &Measurement) -> DecompositionsTwin {
         let alpha = found.figures.get(FigureName::IsotropicAlpha);
         DecompositionsTwin {
             polar_forward: found
@@ -320,7 +342,11 @@ impl Writer<'_> {
                 reason: if model.jones.is_none() {
                     Some("an ideal depolarizer has no pure part")
                 } else {
-                    model.chi_square.is_none().then_some("no noise was stated")
+                    model.chi_square.is_none().then_some(if measurement.has_noise() {
+                        "the closed form takes all errors as equal, so its χ² does not judge these"
+                    } else {
+                        "no noise was stated"
+                    })
                 },
             }),
             reason: alpha.value.is_none().then_some(alpha.reason).flatten(),

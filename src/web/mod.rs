@@ -87,9 +87,9 @@ pub fn examine(
     let ExamineRequest {
         measurement,
         convention,
-        seed,
+        simulation,
     } = thrown(request)?;
-    let found = thrown(examine::examine(&measurement, seed))?;
+    let found = thrown(examine::examine_with(&measurement, simulation))?;
     to_js(&ExaminationTwin::new(&found, &measurement, &convention))
 }
 

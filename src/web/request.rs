@@ -6,6 +6,7 @@ use wasm_bindgen::JsValue;
 use super::value;
 use crate::convention::{AngleSense, Convention, PositiveS3, TimeSign, ZeroAngle};
 use crate::error::Result;
+use crate::examine::Simulation;
 use crate::json::Fields;
 use crate::mueller::Mueller;
 use crate::noise::{Measurement, Noise};
@@ -13,6 +14,9 @@ use crate::text::{
     Column, Content, DecimalMark, Delimiter, Entry, NamedMatrix, NamedTable, OutputForm,
     ReadOptions, Stacking,
 };
+
+/// Draws that take no longer than a minute.
+const MOST_DRAWS: u32 = 100_000;
 
 /// A request as a plain value; `undefined` and `null` are an empty one.
 pub fn plain(value: &JsValue) -> Result<Value> {
@@ -67,6 +71,16 @@ impl ConventionRead {
         })
     }
 
+    /// Where the element number `k` of a matrix row by row stands in the person's
+    /// sixteen.
+    fn place(&self, k: usize) -> usize {
+        if self.by_columns {
+            4 * (k % 4) + k / 4
+        } else {
+            k
+        }
+    }
+
     /// The member `mueller`, laid out as the convention says, in the canonical one.
     pub fn mueller(&self, request: &Fields) -> Result<Mueller> {
         let elements = request.required("mueller", request.numbers("mueller")?)?;
@@ -85,7 +99,7 @@ pub struct ExamineRequest {
     pub measurement: Measurement,
     pub convention: Convention,
     /// `None` where no draws were asked for.
-    pub seed: Option<u64>,
+    pub simulation: Option<Simulation>,
 }
 
 impl ExamineRequest {
@@ -101,50 +115,88 @@ impl ExamineRequest {
         ];
         let fields = Fields::of(request, "", &known)?;
         let read = ConventionRead::of(&fields)?;
-        let draws = fields.whole("draws")?.unwrap_or(2000);
+        let draws = u32::try_from(fields.whole("draws")?.unwrap_or(2000))
+            .ok()
+            .filter(|&draws| draws <= MOST_DRAWS)
+            .ok_or_else(|| {
+                fields.error(
+                    "too-large",
+                    "draws",
+                    &format!("At most {MOST_DRAWS} draws can be asked for."),
+                )
+            })?;
         let seed = fields.whole("seed")?.unwrap_or(1);
         Ok(Self {
             measurement: Measurement::new(
                 read.mueller(&fields)?,
                 fields.flag("normalised")?.unwrap_or_default(),
                 fields.flag("absolute")?.unwrap_or_default(),
-                noise(&fields)?,
+                noise(&fields, &read)?,
             )?,
             convention: read.convention,
-            seed: (draws > 0).then_some(seed),
+            simulation: (draws > 0).then_some(Simulation { seed, draws }),
         })
     }
 }
 
-fn noise(request: &Fields) -> Result<Noise> {
-    #[derive(Clone, Copy)]
-    enum Kind {
-        None,
-        Uniform,
-        Rounding,
-    }
-    let Some(fields) = request.object("noise", &["kind", "sigma", "decimals"])? else {
+/// The noise statement, its elements laid out and signed as the person's, in the
+/// canonical convention.
+fn noise(request: &Fields, read: &ConventionRead) -> Result<Noise> {
+    let known = ["kind", "sigma", "fraction", "covariance", "decimals"];
+    let Some(fields) = request.object("noise", &known)? else {
         return Ok(Noise::None);
     };
     let kinds = [
-        ("none", Kind::None),
-        ("uniform", Kind::Uniform),
-        ("rounding", Kind::Rounding),
+        ("none", ""),
+        ("uniform", "sigma"),
+        ("relative", "fraction"),
+        ("perElement", "sigma"),
+        ("covariance", "covariance"),
+        ("rounding", "decimals"),
     ];
-    Ok(
-        match fields.required("kind", fields.choice("kind", &kinds)?)? {
-            Kind::None => Noise::None,
-            Kind::Uniform => Noise::Uniform {
-                sigma: fields.required("sigma", fields.number("sigma")?)?,
-            },
-            Kind::Rounding => {
-                let decimals = fields.required("decimals", fields.whole("decimals")?)?;
-                Noise::Rounding {
-                    decimals: u32::try_from(decimals).unwrap_or(u32::MAX),
-                }
-            }
+    let kind = fields.choice("kind", &kinds.map(|(kind, part)| (kind, (kind, part))))?;
+    let (kind, part) = fields.required("kind", kind)?;
+    if let Some(other) = known
+        .iter()
+        .find(|&&name| name != "kind" && name != part && fields.get(name).is_some())
+    {
+        return Err(fields.error(
+            "unknown-field",
+            other,
+            &format!("Noise of the kind '{kind}' has no '{other}'."),
+        ));
+    }
+    Ok(match kind {
+        "none" => Noise::None,
+        "uniform" => Noise::Uniform {
+            sigma: fields.required(part, fields.number(part)?)?,
         },
-    )
+        "relative" => Noise::Relative {
+            fraction: fields.required(part, fields.number(part)?)?,
+        },
+        "perElement" => {
+            let given: [f64; 16] = fields.required(part, fields.numbers(part)?)?;
+            Noise::PerElement {
+                sigma: std::array::from_fn(|k| given[read.place(k)]),
+            }
+        }
+        "covariance" => {
+            let given: [f64; 256] = fields.required(part, fields.numbers(part)?)?;
+            let signs = read.convention.element_signs();
+            Noise::Covariance {
+                covariance: Box::new(std::array::from_fn(|k| {
+                    let (i, j) = (k / 16, k % 16);
+                    signs[i] * signs[j] * given[16 * read.place(i) + read.place(j)]
+                })),
+            }
+        }
+        _ => {
+            let decimals = fields.required(part, fields.whole(part)?)?;
+            Noise::Rounding {
+                decimals: u32::try_from(decimals).unwrap_or(u32::MAX),
+            }
+        }
+    })
 }
 
 /// A value and, perhaps, its standard error.

@@ -18,7 +18,14 @@ export interface Convention {
 /** What is known of the noise; it refers to the matrix as given. */
 export type Noise =
     | { kind: "none" }
+    /** One σ, in the unit of the matrix. */
     | { kind: "uniform"; sigma: number }
+    /** σ as a share of |M00|. */
+    | { kind: "relative"; fraction: number }
+    /** A σ for each element, laid out as the matrix; 0 for an exact one. */
+    | { kind: "perElement"; sigma: Matrix16 }
+    /** Of the elements as they are laid out, 16 × 16 row by row; rows of zeros for exact ones. */
+    | { kind: "covariance"; covariance: number[] }
     | { kind: "rounding"; decimals: number };
 
 export interface Measurement {

@@ -98,9 +98,9 @@ pub fn all_finite(found: &Examination) {
     let mut numbers = Vec::new();
     let r = &found.realizability;
     numbers.extend(r.eigenvalues.into_iter().flatten());
+    numbers.extend(r.eigenvalue_se.into_iter().flatten());
     numbers.extend(
         [
-            r.eigenvalue_se,
             r.violation,
             r.rounding_sigma,
             r.stokes_margin,
@@ -115,12 +115,17 @@ pub fn all_finite(found: &Examination) {
             .flat_map(|test| [test.statistic, test.p_value]),
     );
     numbers.extend(found.nearest.iter().flat_map(|n| n.mueller.row_major()));
-    numbers.extend(found.nearest.iter().flat_map(|n| n.eigenvalues));
+    numbers.extend(found.nearest.iter().flat_map(|n| n.eigen.values));
     for (_, figure) in found.figures.iter() {
         numbers.extend(
-            [figure.value, figure.se, figure.half_width()]
-                .into_iter()
-                .flatten(),
+            [
+                figure.value,
+                figure.se,
+                figure.interval.and_then(|interval| interval.low),
+                figure.interval.and_then(|interval| interval.high),
+            ]
+            .into_iter()
+            .flatten(),
         );
         assert!(figure.value.is_some() || figure.reason.is_some());
     }

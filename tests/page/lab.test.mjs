@@ -171,6 +171,43 @@ test("uncertainties printed with the numbers become the noise", async () => {
   await clean(watched);
 });
 
+test("each way to state the noise, what is wrong with it, and the link that carries it", async () => {
+  const watched = await browser.open("hosted", CLIPBOARD);
+  const { page } = watched;
+  await paste(page, FILM);
+  await page.locator("#noise-more summary").click();
+  await page.locator("#noise-relative").check();
+  await page.locator("#fraction").fill("0.4188482");
+  await verdict(page, "Not realizable, but within noise");
+  // The same σ for each element gives the same answer as one σ.
+  await page.locator("#noise-perElement").check();
+  await page.locator("#noise-text").fill(Array(16).fill("0.004").join(" "));
+  await verdict(page, "Not realizable, but within noise");
+  await page.locator("#noise-text").fill("0.004 0.004");
+  await says(page, "#sigma-note", /16 numbers|4 rows|found/);
+  assert.equal(await page.locator("#noise-text").getAttribute("aria-invalid"), "true");
+  // A covariance: its diagonal alone, and one that is none.
+  const covariance = Array.from({ length: 16 }, (_, i) => Array.from({ length: 16 }, (_, j) => String(i === j ? 1.6e-5 : 0)));
+  await page.locator("#noise-covariance").check();
+  await page.locator("#noise-text").fill(covariance.map((row) => row.join("\t")).join("\n"));
+  await verdict(page, "Not realizable, but within noise");
+  await says(page, "#verdict-reason", /−0\.0038\(21\) of m00/);
+  await page.locator("#copy-link").click();
+  await says(page, "#status", /Link copied/);
+  const copied = await page.evaluate(() => navigator.clipboard.readText());
+  const [first = []] = covariance;
+  first[1] = "1e-05";
+  await page.locator("#noise-text").fill(covariance.map((row) => row.join("\t")).join("\n"));
+  await says(page, "#sigma-note", /not symmetric: row 2, column 1/);
+  await verdict(page, "Not realizable as it stands; no noise is stated");
+  await clean(watched);
+  const fresh = await browser.open("hosted", { hash: /#\S+/.exec(copied)?.[0] ?? "" });
+  await verdict(fresh.page, "Not realizable, but within noise");
+  assert.equal(await fresh.page.locator("#noise-covariance").isChecked(), true);
+  await says(fresh.page, "#verdict-reason", /−0\.0038\(21\) of m00/);
+  await clean(fresh);
+});
+
 for (const form of FORMS) {
   test(`${form}: files come in by button and by drop, and a saved session opens again`, async () => {
     const watched = await browser.open(form, { acceptDownloads: true });

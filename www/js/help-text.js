@@ -85,6 +85,7 @@ export const SECTIONS = [
     title: "Figures and their uncertainty",
     pieces: [
       "Each figure opens with its definition, formula and source. Diattenuation, polarizance, depolarization index and the purities are of the measured matrix, unclipped, so noise can carry them past their limits. Retardance, axes, depolarization power and entropy come from the nearest realizable matrix, because they need one.",
+      "The noise is stated in one of five ways: by the printed digits, by one σ for all elements, by a σ in per cent of m00, by a σ for each element, or by the 16 × 16 covariance of the elements. It refers to the matrix as given. Repeats give a σ by their scatter. A normalised m00 has no error.",
       "0.1230(41) is 0.1230 with a standard uncertainty of 0.0041 (k = 1), two digits of it (Guide to the Expression of Uncertainty in Measurement, 2008). Intervals are for 95 %. Without a noise statement there is neither.",
       "Standard errors are of first order; they hold while σ is small beside the figure’s own scale. A figure that cannot be negative and lies within three of them of zero is to be read as an upper limit; where two eigenvalues lie that near to each other, no error is given. The page says so beside the figure.",
       "“Not determined” is an answer: the azimuth of a diattenuation that is zero, the axis of a retarder without retardance, the rotation beside a half-wave retarder. The reason stands beside it. A zero would be wrong there.",

@@ -180,7 +180,21 @@ export function textOf(cells) {
 export function noiseChoice(noise) {
   if (noise.kind === "none" || noise.kind === "rounding") return { kind: noise.kind, sigma: "", given: null };
   if (noise.kind === "uniform") return { kind: "uniform", sigma: fullText(noise.sigma), given: null };
+  if (noise.kind === "relative") return { kind: "relative", sigma: fullText(Number((100 * noise.fraction).toPrecision(12))), given: noise };
+  if (noise.kind === "perElement") return { kind: "perElement", sigma: tableOf(noise.sigma, 4), given: noise };
+  if (noise.kind === "covariance") return { kind: "covariance", sigma: tableOf(noise.covariance, 16), given: noise };
   return { kind: "other", sigma: "", given: noise };
+}
+
+/**
+ * Numbers as lines of text.
+ * @param {number[]} numbers
+ * @param {number} width
+ */
+export function tableOf(numbers, width) {
+  const lines = [];
+  for (let k = 0; k < numbers.length; k += width) lines.push(numbers.slice(k, k + width).map((value) => fullText(value)).join("\t"));
+  return lines.join("\n");
 }
 
 /**

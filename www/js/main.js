@@ -8,7 +8,7 @@ import { fileStem, isConfiguration, listenForFiles, saveFile, textIn } from "./f
 import { countFrom, fullText, place, readNumber } from "./format.js";
 import { Grid } from "./grid.js";
 import { listenForHelp } from "./help.js";
-import { configurationOf, fromConfiguration, textOf, withoutSeries } from "./link.js";
+import { configurationOf, fromConfiguration, noiseChoice, textOf, withoutSeries } from "./link.js";
 import { ManyPanel, manyOf, meanOf } from "./many.js";
 import { NoisePanel, noiseOf, printedNoise } from "./noise.js";
 import { PropertiesPanel } from "./panels/properties.js";
@@ -67,7 +67,13 @@ const reading = new ReadingPanel(byId("reading"), {
 });
 const many = new ManyPanel(byId("many"), { use: useMany, pick: pickOne });
 const display = new DisplayPanel(byId("display"), { view: (view) => store.setView(view), save: saveResults });
-const noise = new NoisePanel(byId("noise"), (choice, name, merge) => change(name, { noise: choice }, merge ? { merge } : {}));
+const noise = new NoisePanel(byId("noise"), {
+  change: (choice, name, merge) => change(name, { noise: choice }, merge ? { merge } : {}),
+  numbers: (text) => quick.parseMatrices(text, undefined).matrices.flatMap((matrix) => matrix.mueller),
+  numbersOfFile: async (file) => quick.parseFile(new Uint8Array(await file.arrayBuffer()), undefined).matrices.flatMap((matrix) => matrix.mueller),
+});
+/** Why the engine does not take the noise statement. @type {string | null} */
+let noiseRefused = null;
 const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
 const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell: (message) => tell(message), failed: fail, format });
 const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell: (message) => tell(message), failed: fail, format });
@@ -169,7 +175,7 @@ function take(text, name, { fresh = false, merge, options = {}, pick = 0, exampl
     if (fresh) measurement.normalised = matrix.mueller[0] === 1;
     if (fresh && matrix.label) measurement.label = matrix.label.slice(0, 80);
     if (measurement.noise.kind === "rounding" && matrix.decimals === null) measurement.noise = noMeasurement().noise;
-    if (matrix.sigma) measurement.noise = printedNoise(matrix.sigma, measurement.normalised);
+    if (matrix.sigma) measurement.noise = printedNoise(matrix.sigma);
     measurement.many = manyOf(parsed, use === "repeats" ? "ask" : use);
   } else {
     // The old matrix stays in the grid until the text can be read.
@@ -271,7 +277,7 @@ function takeParsed(parsed, name, file) {
       pick: 0,
       decimals: matrix.decimals,
       normalised,
-      noise: matrix.sigma ? printedNoise(matrix.sigma, normalised) : base.noise,
+      noise: matrix.sigma ? printedNoise(matrix.sigma) : base.noise,
       label: matrix.label?.slice(0, 80) ?? file.name,
       story: "",
       example: false,
@@ -377,9 +383,23 @@ function divide(by) {
     options: {},
     pick: 0,
     decimals: measurement.decimals === null ? null : Math.min(15, measurement.decimals + power),
-    noise: stated.kind === "uniform" ? { ...stated, sigma: shifted(stated.sigma) } : stated,
+    noise: scaledNoise(stated, shifted, by),
     many: null,
   });
+}
+
+/**
+ * @param {import("./types.js").NoiseChoice} stated
+ * @param {(text: string) => string} shifted
+ * @param {number} by
+ * @returns {import("./types.js").NoiseChoice}
+ */
+function scaledNoise(stated, shifted, by) {
+  if (stated.kind === "uniform") return { ...stated, sigma: shifted(stated.sigma) };
+  const { given } = stated;
+  if (stated.kind === "perElement" && given && "sigma" in given) return noiseChoice({ kind: "perElement", sigma: /** @type {number[]} */ (given.sigma).map((value) => value / by) });
+  if (stated.kind === "covariance" && given && "covariance" in given) return noiseChoice({ kind: "covariance", covariance: /** @type {number[]} */ (given.covariance).map((value) => value / by / by) });
+  return stated;
 }
 
 function useNearest() {
@@ -459,7 +479,7 @@ function render() {
   reading.show(measurement, outcome, filled);
   many.show(measurement.many, measurement.pick);
   display.show(view);
-  noise.show(measurement.noise, measurement.decimals, filled);
+  noise.show(measurement.noise, measurement.decimals, filled, noiseRefused);
   convention.show(measurement.convention);
   showOrigin(measurement);
   showExamples(measurement);
@@ -523,10 +543,16 @@ function firstWords(waiting) {
 function compute(request) {
   const key = JSON.stringify(request);
   if (answer?.key === key) return;
+  noiseRefused = null;
   try {
     answer = { key, request, result: quick.examine({ ...request, draws: 0 }), pending: true };
   } catch (error) {
-    fail(error);
+    const at = /** @type {{ at?: { field?: string } | null }} */ (error).at;
+    // A statement of the noise that can't be used is none; why stands beside it.
+    if (at?.field?.startsWith("noise") && request.noise.kind !== "none") {
+      compute({ ...request, noise: { kind: "none" } });
+      noiseRefused = /** @type {Error} */ (error).message;
+    } else fail(error);
     return;
   }
   ask("examine", [request], { channel: "examine" }).then(

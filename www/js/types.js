@@ -33,9 +33,10 @@
  * @property {Noise} noise
  *
  * @typedef {object} NoiseChoice what the person chose; σ is kept as typed
- * @property {"none" | "rounding" | "uniform" | "other"} kind
- * @property {string} sigma
- * @property {object | null} given a statement from a link that this version cannot use
+ * @property {"none" | "rounding" | "uniform" | "relative" | "perElement" | "covariance" | "other"} kind
+ * @property {string} sigma as typed: σ itself, σ in per cent, or the numbers of all elements
+ * @property {object | null} given the statement that was read from that or from a link
+ * @property {string} [problem] why the numbers could not be read
  * @property {string} [note] where σ came from, if not from the person
  *
  * @typedef {object} Measurement the measured matrix as the person gave it

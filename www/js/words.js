@@ -272,6 +272,7 @@ function oddsOf(pValue, simulations = null) {
 function noiseSentence({ noise }) {
   if (noise.kind === "uniform") return `Noise of σ = ${significant(noise.sigma, 3)}`;
   if (noise.kind === "rounding") return `Rounding to ${decimalsText(noise.decimals)}`;
+  if (noise.kind === "relative") return `Noise of ${significant(100 * noise.fraction, 3)} % of ${elementName(0, 0)}`;
   return "The stated noise";
 }
 

@@ -1,0 +1,53 @@
+//! The nearest realizable matrix under any covariance.
+
+use halfshade::coherency::{Coherency, nearest, weighted_nearest};
+use halfshade::mueller::Mueller;
+use halfshade::stats::{Covariance, NormalDraws};
+
+fn noisy(truth: &Mueller, sigma: f64, draws: &mut NormalDraws) -> [f64; 16] {
+    let noise = draws.draw_matrix();
+    let elements = truth.row_major();
+    std::array::from_fn(|k| elements[k] + sigma * noise[k])
+}
+
+/// Identity: under equal errors the closed form gives the same, with and without an
+/// exact M00.
+#[test]
+fn equal_errors_give_the_closed_form() {
+    let mut draws = NormalDraws::new(3);
+    let truth = halfshade::mueller::elements::linear_retarder(1.2, 0.4).unwrap();
+    for case in 0..200 {
+        let sigma = [0.001, 0.01, 0.05][case % 3];
+        let held = case % 2 == 1;
+        let mut measured = noisy(&truth, sigma, &mut draws);
+        let mut errors = [sigma; 16];
+        if held {
+            measured[0] = 1.0;
+            errors[0] = 0.0;
+        }
+        let covariance = Covariance::diagonal(&errors).unwrap();
+        let mueller = Mueller::from_row_major(&measured).unwrap();
+        let closed = nearest(&mueller, held).unwrap().unwrap();
+        let found = weighted_nearest(&measured, &covariance).unwrap().unwrap();
+        let expected = closed.mueller.row_major();
+        for (found, expected) in found.elements.iter().zip(&expected) {
+            assert!(
+                (found - expected).abs() < 1e-6 * sigma,
+                "{case}: {found} {expected}"
+            );
+        }
+        assert!(
+            (found.statistic - (closed.distance / sigma).powi(2)).abs()
+                < 1e-7 * (1.0 + found.statistic)
+        );
+        assert!(
+            found.complementarity.abs() < 1e-9 && found.gradient_residual < 1e-7,
+            "{case}: {found:?}"
+        );
+        let least = Coherency::from_mueller(&Mueller::from_row_major(&found.elements).unwrap())
+            .eigen()
+            .unwrap()
+            .values[3];
+        assert!(least > -1e-12, "{least}");
+    }
+}
