@@ -4,7 +4,7 @@
 import { readdirSync } from "node:fs";
 import { join } from "node:path";
 import { build } from "../www/build/build.mjs";
-import { ROOT, StepError, needChromium, needPython, needRust, run, runMain } from "../www/build/tools.mjs";
+import { ROOT, StepError, needChromium, needFirefox, needPython, needRust, run, runMain } from "../www/build/tools.mjs";
 
 const REQUIREMENTS = "tests/reference/requirements.txt";
 const FIXTURES = "tests/reference/fixtures.py";
@@ -85,6 +85,12 @@ async function nodeTests(folder) {
   await build();
   const files = readdirSync(join(ROOT, folder)).filter((file) => file.endsWith(".test.mjs"));
   if (files.length === 0) throw new StepError(`There is no test in ${folder}.`);
-  const chromium = folder.endsWith("page") ? await needChromium() : "";
-  await run(process.execPath, ["--test", ...files.map((file) => `${folder}/${file}`)], { HALFSHADE_CHROMIUM: chromium });
+  /** @type {Record<string, string>} */
+  const browsers = {};
+  if (folder.endsWith("page")) {
+    // Found or installed once, before the files run side by side.
+    browsers.HALFSHADE_CHROMIUM = await needChromium();
+    browsers.HALFSHADE_FIREFOX = await needFirefox();
+  }
+  await run(process.execPath, ["--test", ...files.map((file) => `${folder}/${file}`)], browsers);
 }

@@ -35,7 +35,9 @@ await runMain(async () => {
     rows = [
       ["examine, no draws", await examineQuickly(page), "ms", 1],
       ["examine, 2000 draws, in the worker", await examineFully(page), "ms", 30],
-      ["paste to painted verdict", await pasteAndWait(page), "ms", 100],
+      ["paste to painted verdict", await pasteAndWait(page, 1), "ms", 100],
+      ...(await typeAndWait(page)),
+      ["1000 matrices pasted to first verdict", await pasteAndWait(page, 1000), "ms", 200],
       ["single file to ready", median(ready), "ms", 1000],
       ["engine, gzip", wasm / 1000, "kB", 200],
     ];
@@ -45,7 +47,7 @@ await runMain(async () => {
   console.log(`\n${cpus()[0]?.model ?? "unknown processor"}; medians\n`);
   for (const [what, value, unit, goal] of rows) {
     const digits = Number(value).toPrecision(3);
-    console.log(`${String(what).padEnd(36)} ${digits.padStart(8)} ${unit}   goal < ${goal} ${unit}`);
+    console.log(`${String(what).padEnd(38)} ${digits.padStart(8)} ${unit}   goal < ${goal} ${unit}`);
   }
 });
 
@@ -88,20 +90,24 @@ async function examineFully(page) {
 
 /**
  * @param {import("playwright-core").Page} page
+ * @param {number} matrices in one paste
  * @returns {Promise<number>} milliseconds from the paste event to the frame with the verdict
  */
-async function pasteAndWait(page) {
-  const times = await page.evaluate(async (numbers) => {
+async function pasteAndWait(page, matrices) {
+  const times = await page.evaluate(async ({ numbers, matrices }) => {
     const frame = () => new Promise((resolve) => requestAnimationFrame(resolve));
     const pause = (/** @type {number} */ duration) => new Promise((resolve) => setTimeout(resolve, duration));
     const verdict = (/** @type {number} */ since) =>
       performance.getEntriesByName("halfshade-verdict").find((mark) => mark.startTime >= since);
+    /** The film, a little weaker each time. @param {number} step */
+    const text = (step) => {
+      const changed = numbers.map((value, index) => (index === 0 ? value : value * (1 - step / 20_000)).toFixed(6));
+      return [0, 4, 8, 12].map((first) => changed.slice(first, first + 4).join("\t")).join("\n");
+    };
     const single = [];
     for (let count = 0; count < 15; count += 1) {
-      const changed = numbers.map((value, index) => (index === 0 ? value : value * (1 - count / 1000)));
       const clipboard = new DataTransfer();
-      const rows = [0, 4, 8, 12].map((first) => changed.slice(first, first + 4).join("\t"));
-      clipboard.setData("text/plain", rows.join("\n"));
+      clipboard.setData("text/plain", Array.from({ length: matrices }, (_, k) => text(20 * count + k)).join("\n\n"));
       const start = performance.now();
       document.body.dispatchEvent(
         new ClipboardEvent("paste", { clipboardData: clipboard, bubbles: true, cancelable: true }),
@@ -119,8 +125,38 @@ async function pasteAndWait(page) {
       await pause(300 + 7 * count);
     }
     return single;
-  }, MUELLER);
+  }, { numbers: MUELLER, matrices });
   return median(times);
+}
+
+/**
+ * Types over the cells as a person does, each number closed by Tab, which asks for a verdict.
+ * @param {import("playwright-core").Page} page with a matrix
+ * @returns {Promise<(string | number)[][]>} milliseconds from a key to the frame that shows it
+ */
+async function typeAndWait(page) {
+  const painted = await page.evaluateHandle(() => {
+    /** @type {[string, number][]} */
+    const painted = [];
+    const note = (/** @type {KeyboardEvent} */ { key, timeStamp }) =>
+      requestAnimationFrame(() => setTimeout(() => painted.push([key, performance.now() - timeStamp])));
+    document.addEventListener("keydown", note, true);
+    return painted;
+  });
+  await page.locator("#matrix-grid td").first().focus();
+  for (const number of MUELLER) {
+    for (const key of [...String(number), "Tab"]) {
+      await page.keyboard.press(key);
+      // Not in step with the frames.
+      await page.waitForTimeout(23);
+    }
+  }
+  const times = await painted.jsonValue();
+  const of = (/** @type {boolean} */ closing) => median(times.filter(([key]) => (key === "Tab") === closing).map(([, time]) => time));
+  return [
+    ["typing in a cell to painted", of(false), "ms", 50],
+    ["Tab behind a number to painted", of(true), "ms", 50],
+  ];
 }
 
 /**

@@ -158,18 +158,35 @@ export async function needPython(requirements) {
  * @returns {Promise<string>} its path
  */
 export async function needChromium() {
-  const found = findChromium();
-  if (found) return found;
   const advice = "Install Chromium or Chrome, or set HALFSHADE_CHROMIUM to the path of one.";
+  return findChromium() ?? installed("chromium", findChromium, advice);
+}
+
+/**
+ * A Firefox: that of HALFSHADE_FIREFOX, an installed one, or a new one from apt-get.
+ * @returns {Promise<string>} its path
+ */
+export async function needFirefox() {
+  const advice = "Install Firefox (on Debian the package firefox-esr), or set HALFSHADE_FIREFOX to the path of one.";
+  return findFirefox() ?? installed("firefox-esr", findFirefox, advice);
+}
+
+/**
+ * @param {string} name of the package
+ * @param {() => string | undefined} find
+ * @param {string} advice where it can't be installed
+ * @returns {Promise<string>} the path of a browser from apt-get
+ */
+async function installed(name, find, advice) {
   if (process.getuid?.() !== 0 || !output("apt-get", ["--version"])) {
-    throw new StepError(`No Chromium was found. ${advice}`);
+    throw new StepError(`A browser is missing. ${advice}`);
   }
   const variables = { DEBIAN_FRONTEND: "noninteractive" };
   await run("apt-get", ["update"], variables);
-  await run("apt-get", ["install", "--yes", "--no-install-recommends", "chromium"], variables);
-  const installed = findChromium();
-  if (!installed) throw new StepError(`apt-get installed no Chromium. ${advice}`);
-  return installed;
+  await run("apt-get", ["install", "--yes", "--no-install-recommends", name], variables);
+  const found = find();
+  if (!found) throw new StepError(`apt-get installed no ${name}. ${advice}`);
+  return found;
 }
 
 /**
@@ -177,19 +194,39 @@ export async function needChromium() {
  * @returns {string | undefined} its path
  */
 export function findChromium() {
-  const named = process.env.HALFSHADE_CHROMIUM;
-  if (named) {
-    if (existsSync(named)) return named;
-    throw new StepError(`HALFSHADE_CHROMIUM names ${named}, which does not exist.`);
-  }
   const names = ["chromium", "chromium-browser", "google-chrome-stable", "google-chrome", "chrome", "microsoft-edge"];
-  const folders = (process.env.PATH ?? "").split(delimiter);
-  const usual = [
+  return findBrowser("HALFSHADE_CHROMIUM", names, [
     "/Applications/Google Chrome.app/Contents/MacOS/Google Chrome",
     "/Applications/Chromium.app/Contents/MacOS/Chromium",
     "C:\\Program Files\\Google\\Chrome\\Application\\chrome.exe",
     "C:\\Program Files (x86)\\Microsoft\\Edge\\Application\\msedge.exe",
-  ];
+  ]);
+}
+
+/**
+ * Looks for a Firefox, first for one with extended support.
+ * @returns {string | undefined} its path
+ */
+function findFirefox() {
+  return findBrowser("HALFSHADE_FIREFOX", ["firefox-esr", "firefox"], [
+    "/Applications/Firefox.app/Contents/MacOS/firefox",
+    "C:\\Program Files\\Mozilla Firefox\\firefox.exe",
+  ]);
+}
+
+/**
+ * @param {string} variable of the environment that may name one
+ * @param {string[]} names on the PATH
+ * @param {string[]} usual paths
+ * @returns {string | undefined} its path
+ */
+function findBrowser(variable, names, usual) {
+  const named = process.env[variable];
+  if (named) {
+    if (existsSync(named)) return named;
+    throw new StepError(`${variable} names ${named}, which does not exist.`);
+  }
+  const folders = (process.env.PATH ?? "").split(delimiter);
   const candidates = names.flatMap((name) => folders.map((folder) => join(folder, name)));
   return [...candidates, ...usual].find((path) => existsSync(path));
 }

@@ -63,22 +63,12 @@ export function rfc3339(moment, offset = -moment.getTimezoneOffset()) {
 
 /** @param {Request["noise"]} noise */
 function noiseInWords(noise) {
-  switch (noise.kind) {
-    case "none":
-      return "none stated";
-    case "uniform":
-      return `standard deviation ${fullText(noise.sigma)} of each element, in the unit of the matrix as given, independent`;
-    case "relative":
-      return `standard deviation ${fullText(noise.fraction)} of m00 for each element, independent`;
-    case "perElement":
-      return `a standard deviation for each element, in the order and unit of the matrix as given, independent: ${noise.sigma.map((sigma) => fullText(sigma)).join(", ")}`;
-    case "covariance": {
-      const deviations = Array.from({ length: 16 }, (_, k) => significant(Math.sqrt(noise.covariance[17 * k] ?? 0), 4));
-      return `a covariance of the elements, which the link and the saved file hold; standard deviations from it, in the order of the matrix as given: ${deviations.join(", ")}`;
-    }
-    case "rounding":
-      return `rounding to ${noise.decimals} decimals, standard deviation ${significant(10 ** -noise.decimals / Math.sqrt(12), 3)} of each element`;
-  }
+  if (noise.kind === "none") return "none stated";
+  if (noise.kind === "uniform") return `standard deviation ${fullText(noise.sigma)} of each element, in the unit of the matrix as given, independent`;
+  if (noise.kind === "rounding") return `rounding to ${noise.decimals} decimals, standard deviation ${significant(10 ** -noise.decimals / Math.sqrt(12), 3)} of each element`;
+  if (noise.kind === "relative") return `standard deviation ${fullText(noise.fraction)} of m00 for each element, independent`;
+  if (noise.kind === "perElement") return `standard deviations, laid out as given: ${noise.sigma.map((sigma) => fullText(sigma)).join(", ")}; independent`;
+  return `a covariance of the elements; standard deviations, laid out as given: ${Array.from({ length: 16 }, (_, k) => significant(Math.sqrt(noise.covariance[17 * k] ?? 0), 3)).join(", ")}`;
 }
 
 /**

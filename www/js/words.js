@@ -314,6 +314,20 @@ export function figureText(figure, format) {
 }
 
 /**
+ * The interval of 95 % of a figure, to the digits that it bears.
+ * @param {Figure} figure
+ * @returns {string} empty where there is none
+ */
+export function intervalText({ se, low, high }) {
+  if (low === null && high === null) return "";
+  const size = se ?? Math.abs((high ?? 0) - (low ?? 0)) / 4;
+  const digits = size > 0 ? Math.min(15, Math.max(0, 1 - Math.floor(Math.log10(size)))) : 4;
+  if (low === null) return `95 % below ${fixed(high ?? 0, digits)}`;
+  if (high === null) return `95 % above ${fixed(low, digits)}`;
+  return `95 %: ${fixed(low, digits)} … ${fixed(high, digits)}`;
+}
+
+/**
  * The separate checks of the Realizability task.
  * @param {Examination} result
  * @param {Request} request

@@ -6,7 +6,7 @@ import { exported, figuresTable } from "../exports.js";
 import { elementName, fixed, significant } from "../format.js";
 import { copyButton, matrixTable } from "../matrix-view.js";
 import { DRAWINGS, Plot } from "../plots.js";
-import { figureText, summaryOf, verdictOf } from "../words.js";
+import { figureText, summaryOf, verdictOf, intervalText } from "../words.js";
 import { definitionNodes } from "./definition.js";
 
 /**
@@ -125,7 +125,7 @@ export class PropertiesPanel {
       ? "No noise is stated, so no figure has an uncertainty."
       : pending
         ? "Uncertainties are being calculated…"
-        : "In brackets the standard uncertainty (k = 1) of the last digits, first order. ";
+        : "In brackets the standard uncertainty (k = 1) of the last digits, first order; beside it the interval of 95 %. ";
     const figures = /** @type {Record<string, Figure>} */ (result.figures);
     repaint(
       this.figures,
@@ -172,7 +172,7 @@ export class PropertiesPanel {
     const text = figureText(shown, format);
     const unit = isRetardance && view ? RETARDANCE_UNIT[view.retardanceUnit] : definition.unit;
     const value = text === null ? make("td", { class: "number mute" }, "not determined") : make("td", { class: "number" }, text, make("span", { class: "unit" }, unit));
-    return [make("tr", { class: text === null ? "undetermined" : null }, make("th", { scope: "row" }, toggle), value, make("td", { class: "mute note" }, noteOf(name, figure, above))), more];
+    return [make("tr", { class: text === null ? "undetermined" : null }, make("th", { scope: "row" }, toggle), value, make("td", { class: "mute note" }, text === null ? "" : intervalText(shown), intervalText(shown) !== "" && noteOf(name, figure, above) !== "" ? "; " : "", noteOf(name, figure, above))), more];
   }
 
   /** @param {Examination} result */
