@@ -1,11 +1,13 @@
 //! The coherency matrix H of a Mueller matrix, and what it says of
 //! realizability.
 
+mod causes;
 mod nearest;
 mod realizability;
 mod significance;
 mod weighted;
 
+pub use causes::{Candidate, Cause, likely_causes, mirror_is_visible};
 pub(crate) use nearest::nearest_to;
 pub use nearest::{Nearest, nearest};
 pub use realizability::{

@@ -1,10 +1,12 @@
 //! The scalar figures of a measured matrix, their standard errors and intervals.
 
+mod compare;
 mod errors;
 mod samples;
 mod table;
 mod values;
 
+pub use compare::{Comparison, Difference, compare};
 pub(crate) use samples::Samples;
 pub(crate) use table::figures;
 pub use table::{Figure, FigureTable, Interval, Method, figures_of};

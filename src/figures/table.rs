@@ -83,6 +83,7 @@ const NEAR_ZERO: &str = "within three standard errors of 0: read it as an upper 
 const UPPER_LIMIT: &str = "not different from 0: the upper end is a limit of 95 %";
 const NEAR_END: &str =
     "within three standard errors of half a wave: the lower end is a limit of 95 %";
+const AT_ZERO: &str = "not different from 0, where it ends: the upper end is a limit of 95 %";
 const NEAR_EIGENVALUES: &str =
     "two eigenvalues lie within three standard errors, so there is no interval";
 const WIDE_ANGLE: &str = "the noise leaves more than half of the period open";
@@ -219,6 +220,15 @@ impl Judge<'_> {
                 method: Method::OneSided,
             };
             return figure(Some(value), se, Some(interval), Some(NEAR_END));
+        }
+        // It is of the nearest realizable matrix, which stops at no depolarization.
+        if name == FigureName::DepolarizationPower && at(0.025) < tolerance::NOT_DETERMINED {
+            let interval = Interval {
+                low: None,
+                high: Some(at(0.95)),
+                method: Method::OneSided,
+            };
+            return figure(Some(value), se, Some(interval), Some(AT_ZERO));
         }
         let (low, high) = (at(0.025), at(0.975));
         if wide(high - low) {

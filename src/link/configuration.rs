@@ -10,6 +10,8 @@ pub const SCHEMA_VERSION: u32 = 1;
 const LONGEST_LABEL: usize = 80;
 const LONGEST_TEXT: usize = 200_000;
 const LARGEST_FILE: usize = 16 << 20;
+/// In a link; a file may hold more.
+const MOST_VALUES: usize = 20_000;
 const DEEPEST: usize = 8;
 const MOST_MEMBERS: usize = 100;
 
@@ -40,8 +42,9 @@ pub fn known_blocks() -> &'static [&'static str] {
 /// At the field that is wrong, with the codes of [`Fields`]; `link-newer` for a `v`
 /// of the future; `link-too-large`.
 pub fn encode(configuration: &Value) -> Result<String> {
-    let configuration = checked(configuration.clone())?;
-    seal(&configuration.to_string())
+    let content = checked(configuration.clone())?.to_string();
+    few_values(&content)?;
+    seal(&content)
 }
 
 /// Reads a fragment: every number as it was written, unknown blocks as they were.
@@ -50,6 +53,7 @@ pub fn encode(configuration: &Value) -> Result<String> {
 /// Those of [`open`] and [`encode`].
 pub fn decode(fragment: &str) -> Result<Value> {
     let content = open(fragment)?;
+    few_values(&content)?;
     let configuration = serde_json::from_str(&content).map_err(|_| {
         Error::new(
             "link-damaged",
@@ -88,6 +92,20 @@ pub fn read_file(text: &str) -> Result<Value> {
             .at_text(error.line(), error.column().max(1), 1)
         })?;
     checked(configuration)
+}
+
+/// Values take memory and time each, and a few bytes may unpack to very many.
+fn few_values(content: &str) -> Result<()> {
+    let separators = content
+        .bytes()
+        .filter(|byte| matches!(byte, b',' | b'{' | b'['));
+    if separators.count() > MOST_VALUES {
+        return Err(Error::new(
+            "link-too-large",
+            "This is more than fits into a link: more than twenty thousand values.",
+        ));
+    }
+    Ok(())
 }
 
 /// Validated, labels made safe. The values themselves stay, so that no digit moves.

@@ -249,6 +249,24 @@ impl Measurement {
         }
     }
 
+    /// The same measurement with the sign of elements changed, and their errors with them.
+    ///
+    /// # Errors
+    /// `not-finite`, which a measured matrix can't be.
+    pub(crate) fn with_signs(&self, signs: &[f64; 16]) -> Result<Self> {
+        let elements = self.mueller.row_major();
+        let mueller = Mueller::from_row_major(&std::array::from_fn(|k| signs[k] * elements[k]))?;
+        let errors = match &self.errors {
+            Errors::General(covariance) => Errors::General(Arc::new(covariance.with_signs(signs))),
+            other => other.clone(),
+        };
+        Ok(Self {
+            mueller,
+            errors,
+            ..self.clone()
+        })
+    }
+
     /// The same measurement of another matrix.
     pub(crate) fn with_mueller(&self, mueller: Mueller) -> Self {
         Self {

@@ -40,6 +40,9 @@ fn decimal_marks(
         })
 }
 
+/// Lists that can't be used beyond these are counted and not kept.
+const MOST_FAILURES: usize = 100;
+
 #[derive(Clone, Copy, PartialEq, Eq)]
 enum Kind {
     /// Holds numbers or lists.
@@ -120,6 +123,8 @@ struct Reader<'a> {
     mark: usize,
     /// Why the outermost list can't be used.
     spoilt: Option<Error>,
+    /// Lists that can't be used.
+    failures: usize,
     /// What was passed over beside the lists.
     aside: Vec<Error>,
 }
@@ -150,6 +155,7 @@ impl<'a> Reader<'a> {
             blocks: Vec::new(),
             mark: 0,
             spoilt: None,
+            failures: 0,
             aside: Vec::new(),
         }
     }
@@ -191,6 +197,7 @@ impl<'a> Reader<'a> {
         {
             assembly.refuse(error);
         }
+        assembly.surplus += self.failures.saturating_sub(MOST_FAILURES);
         for error in self.aside {
             assembly.refuse(error);
         }
@@ -467,10 +474,13 @@ impl<'a> Reader<'a> {
         }
         if let Some(error) = self.spoilt.take() {
             self.blocks.truncate(self.mark);
-            self.blocks.push(Block {
-                failed: Some(error),
-                ..Block::default()
-            });
+            self.failures += 1;
+            if self.failures <= MOST_FAILURES {
+                self.blocks.push(Block {
+                    failed: Some(error),
+                    ..Block::default()
+                });
+            }
             self.mark = self.blocks.len();
             self.block = Block::default();
             self.joins = false;

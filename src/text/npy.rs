@@ -313,7 +313,7 @@ impl Header {
     /// Distance of neighbours along each axis.
     fn strides(&self) -> Vec<usize> {
         let mut strides = vec![1; self.shape.len()];
-        let mut step = 1;
+        let mut step = 1_usize;
         for k in 0..strides.len() {
             let axis = if self.by_columns {
                 k
@@ -321,7 +321,8 @@ impl Header {
                 strides.len() - 1 - k
             };
             strides[axis] = step;
-            step *= self.shape[axis].max(1);
+            // Where the array is empty the sizes may be anything.
+            step = step.saturating_mul(self.shape[axis].max(1));
         }
         strides
     }

@@ -401,6 +401,21 @@ impl Writer<'_> {
     }
 }
 
+/// The name of a figure at the interface, its unit there, and what a difference of it
+/// is multiplied by.
+pub fn unit_of(name: FigureName, convention: &Convention) -> (&'static str, &'static str, f64) {
+    let degrees = 180.0 / PI;
+    let (unit, factor) = match name.unit() {
+        Unit::One => ("1", 1.0),
+        Unit::CircularSign => ("1", convention.circular(1.0)),
+        Unit::Transmittance => ("matrix", 1.0),
+        Unit::Angle => ("deg", degrees),
+        Unit::Azimuth | Unit::Rotation => ("deg", convention.rotation(degrees)),
+        Unit::Ellipticity => ("deg", convention.circular(degrees)),
+    };
+    (key(name), unit, factor)
+}
+
 /// The name of a figure at the interface.
 fn key(name: FigureName) -> &'static str {
     match name {

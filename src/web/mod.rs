@@ -3,6 +3,7 @@
 //! Degrees, the person's convention and camelCase names live on this side. The
 //! types that JavaScript sees stand in `types.d.ts`.
 
+mod causes;
 mod convert;
 mod drawing;
 mod examination;
@@ -13,10 +14,13 @@ use serde::Serialize;
 use wasm_bindgen::prelude::*;
 
 use crate::error::Result as EngineResult;
-use crate::{examine, link, stats, text};
+use crate::{coherency, examine, figures, link, stats, text};
+use causes::{CauseTwin, ComparisonTwin, DiagnosisTwin};
 use convert::{MatricesTwin, to_js, to_js_error};
 use examination::ExaminationTwin;
-use request::{ExamineRequest, export_request, format_request, plain, read_options};
+use request::{
+    ExamineRequest, compare_request, export_request, format_request, plain, read_options,
+};
 
 #[wasm_bindgen(typescript_custom_section)]
 const TYPES: &str = include_str!("types.d.ts");
@@ -91,6 +95,51 @@ pub fn examine(
     } = thrown(request)?;
     let found = thrown(examine::examine_with(&measurement, simulation))?;
     to_js(&ExaminationTwin::new(&found, &measurement, &convention))
+}
+
+/// Looks for what may have gone wrong with a measurement: slow questions, on demand.
+///
+/// # Errors
+/// For a request that is not understood, at its field.
+#[wasm_bindgen(unchecked_return_type = "Diagnosis")]
+pub fn diagnose(
+    #[wasm_bindgen(unchecked_param_type = "ExamineRequest")] request: &JsValue,
+) -> JsResult {
+    let request = plain(request).and_then(|request| ExamineRequest::of(&request));
+    let ExamineRequest {
+        measurement,
+        convention,
+        simulation,
+    } = thrown(request)?;
+    let seed = simulation.map_or(1, |simulation| simulation.seed);
+    let causes = thrown(coherency::likely_causes(&measurement, seed))?;
+    let exact = measurement.m00_is_exact();
+    to_js(&DiagnosisTwin {
+        explaining_sigma: thrown(coherency::explaining_sigma(
+            measurement.mueller(),
+            exact,
+            seed,
+        ))?,
+        mirror_visible: thrown(coherency::mirror_is_visible(&measurement))?,
+        causes: causes
+            .iter()
+            .map(|candidate| CauseTwin::new(candidate, &convention))
+            .collect(),
+    })
+}
+
+/// Compares two measurements, element by element and figure by figure.
+///
+/// # Errors
+/// For a request that is not understood, at its field.
+#[wasm_bindgen(unchecked_return_type = "Comparison")]
+pub fn compare(
+    #[wasm_bindgen(unchecked_param_type = "CompareRequest")] request: &JsValue,
+) -> JsResult {
+    let request = plain(request).and_then(|request| compare_request(&request));
+    let (first, second, convention) = thrown(request)?;
+    let found = thrown(figures::compare(&first, &second))?;
+    to_js(&ComparisonTwin::new(&found, &convention))
 }
 
 /// Writes a value with its standard error, two digits of it.

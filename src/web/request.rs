@@ -114,7 +114,6 @@ impl ExamineRequest {
             "seed",
         ];
         let fields = Fields::of(request, "", &known)?;
-        let read = ConventionRead::of(&fields)?;
         let draws = u32::try_from(fields.whole("draws")?.unwrap_or(2000))
             .ok()
             .filter(|&draws| draws <= MOST_DRAWS)
@@ -126,17 +125,38 @@ impl ExamineRequest {
                 )
             })?;
         let seed = fields.whole("seed")?.unwrap_or(1);
+        let (measurement, convention) = measurement_of(&fields)?;
         Ok(Self {
-            measurement: Measurement::new(
-                read.mueller(&fields)?,
-                fields.flag("normalised")?.unwrap_or_default(),
-                fields.flag("absolute")?.unwrap_or_default(),
-                noise(&fields, &read)?,
-            )?,
-            convention: read.convention,
+            measurement,
+            convention,
             simulation: (draws > 0).then_some(Simulation { seed, draws }),
         })
     }
+}
+
+/// A measured matrix in the canonical convention, and the convention that it came in.
+fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
+    let read = ConventionRead::of(fields)?;
+    let measurement = Measurement::new(
+        read.mueller(fields)?,
+        fields.flag("normalised")?.unwrap_or_default(),
+        fields.flag("absolute")?.unwrap_or_default(),
+        noise(fields, &read)?,
+    )?;
+    Ok((measurement, read.convention))
+}
+
+/// Two measurements, and the convention of the first.
+pub fn compare_request(request: &Value) -> Result<(Measurement, Measurement, Convention)> {
+    let known = ["mueller", "normalised", "absolute", "convention", "noise"];
+    let fields = Fields::of(request, "", &["first", "second"])?;
+    let one = |name| {
+        let fields = fields.required(name, fields.object(name, &known)?)?;
+        measurement_of(&fields)
+    };
+    let (first, convention) = one("first")?;
+    let (second, _) = one("second")?;
+    Ok((first, second, convention))
 }
 
 /// The noise statement, its elements laid out and signed as the person's, in the

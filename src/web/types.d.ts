@@ -177,6 +177,47 @@ export interface Examination {
     };
 }
 
+/** What may have gone wrong, the likeliest first. */
+export interface Diagnosis {
+    /** The smallest σ of equal errors that would explain the violation. */
+    explainingSigma: number | null;
+    /** False where no check could see that one side is counted the other way round, as with a polarizer. */
+    mirrorVisible: boolean;
+    causes: {
+        cause: "mirror-one-side" | "m00-too-small" | "one-element" | "row-gain" | "column-gain" | "overall-sign";
+        /** Of the violation that is left without it. */
+        pValue: number;
+        /** Slips with the same effect on the eigenvalues; which one it was, no check can tell. */
+        candidates: string[] | null;
+        /** What is missing in M00. */
+        delta: number | null;
+        /** Row and column, from 0. */
+        element: [number, number] | null;
+        /** Row or column, from 0. */
+        line: number | null;
+        /** What the row or column is to be multiplied by. */
+        factor: number | null;
+        /** The matrix without it, row by row. */
+        mueller: Matrix16;
+    }[];
+}
+
+export interface CompareRequest {
+    first: Measurement;
+    second: Measurement;
+}
+
+/** The second minus the first, in the convention of the first. */
+export interface Comparison {
+    difference: Matrix16;
+    differenceInSigma: Matrix16 | null;
+    chiSquare: number | null;
+    degreesOfFreedom: number;
+    pValue: number | null;
+    figures: { name: FigureName; value: number | null; se: number | null; unit: Figure["unit"] }[];
+    reason: string | null;
+}
+
 export interface FormatRequest {
     value: number;
     se?: number | null;

@@ -43,7 +43,8 @@ export function readNumber(text) {
  * @returns {string}
  */
 export function fullText(value, decimals = null) {
-  if (decimals !== null && decimals >= 0 && decimals <= 15 && Math.abs(value) < 1e15) {
+  // Many zeros behind a few short numbers help nobody.
+  if (decimals !== null && decimals >= 0 && decimals <= 8 && Math.abs(value) < 1e15) {
     const fixed = value.toFixed(decimals);
     if (Number(fixed) === value) return Object.is(value, -0) ? `-${fixed.replace("-", "")}` : fixed;
   }

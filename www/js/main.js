@@ -65,7 +65,7 @@ const reading = new ReadingPanel(byId("reading"), {
   divide: (by) => divide(by),
   clear: () => store.commit("clearing", { ...store.work, measurement: noMeasurement() }),
 });
-const many = new ManyPanel(byId("many"), { use: useMany, pick: pickOne });
+const many = new ManyPanel(byId("many"), { use: useMany, pick: pickOne, format });
 const display = new DisplayPanel(byId("display"), { view: (view) => store.setView(view), save: saveResults });
 const noise = new NoisePanel(byId("noise"), {
   change: (choice, name, merge) => change(name, { noise: choice }, merge ? { merge } : {}),
@@ -75,7 +75,7 @@ const noise = new NoisePanel(byId("noise"), {
 /** Why the engine does not take the noise statement. @type {string | null} */
 let noiseRefused = null;
 const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
-const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, tell: (message) => tell(message), failed: fail, format });
+const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, use: useMatrix, tell: (message) => tell(message), failed: fail, format });
 const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell: (message) => tell(message), failed: fail, format });
 
 const provenance = new ProvenancePanel(byId("provenance"), { info: () => quick.engineInfo(), link: linkNow, tell: (message) => tell(message) });
@@ -404,14 +404,22 @@ function scaledNoise(stated, shifted, by) {
 
 function useNearest() {
   const nearest = answer?.result.nearest.mueller;
-  if (!nearest) return;
+  if (nearest) useMatrix(nearest, "the step to the nearest realizable matrix");
+}
+
+/**
+ * Take a computed matrix over as the measured one.
+ * @param {number[]} mueller row by row
+ * @param {string} name
+ */
+function useMatrix(mueller, name) {
   const { order } = store.work.measurement.convention;
   /** @type {string[]} */
   const cells = Array(16).fill("");
-  nearest.forEach((value, k) => {
+  mueller.forEach((value, k) => {
     cells[place(order, Math.floor(k / 4), k % 4)] = fullText(value);
   });
-  change("the step to the nearest realizable matrix", { cells, text: textOf(cells), options: {}, pick: 0, decimals: null, many: null });
+  change(name, { cells, text: textOf(cells), options: {}, pick: 0, decimals: null, many: null });
   byId("task").focus();
 }
 
@@ -477,7 +485,7 @@ function render() {
   countFrom(view.firstIndex);
   grid.show(measurement.cells, measurement.convention.order);
   reading.show(measurement, outcome, filled);
-  many.show(measurement.many, measurement.pick);
+  many.show(measurement.many, measurement.pick, isReady ? request : null);
   display.show(view);
   noise.show(measurement.noise, measurement.decimals, filled, noiseRefused);
   convention.show(measurement.convention);

@@ -1,7 +1,10 @@
 /** Several matrices at once: what they are to each other, and the one that is shown. */
 import { choice, fold, make, repaint } from "./dom.js";
-import { fullText, significant } from "./format.js";
+import { DEFINITIONS } from "./definitions.js";
+import { quick } from "./engine.js";
+import { fixed, fullText, significant } from "./format.js";
 import { colouredCells } from "./matrix-view.js";
+import { figureText } from "./words.js";
 
 /**
  * @typedef {import("./types.js").Many} Many
@@ -11,6 +14,7 @@ import { colouredCells } from "./matrix-view.js";
  * @typedef {object} ManyActions
  * @property {(use: Use) => void} use
  * @property {(index: number) => void} pick
+ * @property {import("./types.js").FormatValue} format
  */
 
 /** More choices than this do not help in a list. */
@@ -76,8 +80,9 @@ export class ManyPanel {
   /**
    * @param {Many | null} many
    * @param {number} pick
+   * @param {import("./types.js").Request | null} request what is known of the one that is shown
    */
-  show(many, pick) {
+  show(many, pick, request) {
     this.root.hidden = !many;
     if (!many) {
       repaint(this.root);
@@ -101,7 +106,7 @@ export class ManyPanel {
       this.root,
       make("p", { class: many.use === "ask" ? "said notice-line" : "said" }, `${count.toLocaleString("en").replace(/,/g, "\u202f")} matrices${many.source ? ` from ${many.source}` : ""}: `, use, "."),
       many.use === "repeats" ? make("p", { class: "fine" }, "Shown is their mean.") : this.stepper(many, pick),
-      many.use === "pair" ? difference(many, pick) : null,
+      many.use === "pair" && request ? difference(many, pick, request, this.actions.format) : null,
     );
   }
 
@@ -142,14 +147,45 @@ export class ManyPanel {
 }
 
 /**
- * The other one of a pair minus the one that is shown.
+ * The other one of a pair minus the one that is shown, under the same noise.
  * @param {Many} many
  * @param {number} pick
+ * @param {import("./types.js").Request} request
+ * @param {import("./types.js").FormatValue} format
  */
-function difference(many, pick) {
-  const shown = many.matrices[pick] ?? [];
-  const other = many.matrices[1 - pick] ?? [];
-  const change = other.map((value, k) => value - (shown[k] ?? 0));
-  const full = Math.max(...change.map(Math.abs));
-  return fold("pair-difference", `Matrix ${2 - pick} minus matrix ${pick + 1}: at most ${significant(full)}`, colouredCells("Difference of the pair", change, { full, write: (value) => significant(value, 3) }));
+function difference(many, pick, { normalised, absolute, convention, noise, mueller }, format) {
+  const other = many.matrices[1 - pick];
+  if (!other) return null;
+  const stated = { normalised, absolute, convention, noise };
+  /** @type {import("./types.js").Comparison} */
+  let found;
+  try {
+    found = quick.compare({ first: { ...stated, mueller }, second: { ...stated, mueller: other } });
+  } catch (error) {
+    return make("p", { class: "wrong" }, error instanceof Error ? error.message : String(error));
+  }
+  const values = found.differenceInSigma ?? found.difference;
+  const largest = Math.max(...values.map(Math.abs));
+  const full = found.differenceInSigma ? Math.max(3, largest) : largest;
+  const same = found.pValue === null ? "" : found.pValue >= 0.05 ? "no difference beyond noise" : "they differ beyond noise";
+  return fold(
+    "pair-difference",
+    `Matrix ${2 - pick} minus matrix ${pick + 1}: ${same || `at most ${significant(largest)}`}`,
+    colouredCells(`Difference of the pair${found.differenceInSigma ? " in σ" : ""}`, values, { full, write: (value) => (found.differenceInSigma ? fixed(value, 1) : significant(value, 3)) }),
+    found.chiSquare !== null && found.pValue !== null
+      ? make("p", { class: "fine" }, `In σ of the difference. χ² = ${significant(found.chiSquare, 3)} for ${found.degreesOfFreedom} degrees of freedom, p = ${significant(found.pValue)}, with the same noise in both.`)
+      : make("p", { class: "fine" }, "State the noise to have the difference tested."),
+    make(
+      "table",
+      { class: "data" },
+      make("thead", null, make("tr", null, make("th", { scope: "col" }, "figure"), make("th", { scope: "col" }, "difference"))),
+      make(
+        "tbody",
+        null,
+        found.figures
+          .filter(({ value }) => value !== null)
+          .map(({ name, value, se, unit }) => make("tr", null, make("th", { scope: "row" }, DEFINITIONS[name]?.title ?? name), make("td", { class: "number" }, figureText({ value, se, low: null, high: null, method: null, unit, reason: null }, format) ?? "", unit === "deg" ? "°" : ""))),
+      ),
+    ),
+  );
 }

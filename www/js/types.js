@@ -13,6 +13,8 @@
  * @typedef {Examination["nearest"]} Nearest
  * @typedef {import("../halfshade.js").PolarDecomposition} Polar
  * @typedef {import("../halfshade.js").DifferentialDecomposition} Differential
+ * @typedef {import("../halfshade.js").Diagnosis} Diagnosis
+ * @typedef {import("../halfshade.js").Comparison} Comparison
  * @typedef {import("../halfshade.js").Reading} Reading
  * @typedef {import("../halfshade.js").MatricesRead} Parsed
  * @typedef {import("../halfshade.js").ReadOptions} ReadOptions

@@ -5,6 +5,7 @@ import { elementName, fixed, significant } from "../format.js";
 import { colouredCells, matrixTable } from "../matrix-view.js";
 import { DRAWINGS, Plot } from "../plots.js";
 import { BLIND, GLOSS, changeInWords, checksOf, eigenvalueText, verdictOf } from "../words.js";
+import { CausesPanel } from "./causes.js";
 import { definitionNodes } from "./definition.js";
 
 /**
@@ -14,6 +15,7 @@ import { definitionNodes } from "./definition.js";
  *
  * @typedef {object} PanelActions
  * @property {() => void} useNearest
+ * @property {(mueller: number[], name: string) => void} use
  * @property {(message: string) => void} tell
  * @property {(error: unknown) => void} failed
  * @property {import("../types.js").FormatValue} format
@@ -35,7 +37,8 @@ export class RealizabilityPanel {
     });
     this.head = make("div", { class: "verdict" });
     this.below = make("div", null);
-    root.append(this.head, this.plot.element, this.below);
+    this.causes = new CausesPanel(actions);
+    root.append(this.head, this.causes.element, this.plot.element, this.below);
   }
 
   /** @param {Shown} shown */
@@ -44,6 +47,7 @@ export class RealizabilityPanel {
       this.plot.show(null);
       repaint(this.head);
       repaint(this.below);
+      this.causes.element.hidden = true;
       return;
     }
     const { format, useNearest } = this.actions;
@@ -61,6 +65,7 @@ export class RealizabilityPanel {
         ? make("p", { class: "row" }, make("button", { type: "button", id: "use-nearest", class: "primary", onclick: useNearest }, "Use the nearest realizable matrix"))
         : null,
     );
+    this.causes.show(request, realizability.verdict === "beyondNoise" && !pending);
     const values = realizability.eigenvalues;
     if (values) {
       this.plot.show({ eigenvalues: values, eigenvalueSe: realizability.eigenvalueSe }, eigenvalueTable(values, realizability.eigenvalueSe, format));
