@@ -53,6 +53,12 @@ test("the block states every setting, defaults among them", () => {
     assert.ok(other.includes(part), `${part}\n${other}`);
   }
   assert.match(facts({ noise: { kind: "none" } }), /none stated/);
+  assert.match(facts({ noise: { kind: "relative", fraction: 0.0035 } }), /deviation 0\.0035 of m00/);
+  const sigma = Array.from({ length: 16 }, (_, k) => (k + 1) / 1000);
+  assert.match(facts({ noise: { kind: "perElement", sigma } }), /as given: 0\.001, 0\.002, .*0\.016/);
+  // The diagonal holds squares, and rows are sixteen long.
+  const covariance = Array.from({ length: 256 }, (_, k) => (k % 17 === 0 ? (sigma[k / 17] ?? 0) ** 2 : 0));
+  assert.match(facts({ noise: { kind: "covariance", covariance } }), /as given: 0\.001, 0\.002, .*0\.016/);
 });
 
 /** Numbers of a result that differ from those of the usual convention, by their place. @param {Partial<Convention>} convention */

@@ -66,7 +66,7 @@ function noiseInWords(noise) {
   if (noise.kind === "none") return "none stated";
   if (noise.kind === "uniform") return `standard deviation ${fullText(noise.sigma)} of each element, in the unit of the matrix as given, independent`;
   if (noise.kind === "rounding") return `rounding to ${noise.decimals} decimals, standard deviation ${significant(10 ** -noise.decimals / Math.sqrt(12), 3)} of each element`;
-  if (noise.kind === "relative") return `standard deviation ${fullText(100 * noise.fraction)} % of m00 of each element, independent`;
+  if (noise.kind === "relative") return `standard deviation ${fullText(noise.fraction)} of m00 for each element, independent`;
   if (noise.kind === "perElement") return `standard deviations, laid out as given: ${noise.sigma.map((sigma) => fullText(sigma)).join(", ")}; independent`;
   return `a covariance of the elements; standard deviations, laid out as given: ${Array.from({ length: 16 }, (_, k) => significant(Math.sqrt(noise.covariance[17 * k] ?? 0), 3)).join(", ")}`;
 }
