@@ -3,7 +3,7 @@
 use std::hint::black_box;
 
 use criterion::{Criterion, criterion_group, criterion_main};
-use halfshade::examine::examine;
+use halfshade::examine::{Simulation, examine, examine_with};
 use halfshade::mueller::Mueller;
 use halfshade::noise::{Measurement, Noise};
 
@@ -30,6 +30,13 @@ fn examining(criterion: &mut Criterion) {
     });
     criterion.bench_function("examine, simulated p and standard errors", |bench| {
         bench.iter(|| examine(black_box(&noisy), Some(1)));
+    });
+    let simulation = Some(Simulation {
+        seed: 1,
+        draws: 2000,
+    });
+    criterion.bench_function("examine, 2000 draws with all intervals", |bench| {
+        bench.iter(|| examine_with(black_box(&noisy), simulation));
     });
     criterion.bench_function(
         "examine, no noise stated: the σ that explains it",

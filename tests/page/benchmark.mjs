@@ -34,10 +34,13 @@ await runMain(async () => {
     const wasm = gzipSync(readFileSync(join(DIST, "halfshade_bg.wasm")), { level: 9 }).length;
     rows = [
       ["examine, no draws", await examineQuickly(page), "ms", 1],
-      ["examine, 2000 draws, in the worker", await examineFully(page), "ms", 30],
+      ["examine, 2000 draws, in the worker", await examineFully(page), "ms", 60],
+      ["the same under a covariance", await askOnce(page, "examine", 1), "ms", 600],
+      ["causes looked for", await askOnce(page, "diagnose", -1), "ms", 2000],
       ["paste to painted verdict", await pasteAndWait(page, 1), "ms", 100],
       ...(await typeAndWait(page)),
       ["1000 matrices pasted to first verdict", await pasteAndWait(page, 1000), "ms", 200],
+      ["all plots redrawn at ratio 2", await redraw(browser), "ms", 50],
       ["single file to ready", median(ready), "ms", 1000],
       ["engine, gzip", wasm / 1000, "kB", 200],
     ];
@@ -85,6 +88,67 @@ async function examineFully(page) {
     }
     return single;
   }, input(page, 2000));
+  return median(times);
+}
+
+/**
+ * A slow question in the worker.
+ * @param {import("playwright-core").Page} page the hosted page
+ * @param {"examine" | "diagnose"} what the first without draws for intervals, under correlated
+ *   errors of condition 1000; the second under one σ
+ * @param {1 | -1} sign of the last row: −1 is a violation beyond the noise
+ * @returns {Promise<number>} milliseconds
+ */
+async function askOnce(page, what, sign) {
+  const { request, address } = input(page, 1);
+  const mueller = request.mueller.map((value, k) => (k >= 12 ? sign * value : value));
+  // Eigenvalues σ² (1 and fifteen times 1/1000): the identity and a matrix of ones.
+  const variance = (/** @type {number} */ i, /** @type {number} */ j) => 1.6e-5 * ((i === j ? 1e-3 : 0) + 0.999 / 16);
+  const covariance = Array.from({ length: 256 }, (_, k) => variance(Math.floor(k / 16), k % 16));
+  const asked = { ...request, mueller, ...(what === "examine" ? { noise: { kind: "covariance", covariance } } : {}) };
+  const times = await page.evaluate(async ({ asked, address, what }) => {
+    const { ask } = await import(address);
+    const single = [];
+    for (let call = 0; call < 5; call += 1) {
+      const start = performance.now();
+      await ask(what, [{ ...asked, seed: call + 1 }], { channel: "benchmark" });
+      single.push(performance.now() - start);
+    }
+    return single;
+  }, { asked, address, what });
+  return median(times);
+}
+
+/**
+ * Both tasks' plots, drawn anew because the colours of the system change.
+ * @param {Awaited<ReturnType<typeof import("./browser.mjs").openBrowser>>} browser
+ * @returns {Promise<number>} milliseconds of work in one frame
+ */
+async function redraw(browser) {
+  const { page } = await browser.open("hosted", { deviceScaleFactor: 2, viewport: { width: 1360, height: 900 } });
+  await pasteAndWait(page, 1);
+  await page.locator('nav a[data-task="properties"]').click();
+  await page.waitForTimeout(300);
+  await page.evaluate(() => {
+    const store = /** @type {any} */ (window);
+    const original = window.requestAnimationFrame.bind(window);
+    store.work = [];
+    window.requestAnimationFrame = (callback) =>
+      original((time) => {
+        const start = performance.now();
+        callback(time);
+        store.work.push(performance.now() - start);
+      });
+  });
+  const times = [];
+  for (let turn = 0; turn < 12; turn += 1) {
+    await page.evaluate(() => (/** @type {any} */ (window).work.length = 0));
+    await page.emulateMedia({ colorScheme: turn % 2 ? "light" : "dark" });
+    await page.waitForTimeout(250);
+    const work = await page.evaluate(() => /** @type {number[]} */ (/** @type {any} */ (window).work));
+    times.push(work.reduce((sum, each) => sum + each, 0));
+  }
+  await page.context().close();
   return median(times);
 }
 

@@ -2,6 +2,7 @@
 import { make, repaint } from "./dom.js";
 import { quick } from "./engine.js";
 import { saveFile } from "./files.js";
+import { copyButton } from "./matrix-view.js";
 import { withTexts } from "./png.js";
 
 /**
@@ -83,8 +84,9 @@ export class Plot {
    * @param {number} given.maxWidth CSS pixels
    * @param {string} given.title
    * @param {(error: unknown) => void} given.failed
+   * @param {(message: string) => void} given.tell
    */
-  constructor({ name, drawing, maxWidth, title, failed }) {
+  constructor({ name, drawing, maxWidth, title, failed, tell }) {
     this.name = name;
     this.drawing = drawing;
     this.maxWidth = maxWidth;
@@ -102,7 +104,10 @@ export class Plot {
       SCALES.map((scale) => make("option", { value: scale, selected: scale === 3 }, `${scale}×`)),
     );
     this.table = make("div", { class: "scroll", tabindex: "0", role: "region", "aria-label": `${title}: numbers` });
-    const fold = make("details", { id: `data-${name}` }, make("summary", null, "In words and numbers"), this.words, this.table);
+    /** @type {(() => string) | null} */
+    this.tableText = null;
+    this.copy = copyButton(`copy-${name}-numbers`, `the numbers of ${title}`, () => this.tableText?.() ?? "", tell);
+    const fold = make("details", { id: `data-${name}` }, make("summary", null, "In words and numbers"), this.words, this.table, this.copy);
     this.element = make(
       "figure",
       { class: `plot plot-${name}` },
@@ -128,13 +133,16 @@ export class Plot {
 
   /**
    * @param {{ [field: string]: unknown } | null} data the engine's request but for the frame
-   * @param {...import("./dom.js").Child} table the same data as a table
+   * @param {import("./dom.js").Child} [table] the same data as a table
+   * @param {() => string} [tableText] the same in the form of copies, at full precision
    */
-  show(data, ...table) {
+  show(data, table, tableText) {
     this.data = data;
+    this.tableText = tableText ?? null;
+    this.copy.hidden = !tableText;
     this.element.hidden = data === null;
-    repaint(this.table, ...table);
-    this.table.hidden = table.length === 0;
+    repaint(this.table, table);
+    this.table.hidden = !table;
     this.request();
   }
 

@@ -45,8 +45,8 @@ export class PropertiesPanel {
     this.open = new Set();
     /** @type {Shown | null} */
     this.shown = null;
-    this.sphere = new Plot({ name: "sphere", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["sphere"]), maxWidth: 380, title: "Poincaré sphere", failed: actions.failed });
-    this.ellipses = new Plot({ name: "ellipses", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["ellipses"]), maxWidth: 900, title: "Polarization ellipses", failed: actions.failed });
+    this.sphere = new Plot({ name: "sphere", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["sphere"]), maxWidth: 380, title: "Poincaré sphere", failed: actions.failed, tell: actions.tell });
+    this.ellipses = new Plot({ name: "ellipses", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["ellipses"]), maxWidth: 900, title: "Polarization ellipses", failed: actions.failed, tell: actions.tell });
     this.head = make("div", { class: "verdict" });
     this.figures = make("div", { id: "figures" });
     this.below = make("div", null);
@@ -105,7 +105,7 @@ export class PropertiesPanel {
     this.paintFigures(result, request.noise.kind !== "none", pending);
     this.turn(view);
     this.readOut(request);
-    this.ellipses.show({ mueller: request.mueller, convention: request.convention }, this.states(request));
+    this.ellipses.show({ mueller: request.mueller, convention: request.convention }, this.states(request), () => statesAsText(request));
     repaint(this.below, this.decompositions(result));
   }
 
@@ -117,7 +117,7 @@ export class PropertiesPanel {
     this.azimuth.set(azimuthDeg);
     this.elevation.set(elevationDeg);
     const request = this.shown?.request;
-    if (request) this.sphere.show({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg }, this.states(request));
+    if (request) this.sphere.show({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg }, this.states(request), () => statesAsText(request));
   }
 
   /**
@@ -256,7 +256,7 @@ export class PropertiesPanel {
                 : null,
               isotropic.reason && !GENERAL.some((general) => general.test(isotropic.reason ?? "")) ? ` ${capital(isotropic.reason)}.` : null,
             ),
-            isotropic.mueller ? fold("isotropic-matrix", "The fitted matrix and its Jones matrix", make("div", { class: "matrices" }, matrixTable("isotropic", "Fitted matrix", isotropic.mueller, tell), isotropic.jones ? jonesTable("Jones matrix of the pure part", isotropic.jones) : null)) : null,
+            isotropic.mueller ? fold("isotropic-matrix", "The fitted matrix and its Jones matrix", make("div", { class: "matrices" }, matrixTable("isotropic", "Fitted matrix", isotropic.mueller, tell), isotropic.jones ? jonesTable("isotropic-jones", "Jones matrix of the pure part", isotropic.jones, tell) : null)) : null,
           ]
         : make("p", { class: "mute" }, reason ?? "Not determined."),
       make("h2", null, "Polar decompositions"),
@@ -271,7 +271,7 @@ export class PropertiesPanel {
               fold(
                 `spectral-${index}`,
                 `Part ${index + 1}, weight ${fixed(part.weight, 4)}`,
-                make("div", { class: "matrices" }, matrixTable(`spectral-${index}`, "Mueller matrix", part.mueller, tell), jonesTable("Jones matrix", part.jones)),
+                make("div", { class: "matrices" }, matrixTable(`spectral-${index}`, "Mueller matrix", part.mueller, tell), jonesTable(`spectral-${index}-jones`, "Jones matrix", part.jones, tell)),
               ),
             ),
           ]
@@ -326,6 +326,7 @@ export class PropertiesPanel {
           line("circular", differential.circularBirefringence, differential.circularDichroism),
         ),
       ),
+      copyButton("copy-differential", "birefringence and dichroism", () => exported({ tables: [differentialTable(differential)] }), tell),
       fold("differential-parts", "The two parts of the logarithm", make("div", { class: "matrices" }, matrixTable("differential-mean", "Mean part", mean, tell), matrixTable("differential-depolarizing", "Depolarizing part", depolarizing, tell))),
     ];
   }
@@ -431,6 +432,40 @@ export class PropertiesPanel {
 }
 
 /**
+ * The six outputs in the form of copies.
+ * @param {import("../types.js").Request} request
+ */
+function statesAsText({ mueller, convention }) {
+  const states = quick.mapStates({ mueller, convention });
+  return exported({
+    tables: [
+      {
+        name: "states",
+        columns: [
+          { name: "input", values: states.map(({ label }) => label) },
+          ...[0, 1, 2, 3].map((k) => ({ name: `S${k}`, values: states.map(({ output }) => output.stokes[k] ?? null) })),
+          { name: "degree of polarization", values: states.map(({ output }) => output.degree) },
+          { name: "azimuth", unit: "deg", values: states.map(({ output }) => output.azimuthDeg) },
+          { name: "ellipticity", unit: "deg", values: states.map(({ output }) => output.ellipticityDeg) },
+        ],
+      },
+    ],
+  });
+}
+
+/** @param {import("../types.js").Differential} differential */
+function differentialTable(differential) {
+  return {
+    name: "differential",
+    columns: [
+      { name: "property", values: ["linear, 0 and 90 deg", "linear, +45 and -45 deg", "circular"] },
+      { name: "birefringence", unit: "rad", values: [differential.linearBirefringence, differential.linearBirefringence45, differential.circularBirefringence] },
+      { name: "dichroism", values: [differential.linearDichroism, differential.linearDichroism45, differential.circularDichroism] },
+    ],
+  };
+}
+
+/**
  * A state in a sentence.
  * @param {import("../types.js").State} state
  */
@@ -478,14 +513,29 @@ function noteOf(name, figure, above) {
 }
 
 /**
+ * @param {string} id
  * @param {string} title
  * @param {[number, number][]} jones
+ * @param {(message: string) => void} tell
  */
-function jonesTable(title, jones) {
+function jonesTable(id, title, jones, tell) {
+  const text = () =>
+    exported({
+      tables: [
+        {
+          name: "jones",
+          columns: [
+            { name: "entry", values: ["xx", "xy", "yx", "yy"] },
+            { name: "real part", values: jones.map(([real]) => real) },
+            { name: "imaginary part", values: jones.map(([, imaginary]) => imaginary) },
+          ],
+        },
+      ],
+    });
   return make(
     "figure",
     { class: "matrix" },
-    make("figcaption", null, title),
+    make("figcaption", null, make("span", null, title), copyButton(`copy-${id}`, title, text, tell)),
     make("table", { class: "numbers", "aria-label": title }, make("tbody", null, [jones.slice(0, 2), jones.slice(2, 4)].map((row) => make("tr", null, row.map(([real, imaginary]) => make("td", null, complex(real, imaginary))))))),
   );
 }

@@ -1,6 +1,7 @@
 /** The Realizability task: can the matrix be physical, how sure is that, what is nearest. */
 import { METHODS } from "../definitions.js";
 import { fold, make, repaint, sentence } from "../dom.js";
+import { eigenvaluesTable, exported } from "../exports.js";
 import { elementName, fixed, significant } from "../format.js";
 import { colouredCells, matrixTable } from "../matrix-view.js";
 import { DRAWINGS, Plot } from "../plots.js";
@@ -34,6 +35,7 @@ export class RealizabilityPanel {
       maxWidth: 820,
       title: "Coherency eigenvalues",
       failed: actions.failed,
+      tell: actions.tell,
     });
     this.head = make("div", { class: "verdict" });
     this.below = make("div", null);
@@ -68,7 +70,7 @@ export class RealizabilityPanel {
     this.causes.show(request, realizability.verdict === "beyondNoise" && !pending);
     const values = realizability.eigenvalues;
     if (values) {
-      this.plot.show({ eigenvalues: values, eigenvalueSe: realizability.eigenvalueSe }, eigenvalueTable(values, realizability.eigenvalueSe, format));
+      this.plot.show({ eigenvalues: values, eigenvalueSe: realizability.eigenvalueSe }, eigenvalueTable(values, realizability.eigenvalueSe, format), () => exported({ tables: [eigenvaluesTable(result)] }));
     } else {
       this.plot.show(null);
     }
