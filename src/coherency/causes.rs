@@ -90,18 +90,23 @@ pub fn likely_causes(measurement: &Measurement, seed: u64) -> Result<Vec<Candida
     Ok(found)
 }
 
-/// Whether a mirror of one side would be seen: not by a polarizer, whose partial
-/// transpose has no negative eigenvalue beyond its error.
+/// Whether a mirror of one side would be seen, of this measurement or of its mirror image:
+/// not with a polarizer, where neither has a negative eigenvalue beyond its error.
 ///
 /// # Errors
 /// `no-convergence`.
 pub fn mirror_is_visible(measurement: &Measurement) -> Result<bool> {
-    let mirrored = measurement.with_signs(&mirror_signs())?;
-    let eigen = Coherency::from_mueller(mirrored.mueller()).eigen()?;
-    let gradient = eigenvalue_gradient(&eigen.vectors[3]);
-    let error = mirrored.standard_error(&gradient).unwrap_or_default();
-    Ok(eigen.values[3]
-        < -tolerance::STANDARD_ERRORS * error.max(tolerance::ZERO * mirrored.mueller().m00().abs()))
+    for one in [measurement, &measurement.with_signs(&mirror_signs())?] {
+        let eigen = Coherency::from_mueller(one.mueller()).eigen()?;
+        let error = one
+            .standard_error(&eigenvalue_gradient(&eigen.vectors[3]))
+            .unwrap_or_default()
+            .max(tolerance::ZERO * one.mueller().m00().abs());
+        if eigen.values[3] < -tolerance::STANDARD_ERRORS * error {
+            return Ok(true);
+        }
+    }
+    Ok(false)
 }
 
 fn mirror_signs() -> [f64; 16] {
