@@ -39,6 +39,18 @@ pub fn significance(
     sigma: f64,
     seed: u64,
 ) -> Result<Option<Significance>> {
+    equal_significance(mueller, m00_is_exact, sigma, None, seed)
+}
+
+/// The same where σ may be an estimate: then each simulated measurement has an estimate
+/// of its own, with these degrees of freedom.
+fn equal_significance(
+    mueller: &Mueller,
+    m00_is_exact: bool,
+    sigma: f64,
+    freedom: Option<f64>,
+    seed: u64,
+) -> Result<Option<Significance>> {
     let Some(test) = Test::new(mueller, m00_is_exact)? else {
         return Ok(None);
     };
@@ -52,9 +64,14 @@ pub fn significance(
     }
     let mut draws = NormalDraws::new(seed);
     let noise: Vec<_> = (0..SIMULATIONS).map(|_| draws.draw_matrix()).collect();
+    let ratios = freedom.map(|freedom| {
+        (0..SIMULATIONS)
+            .map(|_| draws.draw_sigma_ratio(freedom))
+            .collect::<Vec<_>>()
+    });
     Ok(Some(Significance {
         statistic,
-        p_value: test.p_value(sigma, &noise)?,
+        p_value: test.p_value(sigma, &noise, ratios.as_deref())?,
         simulations: SIMULATIONS,
     }))
 }
@@ -71,10 +88,11 @@ pub fn weighted_significance(
     seed: u64,
 ) -> Result<Option<Significance>> {
     if let Some(sigma) = measurement.equal_sigma() {
-        return significance(
+        return equal_significance(
             measurement.mueller(),
             measurement.m00_is_exact(),
             sigma,
+            measurement.sigma_freedom(),
             seed,
         );
     }
@@ -141,7 +159,7 @@ pub fn explaining_sigma(mueller: &Mueller, m00_is_exact: bool, seed: u64) -> Res
     // The same draws for every σ: the answer does not jitter.
     let mut draws = NormalDraws::new(seed);
     let noise: Vec<_> = (0..SIMULATIONS).map(|_| draws.draw_matrix()).collect();
-    let explains = |sigma: f64| Ok(test.p_value(sigma, &noise)? >= tolerance::SIGNIFICANCE);
+    let explains = |sigma: f64| Ok(test.p_value(sigma, &noise, None)? >= tolerance::SIGNIFICANCE);
 
     // For a pure sample the 95 % point of distance / σ is near 3.3.
     let mut high = test.distance / 3.3;
@@ -223,7 +241,8 @@ impl Test {
         )
     }
 
-    fn p_value(&self, sigma: f64, noise: &[[f64; 16]]) -> Result<f64> {
+    /// `ratios`: of the estimated σ of each simulated measurement to the true one.
+    fn p_value(&self, sigma: f64, noise: &[[f64; 16]], ratios: Option<&[f64]>) -> Result<f64> {
         // Work in units of σ: then nothing is too large or too small.
         let null = self.null_spectrum(sigma).map(|value| value / sigma);
         let sum = self.exact_m00.map(|m00| m00 / sigma);
@@ -232,14 +251,15 @@ impl Test {
             .row_major();
         let observed = self.distance / sigma;
         let mut beyond = 0_u32;
-        for draw in noise {
+        for (k, draw) in noise.iter().enumerate() {
             let mut elements: [f64; 16] = std::array::from_fn(|k| mean[k] + draw[k]);
             if let Some(sum) = sum {
                 elements[0] = sum;
             }
             let values = Coherency::from_elements(&elements).eigen()?.values;
             let simulated = distance(&values, &realizable_spectrum(&values, sum));
-            beyond += u32::from(simulated >= observed);
+            let ratio = ratios.and_then(|ratios| ratios.get(k)).unwrap_or(&1.0);
+            beyond += u32::from(simulated >= observed * ratio);
         }
         let simulations = u32::try_from(noise.len()).unwrap_or(u32::MAX);
         Ok(f64::from(1 + beyond) / f64::from(1 + simulations))

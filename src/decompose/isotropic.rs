@@ -2,7 +2,7 @@ use crate::coherency::{Coherency, jones_of};
 use crate::linalg::HermitianEigen;
 use crate::mueller::{Jones, Mueller};
 use crate::noise::Measurement;
-use crate::stats::chi_squared_tail;
+use crate::stats::{chi_squared_tail, f_tail};
 use crate::tolerance;
 
 /// A pure element with isotropic depolarization, in parallel:
@@ -20,7 +20,7 @@ pub struct Isotropic {
     pub chi_square: Option<f64>,
     /// 16 − 8, or 15 − 7 where M00 is exact.
     pub degrees_of_freedom: u32,
-    /// Of χ².
+    /// Of χ², or of F where σ is an estimate.
     pub p_value: Option<f64>,
 }
 
@@ -64,6 +64,12 @@ pub fn isotropic(measurement: &Measurement, eigen: &HermitianEigen) -> Option<Is
         mueller,
         chi_square,
         degrees_of_freedom,
-        p_value: chi_square.and_then(|value| chi_squared_tail(value, degrees_of_freedom)),
+        p_value: chi_square.and_then(|value| match measurement.sigma_freedom() {
+            Some(freedom) => {
+                let numerator = f64::from(degrees_of_freedom);
+                f_tail(value / numerator, numerator, freedom)
+            }
+            None => chi_squared_tail(value, degrees_of_freedom),
+        }),
     })
 }

@@ -32,6 +32,12 @@ pub enum Noise {
         /// 16×16 numbers, row by row.
         covariance: Box<[f64; 256]>,
     },
+    /// The matrix is the mean of measurements of the same sample, whose scatter, pooled
+    /// over the elements, is the noise: see [`Measurement::of_replicates`].
+    Replicates {
+        /// At least two.
+        matrices: Vec<Mueller>,
+    },
     /// The numbers were rounded to so many decimals, and nothing else.
     Rounding {
         /// At most [`Noise::MOST_DECIMALS`].
@@ -51,6 +57,8 @@ enum Errors {
     Unknown,
     /// Independent, of this σ, but for an exact M00.
     Equal(f64),
+    /// The same, but σ is an estimate with so many degrees of freedom.
+    Pooled(f64, f64),
     /// Anything else.
     General(Arc<Covariance>),
 }
@@ -101,6 +109,7 @@ impl Measurement {
                     covariance
                 })?
             }
+            Noise::Replicates { matrices } => pooled(matrices, &mueller, m00_is_exact)?,
             &Noise::Rounding { decimals } if decimals <= Noise::MOST_DECIMALS => {
                 Errors::Equal(rounding_sigma(decimals))
             }
@@ -122,6 +131,26 @@ impl Measurement {
             noise,
             errors,
         })
+    }
+
+    /// The mean of measurements of the same sample.
+    ///
+    /// Their standard deviation is pooled over the elements that are not exact, so that
+    /// it has 16 (n − 1) degrees of freedom, or 15 (n − 1) where M00 is exact; tests
+    /// account for it being an estimate.
+    ///
+    /// # Errors
+    /// `too-few` for less than two; `bad-sigma` where they do not scatter.
+    pub fn of_replicates(
+        matrices: Vec<Mueller>,
+        m00_is_exact: bool,
+        absolute: bool,
+    ) -> Result<Self> {
+        let sum = matrices
+            .iter()
+            .fold(nalgebra::Matrix4::zeros(), |sum, one| sum + one.matrix());
+        let mean = Mueller::from_matrix(sum / matrices.len().max(1) as f64);
+        Self::new(mean, m00_is_exact, absolute, Noise::Replicates { matrices })
     }
 
     /// The matrix as given.
@@ -158,7 +187,16 @@ impl Measurement {
     #[must_use]
     pub fn equal_sigma(&self) -> Option<f64> {
         match self.errors {
-            Errors::Equal(sigma) => Some(sigma),
+            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => Some(sigma),
+            _ => None,
+        }
+    }
+
+    /// The degrees of freedom of σ, where that is an estimate.
+    #[must_use]
+    pub fn sigma_freedom(&self) -> Option<f64> {
+        match self.errors {
+            Errors::Pooled(_, freedom) => Some(freedom),
             _ => None,
         }
     }
@@ -178,7 +216,7 @@ impl Measurement {
     pub fn element_sigma(&self) -> Option<[f64; 16]> {
         match &self.errors {
             Errors::Unknown => None,
-            Errors::Equal(sigma) => Some(std::array::from_fn(|k| {
+            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => Some(std::array::from_fn(|k| {
                 if k == 0 && self.m00_is_exact {
                     0.0
                 } else {
@@ -195,7 +233,7 @@ impl Measurement {
     pub fn typical_sigma(&self) -> Option<f64> {
         match &self.errors {
             Errors::Unknown => None,
-            Errors::Equal(sigma) => Some(*sigma),
+            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => Some(*sigma),
             Errors::General(covariance) => Some(covariance.typical_sigma()),
         }
     }
@@ -206,7 +244,7 @@ impl Measurement {
     pub fn standard_error(&self, gradient: &[f64; 16]) -> Option<f64> {
         let variance = match &self.errors {
             Errors::Unknown => return None,
-            Errors::Equal(sigma) => {
+            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => {
                 let first = usize::from(self.m00_is_exact);
                 // Each term scaled by itself: squares of tiny gradients must not vanish.
                 return Some(
@@ -225,7 +263,7 @@ impl Measurement {
     pub fn covariance_of(&self, one: &[f64; 16], other: &[f64; 16]) -> Option<f64> {
         match &self.errors {
             Errors::Unknown => None,
-            Errors::Equal(sigma) => {
+            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => {
                 let first = usize::from(self.m00_is_exact);
                 let pairs = one[first..].iter().zip(&other[first..]);
                 Some(pairs.map(|(a, b)| (a * sigma) * (b * sigma)).sum())
@@ -238,8 +276,13 @@ impl Measurement {
     pub(crate) fn draw(&self, draws: &mut NormalDraws) -> [f64; 16] {
         match &self.errors {
             Errors::Unknown => [0.0; 16],
-            Errors::Equal(sigma) => {
-                let mut errors = draws.draw_matrix().map(|draw| draw * sigma);
+            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => {
+                // An estimated σ may as well be larger: then the errors follow Student's t.
+                let scale = match self.sigma_freedom() {
+                    Some(freedom) => sigma / draws.draw_sigma_ratio(freedom),
+                    None => *sigma,
+                };
+                let mut errors = draws.draw_matrix().map(|draw| draw * scale);
                 if self.m00_is_exact {
                     errors[0] = 0.0;
                 }
@@ -274,6 +317,34 @@ impl Measurement {
             ..self.clone()
         }
     }
+}
+
+/// The σ of the mean, pooled over the elements, with its degrees of freedom.
+fn pooled(matrices: &[Mueller], mean: &Mueller, m00_is_exact: bool) -> Result<Errors> {
+    let field = "noise.matrices";
+    if matrices.len() < 2 {
+        return Err(Error::new("too-few", "Repeats are at least two matrices.").at_field(field));
+    }
+    let first = usize::from(m00_is_exact);
+    let centre = mean.row_major();
+    let squares: f64 = matrices
+        .iter()
+        .flat_map(|one| {
+            let elements = one.row_major();
+            (first..16).map(move |k| (elements[k] - centre[k]).powi(2))
+        })
+        .sum();
+    let count = matrices.len() as f64;
+    let freedom = (16 - first) as f64 * (count - 1.0);
+    let sigma = (squares / freedom / count).sqrt();
+    if sigma == 0.0 {
+        return Err(Error::new(
+            "bad-sigma",
+            "The repeats are equal to the last digit, so their scatter says nothing of the noise.",
+        )
+        .at_field(field));
+    }
+    Ok(Errors::Pooled(in_range(sigma, field)?, freedom))
 }
 
 fn in_range(sigma: f64, field: &str) -> Result<f64> {

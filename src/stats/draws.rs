@@ -1,4 +1,4 @@
-use rand_distr::{Distribution, StandardNormal};
+use rand_distr::{ChiSquared, Distribution, StandardNormal};
 use rand_xoshiro::Xoshiro256PlusPlus;
 use rand_xoshiro::rand_core::SeedableRng;
 
@@ -16,6 +16,15 @@ impl NormalDraws {
     /// One number of mean 0 and variance 1.
     pub fn draw(&mut self) -> f64 {
         StandardNormal.sample(&mut self.0)
+    }
+
+    /// The ratio of an estimated σ with these degrees of freedom to the true one:
+    /// `sqrt(χ²_ν / ν)`.
+    pub fn draw_sigma_ratio(&mut self, freedom: f64) -> f64 {
+        match ChiSquared::new(freedom) {
+            Ok(distribution) => (distribution.sample(&mut self.0) / freedom).sqrt(),
+            Err(_) => 1.0,
+        }
     }
 
     /// Sixteen of them, as a matrix row by row.

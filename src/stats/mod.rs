@@ -10,7 +10,7 @@ pub use draws::NormalDraws;
 pub use noncentral::{chi_squared_95, noncentral_chi_squared, noncentrality_at};
 pub use rounding::{RoundedValue, printed_decimals, rounded, rounding_sigma};
 
-use statrs::distribution::{ChiSquared, ContinuousCDF};
+use statrs::distribution::{ChiSquared, ContinuousCDF, FisherSnedecor};
 
 /// The probability that chi-squared with `degrees_of_freedom` exceeds `value`.
 ///
@@ -18,5 +18,14 @@ use statrs::distribution::{ChiSquared, ContinuousCDF};
 #[must_use]
 pub fn chi_squared_tail(value: f64, degrees_of_freedom: u32) -> Option<f64> {
     let distribution = ChiSquared::new(f64::from(degrees_of_freedom)).ok()?;
+    Some(distribution.sf(value.max(0.0)).clamp(0.0, 1.0))
+}
+
+/// The probability that F with these degrees of freedom exceeds `value`.
+///
+/// `None` unless there are degrees of freedom.
+#[must_use]
+pub fn f_tail(value: f64, numerator: f64, denominator: f64) -> Option<f64> {
+    let distribution = FisherSnedecor::new(numerator, denominator).ok()?;
     Some(distribution.sf(value.max(0.0)).clamp(0.0, 1.0))
 }

@@ -84,7 +84,11 @@ impl ConventionRead {
     /// The member `mueller`, laid out as the convention says, in the canonical one.
     pub fn mueller(&self, request: &Fields) -> Result<Mueller> {
         let elements = request.required("mueller", request.numbers("mueller")?)?;
-        let given = Mueller::from_row_major(&elements)?;
+        self.canonical(&elements)
+    }
+
+    fn canonical(&self, elements: &[f64; 16]) -> Result<Mueller> {
+        let given = Mueller::from_row_major(elements)?;
         let rows = if self.by_columns {
             given.transpose()
         } else {
@@ -137,6 +141,14 @@ impl ExamineRequest {
 /// A measured matrix in the canonical convention, and the convention that it came in.
 fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
     let read = ConventionRead::of(fields)?;
+    if let Some(matrices) = replicates(fields, &read)? {
+        let measurement = Measurement::of_replicates(
+            matrices,
+            fields.flag("normalised")?.unwrap_or_default(),
+            fields.flag("absolute")?.unwrap_or_default(),
+        )?;
+        return Ok((measurement, read.convention));
+    }
     let measurement = Measurement::new(
         read.mueller(fields)?,
         fields.flag("normalised")?.unwrap_or_default(),
@@ -144,6 +156,45 @@ fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
         noise(fields, &read)?,
     )?;
     Ok((measurement, read.convention))
+}
+
+/// The repeats of a measurement, whose own matrix is then `null`: their mean is meant.
+fn replicates(fields: &Fields, read: &ConventionRead) -> Result<Option<Vec<Mueller>>> {
+    let kind = fields.get("noise").and_then(|noise| noise.get("kind"));
+    if kind.and_then(Value::as_str) != Some("replicates") {
+        return Ok(None);
+    }
+    if !fields.get("mueller").is_none_or(Value::is_null) {
+        return Err(fields.error(
+            "bad-request",
+            "mueller",
+            "With repeats the matrix is their mean, and 'mueller' must be null.",
+        ));
+    }
+    let noise = fields.required("noise", fields.object("noise", &["kind", "matrices"])?)?;
+    let given = noise.required("matrices", noise.get("matrices"))?;
+    let wrong = || {
+        noise.error(
+            "bad-request",
+            "matrices",
+            "'matrices' must be a list of lists of 16 numbers.",
+        )
+    };
+    let items = given.as_array().ok_or_else(wrong)?;
+    items
+        .iter()
+        .map(|item| {
+            let numbers: Vec<f64> = item
+                .as_array()
+                .into_iter()
+                .flatten()
+                .filter_map(Value::as_f64)
+                .collect();
+            let elements: [f64; 16] = numbers.try_into().map_err(|_| wrong())?;
+            read.canonical(&elements)
+        })
+        .collect::<Result<_>>()
+        .map(Some)
 }
 
 /// Two measurements, and the convention of the first.

@@ -26,10 +26,13 @@ export type Noise =
     | { kind: "perElement"; sigma: Matrix16 }
     /** Of the elements as they are laid out, 16 × 16 row by row; rows of zeros for exact ones. */
     | { kind: "covariance"; covariance: number[] }
+    /** The scatter of repeats, pooled over the elements; `mueller` is then null, and their mean is meant. */
+    | { kind: "replicates"; matrices: Matrix16[] }
     | { kind: "rounding"; decimals: number };
 
 export interface Measurement {
-    mueller: Matrix16;
+    /** Null with repeats. */
+    mueller: Matrix16 | null;
     /** M00 has no error: the matrix was divided by it. */
     normalised?: boolean;
     /** M00 is a transmittance or reflectance. */

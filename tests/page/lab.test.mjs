@@ -146,7 +146,8 @@ test("several matrices: a series is walked through, repeats give mean and σ, a 
   // Derived: 15 elements scatter by ±0.001 about the mean of two, so the variance of one is
   // 2·15·0.001²/16 and σ of the mean its root over √2.
   const sigma = Math.sqrt((30 * 1e-6) / 16 / 2);
-  assert.ok(Math.abs(Number(await page.locator("#sigma").inputValue()) - sigma) < 1e-5);
+  await says(page, "#sigma-note", new RegExp(`scatter of 2 repeats.*σ = ${sigma.toPrecision(3)} of the mean`));
+  await verdict(page, /./);
   // All of it comes back by a link.
   await page.locator("#copy-link").click();
   await says(page, "#status", /Link copied/);

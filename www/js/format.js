@@ -139,3 +139,14 @@ export function elementName(row, column) {
 export function place(order, row, column) {
   return order === "columns" ? 4 * column + row : 4 * row + column;
 }
+
+/**
+ * Numbers as lines of text.
+ * @param {number[]} numbers
+ * @param {number} width
+ */
+export function tableOf(numbers, width) {
+  const lines = [];
+  for (let k = 0; k < numbers.length; k += width) lines.push(numbers.slice(k, k + width).map((value) => fullText(value)).join("\t"));
+  return lines.join("\n");
+}

@@ -1,5 +1,7 @@
 /** Work and view as the configuration that a link holds, and back. Pure. */
-import { fullText } from "./format.js";
+import { fullText, tableOf } from "./format.js";
+import { meanOf } from "./mean.js";
+import { repeatsNoise } from "./noise.js";
 import { noMeasurement, usualConvention } from "./state.js";
 
 /**
@@ -37,13 +39,13 @@ export function configurationOf(work, view, request, textHolds, app) {
     task: view.task,
     ...(measurement.label ? { label: measurement.label } : {}),
     measurement: {
-      mueller: request.mueller,
+      mueller: request.noise.kind === "replicates" ? null : request.mueller,
       ...measured,
       ...(textHolds && measurement.text ? { text: measurement.text } : {}),
       ...(measurement.example ? { example: true } : {}),
     },
     ...(second ? { compareWith: { mueller: second, ...measured } } : {}),
-    ...(many ? { series: seriesOf(many, textHolds) } : {}),
+    ...(many && request.noise.kind !== "replicates" ? { series: seriesOf(many, textHolds) } : {}),
     ...(many?.source ? { dataFile: { name: many.source, sha256: many.sha256 } } : {}),
     examine: work.examine,
     view: {
@@ -120,10 +122,12 @@ export function fromConfiguration(configuration, before, parse) {
  */
 function measurementOf(configuration, parse) {
   const given = configuration.measurement;
-  if (!given || !Array.isArray(given.mueller)) return noMeasurement();
-  /** @type {number[]} */
-  const mueller = given.mueller;
+  if (!given) return noMeasurement();
   const noise = given.noise ?? { kind: "none" };
+  const repeats = noise.kind === "replicates" ? meanOf(noise.matrices, given.normalised ?? false) : null;
+  if (!repeats && !Array.isArray(given.mueller)) return noMeasurement();
+  /** @type {number[]} */
+  const mueller = repeats?.mean ?? given.mueller;
   const read = readAgain(given.text ?? "", mueller, parse);
   const decimals = noise.kind === "rounding" ? noise.decimals : (read?.decimals ?? null);
   const cells = mueller.map((value) => fullText(value, decimals));
@@ -137,7 +141,7 @@ function measurementOf(configuration, parse) {
     normalised: given.normalised ?? false,
     absolute: given.absolute ?? false,
     convention: { ...usualConvention(), ...given.convention },
-    noise: noiseChoice(noise),
+    noise: repeats ? repeatsNoise(noise.matrices, repeats.sigma) : noiseChoice(noise),
     example: given.example ?? false,
     label: configuration.label ?? "",
     many: manyOf(configuration, read?.matrices ?? []),
@@ -151,6 +155,11 @@ function measurementOf(configuration, parse) {
  * @returns {import("./types.js").Many | null}
  */
 function manyOf({ series, compareWith, measurement, dataFile }, read) {
+  if (measurement.noise?.kind === "replicates") {
+    const { matrices } = measurement.noise;
+    const nothing = matrices.map(() => null);
+    return { use: "repeats", matrices, labels: nothing, coordinates: nothing, source: dataFile?.name ?? "", sha256: dataFile?.sha256 ?? "" };
+  }
   const matrices = series?.matrices ?? (compareWith && read.length !== 2 ? [measurement.mueller, compareWith.mueller] : read.map((matrix) => matrix.mueller));
   if (matrices.length < 2) return null;
   const inText = !series?.matrices;
@@ -184,17 +193,6 @@ export function noiseChoice(noise) {
   if (noise.kind === "perElement") return { kind: "perElement", sigma: tableOf(noise.sigma, 4), given: noise };
   if (noise.kind === "covariance") return { kind: "covariance", sigma: tableOf(noise.covariance, 16), given: noise };
   return { kind: "other", sigma: "", given: noise };
-}
-
-/**
- * Numbers as lines of text.
- * @param {number[]} numbers
- * @param {number} width
- */
-export function tableOf(numbers, width) {
-  const lines = [];
-  for (let k = 0; k < numbers.length; k += width) lines.push(numbers.slice(k, k + width).map((value) => fullText(value)).join("\t"));
-  return lines.join("\n");
 }
 
 /**

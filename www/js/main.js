@@ -9,8 +9,9 @@ import { countFrom, fullText, place, readNumber } from "./format.js";
 import { Grid } from "./grid.js";
 import { listenForHelp } from "./help.js";
 import { configurationOf, fromConfiguration, noiseChoice, textOf, withoutSeries } from "./link.js";
-import { ManyPanel, manyOf, meanOf } from "./many.js";
-import { NoisePanel, noiseOf, printedNoise } from "./noise.js";
+import { ManyPanel, manyOf } from "./many.js";
+import { meanOf } from "./mean.js";
+import { NoisePanel, forEngine, noiseOf, printedNoise, repeatsNoise } from "./noise.js";
 import { PropertiesPanel } from "./panels/properties.js";
 import { RealizabilityPanel } from "./panels/realizability.js";
 import { linkIn, listen, writeClipboard } from "./paste.js";
@@ -36,6 +37,8 @@ const LONG_LINK = 2000;
 const LONGEST_LINK = 8000;
 /** A longer text is read in the worker, and not kept as a text. */
 const LONG_TEXT = 200_000;
+/** Time to read a message. */
+const MESSAGE_MS = 4000;
 
 const store = new Store(render);
 /** The last examination and what it answers. @type {{ key: string, request: Request, result: Examination, pending: boolean } | null} */
@@ -45,6 +48,8 @@ let lastReading = { text: "", options: "", outcome: { parsed: null, error: null 
 /** @type {Example[]} */
 let examples = [];
 let said = "";
+/** The last words that were no verdict. */
+let message = { text: "", at: -Infinity };
 let saidVerdict = "";
 let isReady = false;
 
@@ -314,13 +319,12 @@ function useMany(use) {
   if (use === "repeats") {
     const { mean, sigma } = meanOf(many.matrices, measurement.normalised);
     const cells = mean.map((value) => fullText(value));
-    const note = `The scatter of ${many.matrices.length} repeats about their mean, pooled over the elements, over √${many.matrices.length}.`;
-    /** @type {import("./types.js").NoiseChoice} */
-    const noise = sigma > 0 ? { kind: "uniform", sigma: fullText(Number(sigma.toPrecision(3))), given: null, note } : { kind: "none", sigma: "", given: null };
+    const noise = sigma > 0 ? repeatsNoise(many.matrices, sigma) : noMeasurement().noise;
     change(name, { many: { ...many, use }, cells, text: textOf(cells), options: {}, pick: 0, decimals: null, noise });
   } else if (many.use === "repeats") {
     const cells = (many.matrices[0] ?? []).map((value) => fullText(value));
-    change(name, { many: { ...many, use }, cells, text: textOf(cells), options: {}, pick: 0, decimals: null });
+    const noise = measurement.noise.kind === "replicates" ? noMeasurement().noise : measurement.noise;
+    change(name, { many: { ...many, use }, cells, text: textOf(cells), options: {}, pick: 0, decimals: null, noise });
   } else {
     change(name, { many: { ...many, use } });
   }
@@ -337,7 +341,10 @@ function takeExample(example) {
  * @param {{ merge?: string }} [how]
  */
 function change(name, part, how = {}) {
-  store.commit(name, { ...store.work, measurement: { ...store.work.measurement, ...part } }, how);
+  const measurement = { ...store.work.measurement, ...part };
+  // Repeats speak of their own mean: with other numbers, their scatter is no statement.
+  if (measurement.noise.kind === "replicates" && measurement.many?.use !== "repeats") measurement.noise = noMeasurement().noise;
+  store.commit(name, { ...store.work, measurement }, how);
 }
 
 /**
@@ -527,10 +534,12 @@ function showTask(stale) {
   if (answer && !stale) {
     const { title } = verdictOf(answer.result, answer.request, answer.pending, format);
     document.title = `${title} · Halfshade`;
-    // A verdict is said once: a later message must not be lost behind it.
+    // A verdict is said once, and behind a message that nobody had the time to read.
     if (!answer.pending && title !== saidVerdict) {
       saidVerdict = title;
-      tell(title, true);
+      const { text, at } = message;
+      tell(performance.now() - at < MESSAGE_MS ? `${text} ${title}.` : title, performance.now() - at >= MESSAGE_MS);
+      message = { text, at };
     }
     requestAnimationFrame(() => performance.mark("halfshade-verdict"));
   } else {
@@ -559,7 +568,7 @@ function compute(request) {
   if (answer?.key === key) return;
   noiseRefused = null;
   try {
-    answer = { key, request, result: quick.examine({ ...request, draws: 0 }), pending: true };
+    answer = { key, request, result: quick.examine({ ...forEngine(request), draws: 0 }), pending: true };
   } catch (error) {
     const at = /** @type {{ at?: { field?: string } | null }} */ (error).at;
     // A statement of the noise that can't be used is none; why stands beside it.
@@ -569,7 +578,7 @@ function compute(request) {
     } else fail(error);
     return;
   }
-  ask("examine", [request], { channel: "examine" }).then(
+  ask("examine", [forEngine(request)], { channel: "examine" }).then(
     (result) => {
       if (answer?.key !== key) return;
       answer = { key, request, result, pending: false };
@@ -809,14 +818,15 @@ function hideProblem() {
 
 /**
  * Say something without taking the keyboard.
- * @param {string} message
+ * @param {string} words
  * @param {boolean} [isShown] whether a wide page shows it anyhow
  */
-function tell(message, isShown = false) {
-  if (message === said) return;
-  said = message;
+function tell(words, isShown = false) {
+  message = { text: words, at: performance.now() };
+  if (words === said) return;
+  said = words;
   const status = byId("status");
-  status.textContent = message;
+  status.textContent = words;
   status.classList.toggle("shown-below", isShown);
 }
 

@@ -1,7 +1,6 @@
 /** What is known of the noise, asked once and quietly. */
 import { make, repaint } from "./dom.js";
-import { fullText, readNumber, significant } from "./format.js";
-import { tableOf } from "./link.js";
+import { fullText, readNumber, significant, tableOf } from "./format.js";
 
 /**
  * @typedef {import("./types.js").NoiseChoice} NoiseChoice
@@ -32,10 +31,31 @@ export function noiseOf(choice, decimals) {
     }
     case "perElement":
     case "covariance":
+    case "replicates":
       return { noise: choice.given ? /** @type {Noise} */ (choice.given) : none, error: null };
     default:
       return { noise: none, error: null };
   }
+}
+
+/**
+ * Repeats as a noise statement.
+ * @param {number[][]} matrices
+ * @param {number} sigma of their mean
+ * @returns {NoiseChoice}
+ */
+export function repeatsNoise(matrices, sigma) {
+  const note = `From the scatter of ${matrices.length} repeats about their mean, pooled over the elements: σ = ${significant(sigma, 3)} of the mean. Tests and intervals account for its being an estimate.`;
+  return { kind: "replicates", sigma: "", given: { kind: "replicates", matrices }, note };
+}
+
+/**
+ * A request as the engine takes it: with repeats, which have their own mean, without a matrix.
+ * @param {import("./types.js").Request} request
+ * @returns {import("../halfshade.js").ExamineRequest}
+ */
+export function forEngine(request) {
+  return request.noise.kind === "replicates" ? { ...request, mueller: null } : request;
 }
 
 /**

@@ -68,6 +68,7 @@ function noiseInWords(noise) {
   if (noise.kind === "rounding") return `rounding to ${noise.decimals} decimals, standard deviation ${significant(10 ** -noise.decimals / Math.sqrt(12), 3)} of each element`;
   if (noise.kind === "relative") return `standard deviation ${fullText(noise.fraction)} of m00 for each element, independent`;
   if (noise.kind === "perElement") return `standard deviations, laid out as given: ${noise.sigma.map((sigma) => fullText(sigma)).join(", ")}; independent`;
+  if (noise.kind === "replicates") return `the scatter of ${noise.matrices.length} repeats about their mean, pooled over the elements`;
   return `a covariance of the elements; standard deviations, laid out as given: ${Array.from({ length: 16 }, (_, k) => significant(Math.sqrt(noise.covariance[17 * k] ?? 0), 3)).join(", ")}`;
 }
 

@@ -6,7 +6,7 @@
  *
  * @typedef {Required<import("../halfshade.js").Convention>} Convention
  * @typedef {import("../halfshade.js").Noise} Noise
- * @typedef {Required<import("../halfshade.js").ExamineRequest> & { convention: Convention }} Request
+ * @typedef {Required<import("../halfshade.js").ExamineRequest> & { mueller: number[], convention: Convention }} Request with repeats the matrix is their mean; the engine takes that itself
  * @typedef {import("../halfshade.js").Figure} Figure
  * @typedef {import("../halfshade.js").Realizability} Realizability
  * @typedef {import("../halfshade.js").Examination} Examination
@@ -36,7 +36,7 @@
  * @property {Noise} noise
  *
  * @typedef {object} NoiseChoice what the person chose; σ is kept as typed
- * @property {"none" | "rounding" | "uniform" | "relative" | "perElement" | "covariance" | "other"} kind
+ * @property {"none" | "rounding" | "uniform" | "relative" | "perElement" | "covariance" | "replicates" | "other"} kind
  * @property {string} sigma as typed: σ itself, σ in per cent, or the numbers of all elements
  * @property {object | null} given the statement that was read from that or from a link
  * @property {string} [problem] why the numbers could not be read

@@ -273,6 +273,7 @@ function noiseSentence({ noise }) {
   if (noise.kind === "uniform") return `Noise of σ = ${significant(noise.sigma, 3)}`;
   if (noise.kind === "rounding") return `Rounding to ${decimalsText(noise.decimals)}`;
   if (noise.kind === "relative") return `Noise of ${significant(100 * noise.fraction, 3)} % of ${elementName(0, 0)}`;
+  if (noise.kind === "replicates") return `The scatter of the ${noise.matrices.length} repeats`;
   return "The stated noise";
 }
 

@@ -2,6 +2,7 @@
 import { make, repaint } from "../dom.js";
 import { ask, cancel, isDropped } from "../engine.js";
 import { elementName, significant } from "../format.js";
+import { forEngine } from "../noise.js";
 
 /**
  * @typedef {import("../types.js").Request} Request
@@ -74,7 +75,7 @@ export class CausesPanel {
     );
     document.getElementById("stop-causes")?.focus({ preventScroll: true });
     try {
-      const found = await ask("diagnose", [request], { channel: CHANNEL });
+      const found = await ask("diagnose", [forEngine(request)], { channel: CHANNEL });
       if (this.key === key) this.list(found);
     } catch (error) {
       if (!isDropped(error)) this.actions.failed(error);
