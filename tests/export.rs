@@ -97,7 +97,9 @@ fn each_form_is_that_of_its_program() {
     );
     let python = text(OutputForm::Python);
     assert!(
-        python.contains("import numpy as np\nfilm_A = np.array([[1, -0.5, 0, 1e-17],\n"),
+        python.starts_with("import numpy as np\n# Kelp")
+            && python.contains("\nfilm_A = np.array([[1.0, -0.5, 0.0, 1e-17],\n")
+            && python.contains("[2.5e-7, 1e300, -0.0, 0.1]"),
         "{python}"
     );
     assert!(
@@ -118,6 +120,59 @@ fn each_form_is_that_of_its_program() {
         serde_json::Value::Null
     );
     assert_eq!(json["title"], "Kelp, \"film\" A; = 1 2 3 4");
+}
+
+/// PEP 263, TeX's optional arguments, formulas behind a space, names that meet: each
+/// would change what the other program reads.
+#[test]
+fn nothing_is_read_as_something_else() {
+    let table = |values: Vec<Entry>| NamedTable {
+        name: "t".to_owned(),
+        columns: vec![Column {
+            name: "x".to_owned(),
+            unit: None,
+            values,
+        }],
+    };
+    let text = |words: &str| Entry::Text(words.to_owned());
+    let content = Content {
+        title: "coding: rot13".to_owned(),
+        matrices: vec![
+            NamedMatrix {
+                sigma: Some([0.5; 16]),
+                ..named("film", SIMPLE)
+            },
+            named("film sigma", SIMPLE),
+            named("None", SIMPLE),
+        ],
+        tables: vec![table(vec![text("[1pt]"), text("\t=1"), Entry::Nothing])],
+        ..Content::default()
+    };
+    let write = |form| export_text(form, &content).unwrap();
+    let python = write(OutputForm::Python);
+    assert!(
+        python.starts_with("import numpy as np\n# coding"),
+        "{python}"
+    );
+    assert!(
+        python.contains("\nfilm_sigma = ")
+            && python.contains("\nfilm_sigma_2 = ")
+            && python.contains("\nNone_2 = "),
+        "{python}"
+    );
+    assert!(write(OutputForm::Latex).contains("\n{}[1pt] \\\\\n"));
+    assert!(write(OutputForm::Csv).ends_with("x\r\n[1pt]\r\n' =1\r\n\"\"\r\n"));
+    assert!(write(OutputForm::Matlab).ends_with("{'[1pt]'; ' =1'; ''};\n"));
+    // Equal names by the thousand take no time.
+    let many = Content {
+        matrices: vec![named("a", SIMPLE); 20_000],
+        ..Content::default()
+    };
+    assert!(
+        export_text(OutputForm::Python, &many)
+            .unwrap()
+            .contains("\na_20000 = ")
+    );
 }
 
 #[test]

@@ -8,6 +8,7 @@ import { ROOT, StepError, needChromium, needFirefox, needPython, needRust, run, 
 
 const REQUIREMENTS = "tests/reference/requirements.txt";
 const FIXTURES = "tests/reference/fixtures.py";
+const WEIGHTED = "tests/reference/weighted.py";
 
 /** @type {[name: string, what: string, step: () => Promise<void>][]} */
 const STEPS = [
@@ -15,7 +16,7 @@ const STEPS = [
   ["lint", "clippy finds nothing", () => cargo("clippy", "--locked", "--all-targets", "--", "-D", "warnings")],
   ["docs", "the documentation is complete", () => cargo("doc", "--locked", "--no-deps")],
   ["rust", "the engine's tests", () => cargo("test", "--locked")],
-  ["fixtures", "the fixtures can be made again", () => python(FIXTURES, "--check")],
+  ["fixtures", "the fixtures can be made again", fixtures],
   ["published", "the published values, recomputed", () => python(FIXTURES, "--published")],
   ["build", "the page is built", build],
   ["types", "the types of the scripts", types],
@@ -70,6 +71,11 @@ async function cargo(...args) {
 /** @param {string[]} args */
 async function python(...args) {
   await run(await needPython(REQUIREMENTS), args);
+}
+
+async function fixtures() {
+  await python(FIXTURES, "--check");
+  await python(WEIGHTED, "--check");
 }
 
 async function types() {

@@ -337,7 +337,8 @@ fn pooled(matrices: &[Mueller], mean: &Mueller, m00_is_exact: bool) -> Result<Er
     let count = matrices.len() as f64;
     let freedom = (16 - first) as f64 * (count - 1.0);
     let sigma = (squares / freedom / count).sqrt();
-    if sigma == 0.0 {
+    // The mean of equal numbers may differ from them by its rounding.
+    if sigma <= tolerance::ZERO * mean.largest() {
         return Err(Error::new(
             "bad-sigma",
             "The repeats are equal to the last digit, so their scatter says nothing of the noise.",

@@ -1,6 +1,7 @@
 //! Matrices and tables as text for other programs, at full precision: the shortest
 //! decimals that read back to the same bits.
 
+use std::collections::BTreeMap;
 use std::fmt::Write;
 
 use crate::error::{Error, Result};
@@ -130,7 +131,7 @@ fn check(content: &Content) -> Result<()> {
     }
     let mut values = 0;
     for (k, matrix) in content.matrices.iter().enumerate() {
-        values += 32;
+        values += if matrix.sigma.is_some() { 32 } else { 16 };
         if matrix
             .mueller
             .iter()
@@ -195,12 +196,23 @@ fn number(value: f64) -> String {
     }
 }
 
+/// The same as a number that programs do not take for an integer: they lose the sign of
+/// zero.
+fn float(value: f64) -> String {
+    let text = number(value);
+    if text.contains(['.', 'e']) {
+        text
+    } else {
+        format!("{text}.0")
+    }
+}
+
 /// Text in one line, without control characters and those that turn the direction of
 /// writing.
 fn line(text: &str) -> String {
     text.chars()
         .map(|c| if c.is_whitespace() { ' ' } else { c })
-        .filter(|c| !c.is_control() && !matches!(c, '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}'))
+        .filter(|c| !c.is_control() && !matches!(c, '\u{61c}' | '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}'))
         .collect()
 }
 
@@ -284,7 +296,9 @@ impl Delimited {
 
     fn row(&self, out: &mut String, fields: impl Iterator<Item = String>) {
         let fields: Vec<String> = fields.collect();
-        out.push_str(&fields.join(self.between));
+        let row = fields.join(self.between);
+        // A blank line is no row.
+        out.push_str(if row.is_empty() { "\"\"" } else { &row });
         out.push_str(self.end);
     }
 
@@ -300,7 +314,7 @@ impl Delimited {
     /// A spreadsheet would calculate what begins like a formula (OWASP, CSV injection).
     fn text(&self, text: &str) -> String {
         let text = line(text);
-        let text = if text.starts_with(['=', '+', '-', '@']) {
+        let text = if text.trim_start().starts_with(['=', '+', '-', '@']) {
             format!("'{text}")
         } else {
             text
@@ -328,7 +342,7 @@ fn json(content: &Content) -> String {
         list(
             elements
                 .chunks(4)
-                .map(|row| list(row.iter().map(|&x| number(x)).collect()))
+                .map(|row| list(row.iter().map(|&x| float(x)).collect()))
                 .collect(),
         )
     };
@@ -347,7 +361,7 @@ fn json(content: &Content) -> String {
         })
         .collect();
     let entry = |entry: &Entry| match entry {
-        Entry::Number(x) => number(*x),
+        Entry::Number(x) => float(*x),
         Entry::Text(words) => text(words),
         Entry::Nothing => "null".to_owned(),
     };
@@ -411,7 +425,7 @@ fn latex(content: &Content) -> String {
         let heads: Vec<String> = table
             .columns
             .iter()
-            .map(|column| escaped(&with_unit(&column.name, column.unit.as_ref())))
+            .map(|column| cell(&with_unit(&column.name, column.unit.as_ref())))
             .collect();
         let _ = writeln!(
             out,
@@ -424,7 +438,7 @@ fn latex(content: &Content) -> String {
             let cells: Vec<String> = row(table, k)
                 .map(|entry| match entry {
                     Entry::Number(x) => format!("${}$", typeset(*x)),
-                    Entry::Text(text) => escaped(&line(text)),
+                    Entry::Text(text) => cell(&line(text)),
                     Entry::Nothing => "--".to_owned(),
                 })
                 .collect();
@@ -433,6 +447,16 @@ fn latex(content: &Content) -> String {
         out.push_str("\\end{tabular}\n");
     }
     out
+}
+
+/// At the start of a row a bracket or a star would belong to the `\\\\` before it.
+fn cell(text: &str) -> String {
+    let text = escaped(text);
+    if text.trim_start().starts_with(['[', '*']) {
+        format!("{{}}{text}")
+    } else {
+        text
+    }
 }
 
 fn typeset(value: f64) -> String {
@@ -478,10 +502,7 @@ const PYTHON: Language = Language {
             .map(|row| {
                 format!(
                     "[{}]",
-                    row.iter()
-                        .map(|&x| number(x))
-                        .collect::<Vec<_>>()
-                        .join(", ")
+                    row.iter().map(|&x| float(x)).collect::<Vec<_>>().join(", ")
                 )
             })
             .collect();
@@ -491,7 +512,7 @@ const PYTHON: Language = Language {
         let entries: Vec<String> = entries
             .iter()
             .map(|entry| match entry {
-                Entry::Number(x) => number(*x),
+                Entry::Number(x) => float(*x),
                 Entry::Text(text) => format!(
                     "'{}'",
                     line(text).replace('\\', "\\\\").replace('\'', "\\'")
@@ -502,10 +523,10 @@ const PYTHON: Language = Language {
         format!("[{}]", entries.join(", "))
     },
     reserved: &[
-        "and", "as", "assert", "async", "await", "break", "class", "continue", "def", "del",
-        "elif", "else", "except", "finally", "for", "from", "global", "if", "import", "in", "is",
-        "lambda", "nonlocal", "not", "np", "or", "pass", "raise", "return", "try", "while", "with",
-        "yield",
+        "False", "None", "True", "and", "as", "assert", "async", "await", "break", "class",
+        "continue", "def", "del", "elif", "else", "except", "finally", "for", "from", "global",
+        "if", "import", "in", "is", "lambda", "nonlocal", "not", "np", "or", "pass", "raise",
+        "return", "try", "while", "with", "yield",
     ],
 };
 
@@ -527,6 +548,7 @@ const MATLAB: Language = Language {
             .map(|entry| match entry {
                 Entry::Number(x) => number(*x),
                 Entry::Text(text) => format!("'{}'", line(text).replace('\'', "''")),
+                Entry::Nothing if is_text => "''".to_owned(),
                 Entry::Nothing => "NaN".to_owned(),
             })
             .collect();
@@ -561,14 +583,14 @@ const MATLAB: Language = Language {
 };
 
 fn program(content: &Content, language: &Language) -> String {
-    let mut out = String::new();
-    let mut taken = Vec::new();
+    // A remark in the first line of a Python file could name its encoding.
+    let mut out = language.head.to_owned();
+    let mut names = Names::default();
     for remark in remarks(content) {
         let _ = writeln!(out, "{} {remark}", language.comment);
     }
-    out.push_str(language.head);
     for matrix in &content.matrices {
-        let name = identifier(&matrix.name, language, &mut taken);
+        let name = names.free(&matrix.name, language);
         if let Some(unit) = &matrix.unit {
             let _ = writeln!(out, "{} {name} in {}", language.comment, line(unit));
         }
@@ -579,11 +601,7 @@ fn program(content: &Content, language: &Language) -> String {
     }
     for table in &content.tables {
         for column in &table.columns {
-            let name = identifier(
-                &format!("{} {}", table.name, column.name),
-                language,
-                &mut taken,
-            );
+            let name = names.free(&format!("{} {}", table.name, column.name), language);
             if let Some(unit) = &column.unit {
                 let _ = writeln!(out, "{} {name} in {}", language.comment, line(unit));
             }
@@ -593,30 +611,34 @@ fn program(content: &Content, language: &Language) -> String {
     out
 }
 
-/// Letters, digits and underscores, not taken yet and no word of the language.
-fn identifier(name: &str, language: &Language, taken: &mut Vec<String>) -> String {
-    let mut plain: String = name
-        .chars()
-        .map(|c| if c.is_ascii_alphanumeric() { c } else { '_' })
-        .take(60)
-        .collect();
-    while plain.contains("__") {
-        plain = plain.replace("__", "_");
+/// The names that a program has already, with the number that the next equal one gets.
+#[derive(Default)]
+struct Names(BTreeMap<String, usize>);
+
+impl Names {
+    /// Letters, digits and underscores, not taken yet and no word of the language; the
+    /// same with `_sigma` behind it is taken too.
+    fn free(&mut self, name: &str, language: &Language) -> String {
+        let mut plain = String::new();
+        for c in name.chars().take(60) {
+            if c.is_ascii_alphanumeric() {
+                plain.push(c);
+            } else if !plain.ends_with('_') {
+                plain.push('_');
+            }
+        }
+        let mut plain = plain.trim_matches('_').to_owned();
+        if !plain.starts_with(|c: char| c.is_ascii_alphabetic()) {
+            plain.insert_str(0, "m_");
+        }
+        let mut free = plain.clone();
+        while self.0.contains_key(&free) || language.reserved.contains(&free.as_str()) {
+            let next = self.0.entry(plain.clone()).or_insert(1);
+            *next += 1;
+            free = format!("{plain}_{next}");
+        }
+        self.0.insert(free.clone(), 1);
+        self.0.insert(format!("{free}_sigma"), 1);
+        free
     }
-    let mut plain = plain.trim_matches('_').to_owned();
-    if !plain.starts_with(|c: char| c.is_ascii_alphabetic()) {
-        plain.insert_str(0, "m_");
-    }
-    let is_free =
-        |name: &String| !taken.contains(name) && !language.reserved.contains(&name.as_str());
-    let free = if is_free(&plain) {
-        plain
-    } else {
-        (2..)
-            .map(|k| format!("{plain}_{k}"))
-            .find(is_free)
-            .unwrap_or_default()
-    };
-    taken.push(free.clone());
-    free
 }

@@ -45,7 +45,7 @@ test("exportText reads back by parseMatrices in every form", () => {
     assert.deepEqual(engine.parseMatrices(text, undefined).matrices[0]?.mueller, FILM, form);
   }
   const table = { name: "t", columns: [{ name: "x", unit: "deg", values: [1, null, "a"] }] };
-  assert.equal(engine.exportText({ form: "tsv", tables: [table] }), "# t\nx (deg)\n1\n\na\n");
+  assert.equal(engine.exportText({ form: "tsv", tables: [table] }), "# t\nx (deg)\n1\n\"\"\na\n");
   refuses(() => engine.exportText({ form: "tsv" }), "bad-request");
   refuses(() => engine.exportText(/** @type {any} */ ({ form: "paper", tables: [table] })), "unknown-choice", /form/);
   refuses(() => engine.exportText({ form: "csv", matrices: [{ name: "m", mueller: [1] }] }), "bad-request", /matrices\[0\]\.mueller/);
