@@ -83,11 +83,24 @@ impl<'a> Solver<'a> {
 
     fn solve(&self) -> Result<Option<WeightedNearest>> {
         let identity = Hermitian::identity();
-        let largest_curvature = self.curvature.diagonal().amax().max(1.0);
+        // The multipliers are as large as the pull of what must change at least.
+        let eigen = Coherency::from_elements(&self.measured.into()).eigen()?;
+        let clipped = eigen.values.map(|value| value.max(0.0));
+        let clipped = Coherency::from_spectrum(&clipped, &eigen)
+            .mueller()
+            .row_major();
+        let pull = self.curvature * (SVector::<f64, 16>::from(clipped) - self.measured);
+        let multiplier = self
+            .curvature
+            .diagonal()
+            .amax()
+            .max(1.0)
+            .sqrt()
+            .max(pull.amax());
         let mut state = State {
             elements: self.measured,
             primal: identity * Complex64::from(0.5),
-            dual: identity * Complex64::from(largest_curvature.sqrt()),
+            dual: identity * Complex64::from(multiplier),
         };
         let mut stalled = 0;
         for _ in 0..MOST_STEPS {

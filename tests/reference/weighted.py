@@ -20,7 +20,7 @@ from elements import PAULI, diagonal_depolarizer, elliptical_diattenuator, ellip
 
 FILE = Path(__file__).resolve().parent / "weighted.json"
 BASIS = np.array([np.kron(PAULI[i], PAULI[j].conj()) / 4 for i in range(4) for j in range(4)])
-LAST_MU = 1e-11
+LAST_MU = 1e-10
 
 
 def coherency(elements):
@@ -43,7 +43,8 @@ def nearest(measured, covariance, start):
         off = (at - measured)[free]
         return off @ inverse @ off - mu * np.log(values).sum()
 
-    mu = 1.0
+    off = (start - measured)[free]
+    mu = max(1.0, off @ inverse @ off)
     while True:
         for _ in range(60):
             inner = np.linalg.inv(coherency(elements))
@@ -114,7 +115,8 @@ def cases():
             if kind == 0:
                 label, covariance = "unequal", np.diag((sigma * rng.uniform(0.2, 3, 16)) ** 2)
             elif kind < 4:
-                condition = [1, 1e3, 1e6][kind - 1]
+                # A mirror is thousands of σ away already.
+                condition = 10 if name == "mirrored" else [1, 1e3, 1e6][kind - 1]
                 label, covariance = f"condition {condition:g}", random_covariance(rng, condition, sigma)
             elif kind == 4:
                 label, covariance = "analyser", analyser_covariance(rng, sigma)
