@@ -159,3 +159,58 @@ fn noncentral_chi_squared_is_what_it_says() {
         );
     }
 }
+
+/// Derived, `published.md` table of the Rice distribution: mean bias of a length of two
+/// components and of its debiased value (Wardle & Kronberg 1974), in units of σ, and the
+/// standard deviation of its angle in degrees.
+#[test]
+fn lengths_and_angles_follow_rice() {
+    const SIGMA: f64 = 1e-3;
+    for (length, bias, debiased_bias, angle) in [
+        (0.0, 1.2533, 0.76017, 51.9615),
+        (1.0, 0.5486, 0.11780, 32.0154),
+        (2.0, 0.2724, -0.02356, 17.3785),
+        (3.0, 0.1726, -0.01605, 10.3999),
+        (5.0, 0.1011, -0.00245, 5.8581),
+    ] {
+        let mut elements = Mueller::identity().row_major();
+        elements[1] = length * SIGMA;
+        let mut draws = NormalDraws::new(8);
+        let count = 700;
+        let (mut sum, mut debiased, mut squares) = (0.0, 0.0, 0.0);
+        for _ in 0..count {
+            let errors = draws.draw_matrix();
+            let measured = std::array::from_fn(|k| {
+                elements[k] + SIGMA * errors[k] * f64::from(u8::from(k == 1 || k == 2))
+            });
+            let measurement = Measurement::new(
+                Mueller::from_row_major(&measured).unwrap(),
+                true,
+                false,
+                Noise::Uniform { sigma: SIGMA },
+            )
+            .unwrap();
+            let found = figures_of(&measurement, 0, 1).unwrap();
+            let figure = found.get(FigureName::LinearDiattenuation);
+            let (value, without) = (figure.value.unwrap(), figure.debiased.unwrap());
+            sum += value / SIGMA - length;
+            debiased += without / SIGMA - length;
+            let azimuth = 0.5 * measured[2].atan2(measured[1]);
+            squares += azimuth.to_degrees().powi(2);
+        }
+        let n = f64::from(count);
+        // Four standard errors of a mean.
+        let allowed = 4.0 / n.sqrt();
+        assert!((sum / n - bias).abs() < allowed, "{length}: {}", sum / n);
+        assert!(
+            (debiased / n - debiased_bias).abs() < allowed,
+            "{length}: {}",
+            debiased / n
+        );
+        assert!(
+            ((squares / n).sqrt() / angle - 1.0).abs() < 0.11,
+            "{length}: {}",
+            (squares / n).sqrt()
+        );
+    }
+}

@@ -47,6 +47,9 @@ pub struct Figure {
     pub se: Option<f64>,
     /// `None` where there is none.
     pub interval: Option<Interval>,
+    /// A length without what noise adds to it, zero where it may be all noise (Wardle &
+    /// Kronberg 1974 for two components, the same for three); `None` for other figures.
+    pub debiased: Option<f64>,
     /// Why something is `None`, or how to read it.
     pub reason: Option<&'static str>,
 }
@@ -128,7 +131,10 @@ pub(crate) fn figures(
     Ok(FigureTable(FigureName::ALL.map(
         |name| match analysis.value(name) {
             Err(reason) => figure(None, None, None, Some(reason)),
-            Ok(value) => judge.figure(name, value, samples),
+            Ok(value) => Figure {
+                debiased: judge.length(name).map(|length| length.debiased()),
+                ..judge.figure(name, value, samples)
+            },
         },
     )))
 }
@@ -143,6 +149,7 @@ fn figure(
         value,
         se,
         interval,
+        debiased: None,
         reason,
     }
 }
@@ -222,7 +229,9 @@ impl Judge<'_> {
             return figure(Some(value), se, Some(interval), Some(NEAR_END));
         }
         // It is of the nearest realizable matrix, which stops at no depolarization.
-        if name == FigureName::DepolarizationPower && at(0.025) < tolerance::NOT_DETERMINED {
+        let at_zero = se.is_none_or(|se| value < tolerance::STANDARD_ERRORS * se)
+            || at(0.025) < tolerance::NOT_DETERMINED;
+        if name == FigureName::DepolarizationPower && at_zero {
             let interval = Interval {
                 low: None,
                 high: Some(at(0.95)),
@@ -308,8 +317,11 @@ impl Judge<'_> {
             length: padded.norm(),
             ratio,
             freedom: count as u32,
-            // Where the vector vanishes, any direction stands for all.
-            typical: (covariance.trace() / 3.0).max(0.0).sqrt(),
+            typical: (0..count)
+                .map(|k| covariance[(k, k)] / count as f64)
+                .sum::<f64>()
+                .max(0.0)
+                .sqrt(),
         })
     }
 
@@ -352,6 +364,7 @@ struct Length {
     length: f64,
     ratio: f64,
     freedom: u32,
+    /// The root mean square of the errors of its components.
     typical: f64,
 }
 
@@ -370,6 +383,12 @@ impl Length {
         }
         let (low, high) = self.two_sided()?;
         both(low, high, Method::NoncentralChiSquared)
+    }
+
+    /// `sqrt(v² − (k − 1) σ²)` for k components.
+    fn debiased(&self) -> f64 {
+        let excess = f64::from(self.freedom - 1) * self.typical * self.typical;
+        (self.length * self.length - excess).max(0.0).sqrt()
     }
 
     fn two_sided(&self) -> Option<(f64, f64)> {

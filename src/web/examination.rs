@@ -67,6 +67,8 @@ struct FigureTwin {
     low: Option<f64>,
     high: Option<f64>,
     method: Option<&'static str>,
+    bias: Option<f64>,
+    debiased: Option<f64>,
     unit: &'static str,
     reason: Option<&'static str>,
 }
@@ -300,6 +302,11 @@ impl Writer<'_> {
                 Method::UpperLimit => "upper-limit",
                 Method::OneSided => "one-sided",
             }),
+            bias: figure
+                .value
+                .zip(figure.debiased)
+                .map(|(value, debiased)| factor * (value - debiased)),
+            debiased: figure.debiased.map(|debiased| factor * debiased),
             unit: name,
             reason: figure.reason,
         }

@@ -19,7 +19,8 @@ use causes::{CauseTwin, ComparisonTwin, DiagnosisTwin};
 use convert::{MatricesTwin, to_js, to_js_error};
 use examination::ExaminationTwin;
 use request::{
-    ExamineRequest, compare_request, export_request, format_request, plain, read_options,
+    ExamineRequest, compare_request, detect_request, export_request, format_request, plain,
+    read_options,
 };
 
 #[wasm_bindgen(typescript_custom_section)]
@@ -140,6 +141,33 @@ pub fn compare(
     let (first, second, convention) = thrown(request)?;
     let found = thrown(figures::compare(&first, &second))?;
     to_js(&ComparisonTwin::new(&found, &convention))
+}
+
+/// What a noise can show, before anything is measured.
+///
+/// # Errors
+/// For a σ that is not positive.
+#[wasm_bindgen(unchecked_return_type = "Detectable")]
+pub fn detectable(
+    #[wasm_bindgen(unchecked_param_type = "DetectRequest")] request: &JsValue,
+) -> JsResult {
+    #[derive(Serialize)]
+    #[serde(rename_all = "camelCase")]
+    struct Twin {
+        alpha_se: f64,
+        alpha: f64,
+        diattenuation: f64,
+        mirror_margin: f64,
+    }
+    let request = plain(request).and_then(|request| detect_request(&request));
+    let (sigma, exact) = thrown(request)?;
+    let found = thrown(figures::detectable(sigma, exact))?;
+    to_js(&Twin {
+        alpha_se: found.alpha_se,
+        alpha: found.alpha,
+        diattenuation: found.diattenuation,
+        mirror_margin: found.mirror_margin,
+    })
 }
 
 /// Writes a value with its standard error, two digits of it.

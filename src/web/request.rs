@@ -277,6 +277,13 @@ pub fn format_request(request: &Value) -> Result<(f64, Option<f64>)> {
     Ok((value, fields.number("se")?))
 }
 
+/// A σ over M00, and whether M00 is exact.
+pub fn detect_request(request: &Value) -> Result<(f64, bool)> {
+    let fields = Fields::of(request, "", &["sigma", "normalised"])?;
+    let sigma = fields.required("sigma", fields.number("sigma")?)?;
+    Ok((sigma, fields.flag("normalised")?.unwrap_or_default()))
+}
+
 /// What is settled about a text.
 pub fn read_options(request: &Value) -> Result<ReadOptions> {
     let fields = Fields::of(request, "", &["decimal", "delimiter", "stacking"])?;

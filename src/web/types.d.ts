@@ -54,9 +54,13 @@ export interface Figure {
     se: number | null;
     low: number | null;
     high: number | null;
-    method: "first-order" | "one-sided" | null;
+    method: "first-order" | "percentile" | "noncentral" | "upper-limit" | "one-sided" | null;
     unit: "1" | "deg" | "matrix";
     reason: string | null;
+    /** What noise adds to a length on average, where an estimate of that is published; null elsewhere. */
+    bias: number | null;
+    /** The length without it. */
+    debiased: number | null;
 }
 
 export type FigureName =
@@ -203,6 +207,24 @@ export interface Diagnosis {
         /** The matrix without it, row by row. */
         mueller: Matrix16;
     }[];
+}
+
+export interface DetectRequest {
+    /** σ over M00. */
+    sigma: number;
+    /** Whether M00 has no error. */
+    normalised?: boolean;
+}
+
+/** What a noise can show, before anything is measured; all relative to M00. */
+export interface Detectable {
+    /** Standard error of the isotropic depolarization α, and what differs from 0 at 95 %. */
+    alphaSe: number;
+    alpha: number;
+    /** A diattenuation or polarizance that stands out of the noise 95 times in 100. */
+    diattenuation: number;
+    /** Standard errors by which a retarder with one side mirrored lies beyond realizability. */
+    mirrorMargin: number;
 }
 
 export interface CompareRequest {

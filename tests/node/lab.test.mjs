@@ -116,3 +116,13 @@ test("noise statements: the same errors said in four ways give the same test", (
   refuses(() => p({ kind: "uniform", sigma: 1, fraction: 1 }), "unknown-field", /fraction/);
   refuses(() => engine.examine({ mueller: FILM, noise: NOISE, draws: 1e9 }), "too-large", /draws/);
 });
+
+test("detectable: what a noise can show", () => {
+  // Derived: 2σ/√3 and σ/√3; sqrt(χ² of 3 at 95 %) = 2.7955 by a handbook table; ½ over σ/2.
+  const found = engine.detectable({ sigma: 0.005 });
+  assert.ok(Math.abs(found.alphaSe - 0.01 / Math.sqrt(3)) < 1e-12);
+  assert.ok(Math.abs(found.diattenuation - 2.7955 * 0.005) < 1e-6);
+  assert.ok(Math.abs(found.mirrorMargin - 200) < 1e-9);
+  assert.ok(Math.abs(engine.detectable({ sigma: 0.005, normalised: true }).alphaSe - 0.005 / Math.sqrt(3)) < 1e-12);
+  refuses(() => engine.detectable({ sigma: 0 }), "bad-sigma", /sigma/);
+});

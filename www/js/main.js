@@ -20,7 +20,7 @@ import { ProvenancePanel } from "./provenance.js";
 import { ReadingPanel } from "./reading.js";
 import { Store, noMeasurement } from "./state.js";
 import { isSingleFile, loadExamples, publicAddress } from "./where.js";
-import { verdictOf } from "./words.js";
+import { detectionText, verdictOf } from "./words.js";
 
 /**
  * @typedef {import("./types.js").Measurement} Measurement
@@ -480,6 +480,18 @@ function requestNow(outcome) {
   };
 }
 
+/**
+ * What the stated noise can show, before or beside a measurement.
+ * @param {Measurement} measurement
+ */
+function detection({ noise: choice, decimals, cells, normalised }) {
+  const { noise: stated } = noiseOf(choice, decimals);
+  // Without a matrix, as for one whose first element is 1.
+  const first = Math.abs(readNumber(cells[0] ?? "").value ?? 1) || 1;
+  const sigma = stated.kind === "uniform" ? stated.sigma / first : stated.kind === "relative" ? stated.fraction : null;
+  return sigma !== null && sigma > 0 ? detectionText(quick.detectable({ sigma, normalised })) : "";
+}
+
 /** Bring everything that is shown in line with the state. */
 function render() {
   const { work, view } = store;
@@ -495,7 +507,7 @@ function render() {
   reading.show(measurement, outcome, filled);
   many.show(measurement.many, measurement.pick, isReady ? request : null);
   display.show(view);
-  noise.show(measurement.noise, measurement.decimals, filled, noiseRefused);
+  noise.show(measurement.noise, measurement.decimals, filled, noiseRefused, isReady ? detection(measurement) : "");
   convention.show(measurement.convention);
   showOrigin(measurement);
   showExamples(measurement);

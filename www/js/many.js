@@ -168,7 +168,7 @@ function difference(many, pick, { normalised, absolute, convention, noise, muell
         null,
         found.figures
           .filter(({ value }) => value !== null)
-          .map(({ name, value, se, unit }) => make("tr", null, make("th", { scope: "row" }, DEFINITIONS[name]?.title ?? name), make("td", { class: "number" }, figureText({ value, se, low: null, high: null, method: null, unit, reason: null }, format) ?? "", unit === "deg" ? "°" : ""))),
+          .map(({ name, value, se, unit }) => make("tr", null, make("th", { scope: "row" }, DEFINITIONS[name]?.title ?? name), make("td", { class: "number" }, figureText({ value, se, low: null, high: null, method: null, bias: null, debiased: null, unit, reason: null }, format) ?? "", unit === "deg" ? "°" : ""))),
       ),
     ),
   );

@@ -126,6 +126,7 @@ export class NoisePanel {
     this.many = make("div", { id: "noise-many" }, this.area, make("button", { type: "button", id: "noise-open", class: "small", onclick: () => file.click() }, "From a file…"), file);
     this.digits = make("span", { class: "mute" });
     this.note = make("p", { id: "sigma-note", class: "fine" });
+    this.before = make("details", { id: "noise-detects", hidden: true });
     this.fold = make(
       "details",
       { id: "noise-more" },
@@ -146,6 +147,7 @@ export class NoisePanel {
       ),
       this.many,
       this.note,
+      this.before,
     );
   }
 
@@ -206,8 +208,9 @@ export class NoisePanel {
    * @param {number | null} decimals
    * @param {boolean} filled
    * @param {string | null} refused why the engine does not take the statement
+   * @param {string} detects what the noise can show
    */
-  show(choice, decimals, filled, refused) {
+  show(choice, decimals, filled, refused, detects) {
     this.choice = choice;
     const error = noiseOf(choice, decimals).error ?? refused;
     for (const [kind, radio] of Object.entries(this.radios)) radio.checked = kind === choice.kind;
@@ -230,6 +233,8 @@ export class NoisePanel {
     }
     this.note.classList.toggle("wrong", error !== null);
     repaint(this.note, error ?? this.hint(choice, decimals));
+    this.before.hidden = detects === "";
+    repaint(this.before, make("summary", null, "What this noise can show"), make("p", { class: "fine" }, detects));
   }
 
   /**

@@ -2,7 +2,7 @@
  * Verdicts as sentences. Pure: an engine's result goes in, text comes out, so that
  * every case can be tested without a page.
  */
-import { elementName, fixed, significant } from "./format.js";
+import { elementName, fixed, significant, withMinus } from "./format.js";
 
 /**
  * @typedef {import("./types.js").Examination} Examination
@@ -323,9 +323,19 @@ export function intervalText({ se, low, high }) {
   if (low === null && high === null) return "";
   const size = se ?? Math.abs((high ?? 0) - (low ?? 0)) / 4;
   const digits = size > 0 ? Math.min(15, Math.max(0, 1 - Math.floor(Math.log10(size)))) : 4;
-  if (low === null) return `95 % below ${fixed(high ?? 0, digits)}`;
-  if (high === null) return `95 % above ${fixed(low, digits)}`;
-  return `95 %: ${fixed(low, digits)} … ${fixed(high, digits)}`;
+  const written = (/** @type {number} */ value) => withMinus(value.toFixed(digits).replace(/^-(0\.?0*)$/, "$1"));
+  if (low === null) return `95 % below ${written(high ?? 0)}`;
+  if (high === null) return `95 % above ${written(low)}`;
+  return `95 %: ${written(low)} … ${written(high)}`;
+}
+
+/**
+ * What a noise can show.
+ * @param {import("../halfshade.js").Detectable} found
+ */
+export function detectionText({ alpha, alphaSe, diattenuation, mirrorMargin }) {
+  const mirror = mirrorMargin >= 3 ? `A retarder with one side counted the other way round stands out by ${significant(mirrorMargin)} standard errors.` : "A side counted the other way round would hide in it.";
+  return `Isotropic depolarization from α = ${significant(alpha)} on (its standard error is ${significant(alphaSe)}); diattenuation and polarizance from ${significant(diattenuation)} on. ${mirror} All relative to ${elementName(0, 0)}.`;
 }
 
 /**

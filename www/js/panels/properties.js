@@ -502,6 +502,10 @@ function noteOf(name, figure, above) {
   const reason = figure.reason ?? "";
   if (reason !== "" && !GENERAL.some((general) => general.test(reason))) notes.push(reason === above?.reason ? "as above" : reason);
   if (name === "isotropicAlpha") notes.push("constant stray light would look the same");
+  // Worth a word where noise is a good part of a length.
+  if (figure.debiased !== null && figure.bias !== null && figure.value !== null && figure.se !== null && figure.bias > 0.2 * figure.se) {
+    notes.push(figure.debiased > 0 ? `${significant(figure.debiased, 3)} without what noise adds` : "may be all noise");
+  }
   if (["depolarizationIndex", "diattenuation", "polarizance"].includes(name) && figure.value !== null && figure.value > 1) {
     notes.push(figure.se !== null && figure.value - 1 < 2 * figure.se ? "above 1 within noise" : "above 1, which nothing physical reaches");
   }
