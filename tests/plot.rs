@@ -882,6 +882,9 @@ fn text_and_marks_stand_out() {
             assert!(contrast(theme.ink, ground) >= 4.5);
             assert!(contrast(theme.mute, ground) >= 4.5);
             assert!(contrast(theme.accent, ground) >= 3.0);
+            // Common practice, no source: a graticule that is seen, and stays behind.
+            let graticule = contrast(theme.line, ground);
+            assert!((1.5..3.0).contains(&graticule), "{graticule}");
         }
     }
 }

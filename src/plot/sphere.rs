@@ -594,7 +594,7 @@ fn draw_chosen(pen: &Pen<'_>, input: Point, output: Option<Point>, theme: &Theme
 }
 
 /// Radius of the ring about a chosen mark.
-const CHOSEN: f64 = 7.5;
+const CHOSEN: f64 = 6.8;
 
 const LABEL: f64 = 12.0;
 
