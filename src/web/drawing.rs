@@ -16,6 +16,7 @@ use crate::plot::{
     self, EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, View,
 };
 use crate::state::Stokes;
+use crate::tolerance;
 
 /// Size and colours, alike for every plot.
 struct Frame {
@@ -178,11 +179,17 @@ pub fn map_states(
         let fields = Fields::of(&request, "", &["mueller", "convention"])?;
         let read = ConventionRead::of(&fields)?;
         let canonical = read.mueller(&fields)?;
+        let [a, b, c, d, ..] = canonical.row_major().map(f64::abs);
+        let brightest = a + b + c + d;
         standard_states(&read.convention)
             .into_iter()
             .map(|(label, input)| {
                 let input = Stokes::new(input)?;
-                let output = canonical.apply(&input);
+                let mut output = canonical.apply(&input);
+                // What rounding leaves of blocked light has no state.
+                if output.intensity().abs() <= tolerance::ZERO * brightest {
+                    output = Stokes::new([0.0; 4])?;
+                }
                 Ok(MappedTwin {
                     label,
                     input: StateTwin::new(&input, &read.convention),

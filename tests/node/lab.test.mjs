@@ -84,6 +84,9 @@ test("mapStates: a quarter-wave plate at 45° makes circular light of horizontal
   const turned = engine.mapStates({ mueller: plate.map((value, k) => (k === 7 || k === 13 ? -value : value)), convention: { positiveS3: "counterclockwise" } });
   assert.deepEqual(turned[0]?.output.stokes, [1, 0, 0, -1]);
   assert.equal(turned[0]?.output.ellipticityDeg, -45);
+  // A horizontal polarizer blocks V (definition), also where rounding leaves something of it.
+  const leaky = [0.5, 0.5 - 1e-15, 0, 0, 0.5 - 1e-15, 0.5, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0];
+  assert.deepEqual(engine.mapStates({ mueller: leaky })[1]?.output, { stokes: [0, 0, 0, 0], degree: null, azimuthDeg: null, ellipticityDeg: null });
   refuses(() => engine.mapStates(/** @type {any} */ ({ mueller: plate, more: 1 })), "unknown-field", /more/);
 });
 

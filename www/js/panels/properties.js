@@ -145,7 +145,7 @@ export class PropertiesPanel {
     const state = this.mapped[told];
     if (!state) return;
     this.stateChoice.selectedIndex = told;
-    this.stateText.replaceChildren(stateText(state.input), make("br", null), `becomes ${stateText(state.output)}.`);
+    this.stateText.replaceChildren(stateText(state.input), make("br", null), state.output.degree === null ? "is blocked." : `becomes ${stateText(state.output)}.`);
     this.sphere.onScreen = { chosen: state.label };
     this.sphere.request();
   }
@@ -513,8 +513,8 @@ function differentialTable(differential) {
  * @param {import("../types.js").State} state
  */
 function stateText({ stokes, degree, azimuthDeg, ellipticityDeg }) {
-  if (degree === null) return "no light";
-  const parts = [`S = (${stokes.map((value) => fixed(value, 4)).join(", ")})`, `degree of polarization ${fixed(degree, 4)}`];
+  const parts = [`S = (${stokes.map((value) => fixed(value, 4)).join(", ")})`];
+  if (degree !== null) parts.push(`degree of polarization ${fixed(degree, 4)}`);
   if (azimuthDeg !== null) parts.push(`azimuth ${azimuthText(azimuthDeg)}`);
   if (ellipticityDeg !== null) parts.push(`ellipticity ${fixed(ellipticityDeg, 2)}°`);
   return parts.join(", ");
