@@ -6,11 +6,12 @@
 
 use std::f64::consts::{FRAC_PI_2, TAU};
 
+use halfshade::convention::{AngleSense, Convention, PositiveS3, ZeroAngle};
 use halfshade::error::Place;
 use halfshade::plot::{
     EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, UNITS, View,
     eigenvalues_description, eigenvalues_height, eigenvalues_svg, ellipses_description,
-    ellipses_height, ellipses_svg, sphere_description, sphere_height, sphere_svg,
+    ellipses_height, ellipses_svg, sphere_description, sphere_height, sphere_marks, sphere_svg,
 };
 use roxmltree::{Document, Node};
 
@@ -56,6 +57,7 @@ fn pairs(mueller: &[f64; 16]) -> EllipsesPlot {
                 output: apply(mueller, &input),
             })
             .collect(),
+        convention: Convention::default(),
     }
 }
 
@@ -64,6 +66,7 @@ fn sphere(mueller: [f64; 16], azimuth: f64, elevation: f64) -> SpherePlot {
         mueller,
         view: View { azimuth, elevation },
         labels: labels(),
+        chosen: None,
     }
 }
 
@@ -124,6 +127,8 @@ fn check_document(svg: &str, title: &str, description: &str) {
     let child = |name: &'static str| nodes(&document, name).next().map(|n| content(&n));
     assert_eq!(child("title").as_deref(), Some(title));
     assert_eq!(child("desc").as_deref(), Some(description));
+    let version = format!("Halfshade {}", env!("CARGO_PKG_VERSION"));
+    assert_eq!(child("metadata"), Some(version));
     assert!(!svg.contains("NaN") && !svg.contains("inf"));
     let view: Vec<f64> = root
         .attribute("viewBox")
@@ -332,6 +337,56 @@ fn states_lie_where_the_rotations_put_them() {
 }
 
 #[test]
+fn marks_are_told_where_they_are_drawn_and_the_chosen_one_is_ringed() {
+    let (azimuth, elevation) = (-0.96, 0.38);
+    let size = surface(300.0, sphere_height(300.0));
+    let mut plot = sphere(FILM, azimuth, elevation);
+    let marks = sphere_marks(&plot, &size).expect("marks");
+    // Recomputed: the unit sphere fills the square above the legend but for 20 pixels
+    // all round; outputs that reach out of it by less than 5 % leave it so.
+    for (mark, input) in marks.iter().zip(INPUTS) {
+        let output = apply(&FILM, &input);
+        let told = [(input, Some(mark.input)), (output, mark.output)];
+        for (stokes, told) in told {
+            let point = [1, 2, 3].map(|k| stokes[k] / stokes[0]);
+            let (right, up) = projected(point, azimuth, elevation);
+            let expected = (150.0 + 130.0 * right, 150.0 - 130.0 * up);
+            let (x, y) = told.expect("light comes out");
+            assert!((x - expected.0).hypot(y - expected.1) < 0.02, "{stokes:?}");
+        }
+    }
+    let rings = |plot: &SpherePlot| {
+        let svg = sphere_svg(plot, &size, &Theme::light(), "t", "d").expect("a plot");
+        circles(&Document::parse(&svg).expect("well-formed XML"), 6.8, false)
+    };
+    assert!(rings(&plot).is_empty());
+    for (k, mark) in marks.iter().enumerate() {
+        plot.chosen = Some(k);
+        let drawn = rings(&plot);
+        let told = [mark.input, mark.output.expect("light comes out")];
+        assert_eq!(drawn.len(), 2);
+        for (ring, place) in drawn.iter().zip(told) {
+            assert!((ring.0 - place.0).hypot(ring.1 - place.1) < 0.1);
+        }
+    }
+    plot.chosen = Some(6);
+    assert!(rings(&plot).is_empty());
+
+    // A horizontal polarizer blocks V (definition): one ring, no output.
+    let mut polarizer = [0.0; 16];
+    for k in [0, 1, 4, 5] {
+        polarizer[k] = 0.5;
+    }
+    let mut plot = sphere(polarizer, azimuth, elevation);
+    plot.chosen = Some(1);
+    let marks = sphere_marks(&plot, &size).expect("marks");
+    assert_eq!(marks[1].output, None);
+    assert_eq!(rings(&plot).len(), 1);
+    let too_small = sphere_marks(&plot, &surface(10.0, 10.0)).expect_err("no room");
+    assert_eq!(too_small.code, "plot-size");
+}
+
+#[test]
 fn the_front_view_shows_the_first_axis_in_the_middle() {
     // From the definition of the view: at azimuth 0 the viewer stands on +S1, S2 to
     // the right, S3 up.
@@ -457,6 +512,7 @@ fn ellipses_are_the_path_of_the_field_and_heads_point_its_way() {
                 input: [1.0, c2, s2, 0.0],
                 output: stokes,
             }],
+            convention: Convention::default(),
         };
         let svg =
             ellipses_svg(&plot, &surface(200.0, 150.0), &Theme::light(), "t", "d").expect("a plot");
@@ -544,6 +600,7 @@ fn degrees_stand_under_the_pairs() {
             input: INPUTS[1],
             output: [0.0; 4],
         }],
+        convention: Convention::default(),
     };
     let svg =
         ellipses_svg(&dark, &surface(200.0, 140.0), &Theme::light(), "t", "d").expect("a plot");
@@ -597,6 +654,59 @@ fn descriptions_state_the_finding() {
 }
 
 #[test]
+fn ellipses_are_told_in_the_angles_of_the_person() {
+    // Light at 2ψ = 0.8, 2χ = 0.5 in the canonical convention; derived: counted
+    // clockwise the azimuth is 180° − ψ, counted from y it is 90° more, and only the
+    // sign of S3 turns the sign of χ. The sense is of the field, whoever counts.
+    let ((s, c), (up, flat)) = (f64::sin_cos(0.8), f64::sin_cos(0.5));
+    let told = |convention| {
+        let plot = EllipsesPlot {
+            states: vec![EllipsePair {
+                label: "A".to_owned(),
+                input: INPUTS[0],
+                output: [1.0, flat * c, flat * s, up],
+            }],
+            convention,
+        };
+        ellipses_description(&plot).expect("words")
+    };
+    let usual = Convention::default();
+    // ψ = 0.4 rad = 22.92°, χ = 0.25 rad = 14.32°.
+    for (convention, azimuth, ellipticity) in [
+        (usual, "22.9°", "14.3°"),
+        (
+            Convention {
+                angles: AngleSense::Clockwise,
+                ..usual
+            },
+            "157.1°",
+            "14.3°",
+        ),
+        (
+            Convention {
+                zero_angle: ZeroAngle::Y,
+                ..usual
+            },
+            "112.9°",
+            "14.3°",
+        ),
+        (
+            Convention {
+                positive_s3: PositiveS3::Counterclockwise,
+                ..usual
+            },
+            "22.9°",
+            "−14.3°",
+        ),
+    ] {
+        let expected =
+            format!("elliptical at {azimuth}, ellipticity {ellipticity}, clockwise, degree 1.000");
+        let words = told(convention);
+        assert!(words.contains(&expected), "{words}");
+    }
+}
+
+#[test]
 fn any_finite_input_is_drawn() {
     let spread = [
         0.0,
@@ -642,6 +752,7 @@ fn any_finite_input_is_drawn() {
         };
         let plot = EllipsesPlot {
             states: vec![pair; 1 + k % 7],
+            convention: Convention::default(),
         };
         let words = ellipses_description(&plot).expect("words");
         assert!(!words.contains("NaN") && !words.contains("inf"), "{words}");
@@ -707,7 +818,10 @@ fn what_cannot_be_drawn_is_an_error() {
             .expect_err("no intensity");
         assert_eq!(error.code, "no-intensity");
     }
-    let none = EllipsesPlot { states: Vec::new() };
+    let none = EllipsesPlot {
+        states: Vec::new(),
+        convention: Convention::default(),
+    };
     let error = ellipses_svg(&none, &size, &theme, "t", "d").expect_err("nothing");
     assert_eq!(error.code, "no-states");
 }
@@ -768,6 +882,9 @@ fn text_and_marks_stand_out() {
             assert!(contrast(theme.ink, ground) >= 4.5);
             assert!(contrast(theme.mute, ground) >= 4.5);
             assert!(contrast(theme.accent, ground) >= 3.0);
+            // Common practice, no source: a graticule that is seen, and stays behind.
+            let graticule = contrast(theme.line, ground);
+            assert!((1.5..3.0).contains(&graticule), "{graticule}");
         }
     }
 }

@@ -11,6 +11,7 @@ use super::pen::{Align, Pen, Point, faint, ink};
 use super::surface::Surface;
 use super::svg::to_svg;
 use super::theme::Theme;
+use crate::convention::Convention;
 use crate::error::{Error, Result};
 
 /// Pairs of states, usually the six standard inputs with what each becomes.
@@ -18,6 +19,8 @@ use crate::error::{Error, Result};
 pub struct EllipsesPlot {
     /// From left to right, then from top to bottom.
     pub states: Vec<EllipsePair>,
+    /// In which the description gives its angles; the drawing shows space itself.
+    pub convention: Convention,
 }
 
 /// A state before and after, as Stokes vectors in the canonical convention: angles
@@ -102,7 +105,7 @@ pub fn ellipses_description(plot: &EllipsesPlot) -> Result<String> {
             format!(
                 "{} becomes {}",
                 pair.label,
-                in_words(&State::of(&pair.output))
+                in_words(&State::of(&pair.output), &plot.convention)
             )
         })
         .collect();
@@ -146,7 +149,7 @@ impl State {
     }
 }
 
-fn in_words(state: &State) -> String {
+fn in_words(state: &State, convention: &Convention) -> String {
     match *state {
         State::Dark => "nothing, it is blocked".to_owned(),
         State::Light { degree, .. } if degree < UNPOLARIZED => {
@@ -159,7 +162,7 @@ fn in_words(state: &State) -> String {
         } => {
             let turn = ellipticity.to_degrees();
             // 179.97° is printed as 0.0°, not as 180.0°.
-            let azimuth = azimuth.to_degrees();
+            let azimuth = convention.azimuth(azimuth).to_degrees();
             let azimuth = if azimuth >= 179.95 { 0.0 } else { azimuth };
             let shape = if turn.abs() >= 44.95 {
                 "circular".to_owned()
@@ -169,7 +172,7 @@ fn in_words(state: &State) -> String {
                 format!(
                     "elliptical at {}°, ellipticity {}°",
                     fixed(azimuth, 1),
-                    fixed(turn, 1)
+                    fixed(convention.circular(turn), 1)
                 )
             };
             let sense = if turn.abs() < 0.05 {

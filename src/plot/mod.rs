@@ -39,6 +39,9 @@ pub use eigenvalues::{
 pub use ellipses::{
     EllipsePair, EllipsesPlot, draw_ellipses, ellipses_description, ellipses_height, ellipses_svg,
 };
-pub use sphere::{SpherePlot, View, draw_sphere, sphere_description, sphere_height, sphere_svg};
+pub use sphere::{
+    SphereMark, SpherePlot, View, draw_sphere, sphere_description, sphere_height, sphere_marks,
+    sphere_svg,
+};
 pub use surface::{Surface, UNITS};
 pub use theme::{Rgb, Theme};

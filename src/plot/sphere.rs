@@ -24,6 +24,19 @@ pub struct SpherePlot {
     pub view: View,
     /// Names of the states at +S1, −S1, +S2, −S2, +S3, −S3.
     pub labels: [String; 6],
+    /// The state that is being read, counted as the labels: both of its marks are
+    /// ringed. A number beyond them rings none.
+    pub chosen: Option<usize>,
+}
+
+/// Where the marks of one standard state are on a picture, CSS pixels from the upper
+/// left corner.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct SphereMark {
+    /// The open mark.
+    pub input: (f64, f64),
+    /// The filled one; `None` where no light comes out.
+    pub output: Option<(f64, f64)>,
 }
 
 /// Where the viewer of the sphere stands: a turntable, S3 stays up.
@@ -79,7 +92,7 @@ pub fn draw_sphere<DB: DrawingBackend>(
     let map = Map::new(plot)?;
     let pen = Pen::new(area)?;
     pen.ground(theme.background)?;
-    let scene = Scene::new(&pen, plot, &map);
+    let scene = Scene::new((pen.width, pen.height), plot.view, &map);
     draw_ball(&pen, &scene, theme)?;
     draw_image(&pen, &scene, &map, theme)?;
     draw_states(&pen, &scene, plot, &map, theme)?;
@@ -106,6 +119,21 @@ pub fn sphere_svg(
 /// A fitting height for a width, CSS pixels.
 pub fn sphere_height(width: f64) -> f64 {
     width + LEGEND
+}
+
+/// Where [`draw_sphere`] puts the marks, in the order of the labels.
+///
+/// # Errors
+///
+/// As [`draw_sphere`], and `plot-size` as [`Surface::in_units`].
+pub fn sphere_marks(plot: &SpherePlot, surface: &Surface) -> Result<[SphereMark; 6]> {
+    surface.in_units()?;
+    let map = Map::new(plot)?;
+    let scene = Scene::new((surface.width, surface.height), plot.view, &map);
+    Ok(STANDARD.map(|input| SphereMark {
+        input: scene.place(input).0,
+        output: map.output(input).map(|output| scene.place(output).0),
+    }))
 }
 
 /// What the plot shows, in words: each output with its degree of polarization.
@@ -329,7 +357,7 @@ struct Scene {
 }
 
 impl Scene {
-    fn new(pen: &Pen<'_>, plot: &SpherePlot, map: &Map) -> Self {
+    fn new((width, height): (f64, f64), view: View, map: &Map) -> Self {
         let grid = map.grid();
         let farthest = grid
             .iter()
@@ -337,13 +365,13 @@ impl Scene {
             .flatten()
             .map(|&o| norm(o))
             .fold(1.0, f64::max);
-        let room = (pen.width.min(pen.height - LEGEND) / 2.0 - 20.0).max(10.0);
+        let room = (width.min(height - LEGEND) / 2.0 - 20.0).max(10.0);
         // A little outside is within the margin; noise must not make the sphere jump.
         let radius = room / (farthest - 0.05).clamp(1.0, FARTHEST);
         Self {
-            centre: (pen.width / 2.0, (pen.height - LEGEND) / 2.0),
+            centre: (width / 2.0, (height - LEGEND) / 2.0),
             radius,
-            view: plot.view,
+            view,
             grid,
         }
     }
@@ -536,9 +564,37 @@ fn draw_states(
             pen.ring(place, 3.6, faint(theme.ink, strength), 1.6)?;
         }
     }
+    if let Some(chosen) = plot.chosen.filter(|&k| k < inputs.len()) {
+        draw_chosen(pen, inputs[chosen].0, outputs[chosen].map(|o| o.0), theme)?;
+    }
     let places: Vec<Point> = marks.iter().map(|m| m.0).collect();
     draw_labels(pen, scene, &plot.labels, &inputs, &places, theme)
 }
+
+/// A ring about each mark of the state that is being read, and the line between them.
+fn draw_chosen(pen: &Pen<'_>, input: Point, output: Option<Point>, theme: &Theme) -> Result<()> {
+    let colour = ink(theme.ink);
+    pen.ring(input, CHOSEN, colour, 1.6)?;
+    let Some(output) = output else {
+        return Ok(());
+    };
+    pen.ring(output, CHOSEN, colour, 1.6)?;
+    let (right, down) = (output.0 - input.0, output.1 - input.1);
+    let apart = right.hypot(down);
+    if apart <= 2.0 * CHOSEN {
+        return Ok(());
+    }
+    // From ring to ring.
+    let step = (right / apart * CHOSEN, down / apart * CHOSEN);
+    let ends = [
+        (input.0 + step.0, input.1 + step.1),
+        (output.0 - step.0, output.1 - step.1),
+    ];
+    pen.line(&ends, colour, 1.6)
+}
+
+/// Radius of the ring about a chosen mark.
+const CHOSEN: f64 = 6.8;
 
 const LABEL: f64 = 12.0;
 

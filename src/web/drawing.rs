@@ -16,6 +16,7 @@ use crate::plot::{
     self, EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, View,
 };
 use crate::state::Stokes;
+use crate::tolerance;
 
 /// Size and colours, alike for every plot.
 struct Frame {
@@ -90,6 +91,7 @@ fn sphere_request(request: &JsValue) -> EngineResult<(SpherePlot, Frame)> {
         "convention",
         "azimuthDeg",
         "elevationDeg",
+        "chosen",
         "frame",
     ];
     let fields = Fields::of(&request, "", &known)?;
@@ -102,6 +104,8 @@ fn sphere_request(request: &JsValue) -> EngineResult<(SpherePlot, Frame)> {
     if convention.positive_s3 == PositiveS3::Counterclockwise {
         labels.swap(4, 5);
     }
+    let chosen = fields.text("chosen")?;
+    let chosen = chosen.and_then(|name| labels.iter().position(|label| label == name));
     let angle = |name| -> EngineResult<f64> {
         Ok(fields.required(name, fields.number(name)?)?.to_radians())
     };
@@ -112,6 +116,7 @@ fn sphere_request(request: &JsValue) -> EngineResult<(SpherePlot, Frame)> {
             elevation: angle("elevationDeg")?,
         },
         labels,
+        chosen,
     };
     Ok((plot, Frame::of(&fields, plot::sphere_height)?))
 }
@@ -126,7 +131,10 @@ fn ellipses_request(request: &JsValue) -> EngineResult<(EllipsesPlot, Frame)> {
         .map(|(label, input)| pair(label, input, &canonical))
         .collect::<EngineResult<_>>()?;
     Ok((
-        EllipsesPlot { states },
+        EllipsesPlot {
+            states,
+            convention: read.convention,
+        },
         Frame::of(&fields, plot::ellipses_height)?,
     ))
 }
@@ -171,11 +179,17 @@ pub fn map_states(
         let fields = Fields::of(&request, "", &["mueller", "convention"])?;
         let read = ConventionRead::of(&fields)?;
         let canonical = read.mueller(&fields)?;
+        let [a, b, c, d, ..] = canonical.row_major().map(f64::abs);
+        let brightest = a + b + c + d;
         standard_states(&read.convention)
             .into_iter()
             .map(|(label, input)| {
                 let input = Stokes::new(input)?;
-                let output = canonical.apply(&input);
+                let mut output = canonical.apply(&input);
+                // What rounding leaves of blocked light has no state.
+                if output.intensity().abs() <= tolerance::ZERO * brightest {
+                    output = Stokes::new([0.0; 4])?;
+                }
                 Ok(MappedTwin {
                     label,
                     input: StateTwin::new(&input, &read.convention),
@@ -302,6 +316,36 @@ pub fn sphere_svg(
         "Poincaré sphere",
         &description,
     ))
+}
+
+/// Where the marks of the six standard states are on the sphere's picture.
+///
+/// # Errors
+/// As [`draw_sphere`].
+#[wasm_bindgen(js_name = sphereMarks, unchecked_return_type = "SphereMark[]")]
+pub fn sphere_marks(
+    #[wasm_bindgen(unchecked_param_type = "SphereRequest")] request: &JsValue,
+) -> Result<JsValue, JsValue> {
+    let (plot, Frame { surface, .. }) = thrown(sphere_request(request))?;
+    let marks = thrown(plot::sphere_marks(&plot, &surface))?;
+    let twins: Vec<MarkTwin> = plot
+        .labels
+        .into_iter()
+        .zip(marks)
+        .map(|(label, plot::SphereMark { input, output })| MarkTwin {
+            label,
+            input,
+            output,
+        })
+        .collect();
+    to_js(&twins)
+}
+
+#[derive(Serialize)]
+struct MarkTwin {
+    label: String,
+    input: (f64, f64),
+    output: Option<(f64, f64)>,
 }
 
 /// Draws the polarization ellipses of six standard states, before and after.

@@ -350,7 +350,17 @@ export interface SphereRequest {
     /** Longitude of the point that faces the viewer, from S1 towards S2. */
     azimuthDeg: number;
     elevationDeg: number;
+    /** The label of the state whose marks are ringed. */
+    chosen?: string | null;
     frame: Frame;
+}
+
+/** Where a standard state's marks are on the sphere's picture, CSS pixels from the upper left corner. */
+export interface SphereMark {
+    label: string;
+    input: [number, number];
+    /** null where no light comes out. */
+    output: [number, number] | null;
 }
 
 export interface EllipsesRequest {

@@ -84,7 +84,43 @@ test("mapStates: a quarter-wave plate at 45° makes circular light of horizontal
   const turned = engine.mapStates({ mueller: plate.map((value, k) => (k === 7 || k === 13 ? -value : value)), convention: { positiveS3: "counterclockwise" } });
   assert.deepEqual(turned[0]?.output.stokes, [1, 0, 0, -1]);
   assert.equal(turned[0]?.output.ellipticityDeg, -45);
+  // A horizontal polarizer blocks V (definition), also where rounding leaves something of it.
+  const leaky = [0.5, 0.5 - 1e-15, 0, 0, 0.5 - 1e-15, 0.5, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0];
+  assert.deepEqual(engine.mapStates({ mueller: leaky })[1]?.output, { stokes: [0, 0, 0, 0], degree: null, azimuthDeg: null, ellipticityDeg: null });
   refuses(() => engine.mapStates(/** @type {any} */ ({ mueller: plate, more: 1 })), "unknown-field", /more/);
+});
+
+test("sphereMarks: where the view puts them, by name in every convention; a frame brings its colours", () => {
+  const identity = Array.from({ length: 16 }, (_, k) => (k % 5 === 0 ? 1 : 0));
+  const request = { mueller: identity, azimuthDeg: 0, elevationDeg: 0, frame: { width: 240 } };
+  // Definition of the view: +S1 in front, S2 to the right, S3 up, twenty pixels round the sphere.
+  const places = [[120, 120], [120, 120], [220, 120], [20, 120], [120, 20], [120, 220]];
+  for (const [convention, labels] of /** @type {[import("../../dist/halfshade.js").Convention, string[]][]} */ ([
+    [{}, ["H", "V", "+45°", "−45°", "R", "L"]],
+    [{ zeroAngle: "y" }, ["V", "H", "+45°", "−45°", "R", "L"]],
+    [{ positiveS3: "counterclockwise" }, ["H", "V", "+45°", "−45°", "L", "R"]],
+  ])) {
+    const marks = engine.sphereMarks({ ...request, convention });
+    assert.deepEqual(marks.map(({ label }) => label), labels);
+    marks.forEach(({ input, output }, k) => {
+      for (const [x, y] of [input, output ?? []]) assert.ok(Math.hypot((x ?? NaN) - (places[k]?.[0] ?? 0), (y ?? NaN) - (places[k]?.[1] ?? 0)) < 1e-9);
+    });
+    // The names are those of mapStates: it says which Stokes vector each has.
+    for (const { label, input } of engine.mapStates({ mueller: identity, convention })) {
+      const axis = 1 + Math.floor(labels.indexOf(label) / 2);
+      assert.deepEqual(input.stokes.map((value) => value + 0), [1, 0, 0, 0].map((value, k) => (k === axis ? 1 - 2 * (labels.indexOf(label) % 2) : value)));
+    }
+  }
+  const polarizer = identity.map((_, k) => ([0, 1, 4, 5].includes(k) ? 0.5 : 0));
+  assert.equal(engine.sphereMarks({ ...request, mueller: polarizer })[1]?.output, null);
+  refuses(() => engine.sphereMarks({ ...request, frame: { width: 1 } }), "plot-size");
+
+  const rings = (/** @type {string} */ chosen) => engine.sphereSvg({ ...request, chosen }).split(`r="${Math.round(16 * 6.8)}"`).length - 1;
+  assert.deepEqual(["R", "none of them"].map(rings), [2, 0]);
+  const svg = engine.sphereSvg({ ...request, frame: { width: 240, colours: { background: [1, 2, 3], ink: [999, -5, 254.6] } } });
+  assert.match(svg, /#010203/);
+  assert.match(svg, /#FF00F[EF]/);
+  refuses(() => engine.sphereSvg(/** @type {any} */ ({ ...request, frame: { width: 240, colours: { paper: [1, 2, 3] } } })), "unknown-field", /paper/);
 });
 
 test("a configuration as a file", () => {

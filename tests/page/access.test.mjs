@@ -233,6 +233,23 @@ test("forced colours: cells keep their borders, and the pictures are not lost", 
       return new Set(new Uint32Array(new Uint8Array(data).buffer)).size;
     });
     assert.ok(colours > 5, task);
+    // The system's own: its ground in the corner, its text and link colours somewhere.
+    const missing = await page.locator(`#plot-${name}`).evaluate((element) => {
+      const canvas = /** @type {HTMLCanvasElement} */ (element);
+      const data = canvas.getContext("2d")?.getImageData(0, 0, canvas.width, canvas.height).data ?? [];
+      const seen = new Set();
+      for (let k = 0; k < data.length; k += 4) seen.add(`rgb(${data[k]}, ${data[k + 1]}, ${data[k + 2]})`);
+      const probe = document.body.appendChild(document.createElement("span"));
+      const colour = (/** @type {string} */ keyword) => {
+        probe.style.color = keyword;
+        return getComputedStyle(probe).color;
+      };
+      const wanted = ["Canvas", "CanvasText", "LinkText"].filter((keyword) => !seen.has(colour(keyword)));
+      const corner = colour("Canvas") === `rgb(${data[0]}, ${data[1]}, ${data[2]})` ? [] : ["corner"];
+      probe.remove();
+      return [...wanted, ...corner];
+    });
+    assert.deepEqual(missing, [], task);
   });
   await page.context().close();
 });

@@ -548,3 +548,52 @@ test("pictures leave as SVG and PNG, with what they show inside", async () => {
   }
   await clean(watched);
 });
+
+test("a state on the sphere is read by pointer, finger and keyboard, and ringed on the screen only", async () => {
+  const watched = await browser.open("hosted", { acceptDownloads: true, hasTouch: true, viewport: { width: 1360, height: 900 } });
+  const { page } = watched;
+  await paste(page, FILM);
+  await page.locator('nav a[data-task="properties"]').click();
+  await page.locator(".turn button", { hasText: "S1 in front" }).click();
+  const canvas = page.locator("#plot-sphere");
+  await canvas.scrollIntoViewIfNeeded();
+  const box = await canvas.boundingBox();
+  assert.ok(box);
+  // Definition of the view: S2 to the right, S3 up; twenty pixels round the unit sphere.
+  const [half, radius] = [box.width / 2, box.width / 2 - 20];
+  const place = { h: [half, half], plus: [half + radius, half], r: [half, half - radius], l: [half, half + radius] };
+  /** @param {number[]} at @returns {[number, number]} */
+  const onPage = ([x = 0, y = 0]) => [box.x + x, box.y + y];
+  const chosen = () => page.locator("#state").evaluate((select) => /** @type {HTMLSelectElement} */ (select).value);
+
+  await page.mouse.move(...onPage(place.plus));
+  // Recomputed: the matrix times (1, 0, 1, 0), half the angles of its Stokes vector.
+  await says(page, "#state-text", /^S = \(1\.0000, 0\.0000, 1\.0000, 0\.0000\), .*azimuth 45\.00°.*becomes S = \(0\.9877, 0\.2730, 0\.7650, −0\.5645\), degree of polarization 1\.0015, azimuth 35\.18°, ellipticity −17\.40°\.$/);
+  assert.equal(await chosen(), "+45°");
+  await page.mouse.move(...onPage([half + radius / 2, half + radius / 2 + 4]));
+  assert.equal(await chosen(), "H", "away from every mark it is the chosen one again");
+  await page.mouse.click(...onPage(place.r));
+  await page.mouse.move(box.x - 30, box.y);
+  assert.equal(await chosen(), "R", "a click stays");
+  await page.touchscreen.tap(...onPage(place.l));
+  assert.equal(await chosen(), "L");
+  await page.locator("#state").focus();
+  await page.keyboard.press("ArrowUp");
+  await page.keyboard.press("ArrowUp");
+  assert.equal(await chosen(), "−45°");
+  await says(page, "#state-text", /^S = \(1\.0000, 0\.0000, −1\.0000, 0\.0000\)/);
+
+  // A drag turns: a quarter of the width is 45°, and the front goes with the hand.
+  await page.mouse.move(...onPage([half, half + 60]));
+  await page.mouse.down();
+  await page.mouse.move(...onPage([half - box.width / 4, half + 60]), { steps: 6 });
+  await page.mouse.up();
+  assert.equal(await page.locator("#view-azimuth-number").inputValue(), "45°");
+  assert.equal(await chosen(), "−45°");
+  const { bytes } = await saved(page, '.plot-sphere figcaption button:text-is("SVG")');
+  const text = bytes.toString("utf8");
+  assert.match(text, /<circle/);
+  // Sixteen units a pixel.
+  assert.ok(!text.includes(`r="${Math.round(16 * 6.8)}"`), "no ring in a file");
+  await clean(watched);
+});

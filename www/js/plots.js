@@ -26,25 +26,25 @@ const SCALES = [1, 2, 3, 4, 6];
 const dark = matchMedia("(prefers-color-scheme: dark)");
 const forced = matchMedia("(forced-colors: active)");
 
-/** The system's colours for what a plot shows. */
-const SYSTEM = { background: "Canvas", panel: "Canvas", ink: "CanvasText", mute: "CanvasText", line: "GrayText", accent: "LinkText", hatch: "GrayText" };
-
 /**
- * Where the system forces its colours, those; else none.
+ * Where the system forces its colours, those; else none. Graticule and hatching lie
+ * between ground and text, because a system has no colour for what stands back.
  * @returns {{ [name: string]: number[] } | undefined}
  */
 function systemColours() {
   if (!forced.matches || printing) return undefined;
   const probe = make("span", { class: "offstage", "aria-hidden": "true" });
   document.body.append(probe);
-  const colours = Object.fromEntries(
-    Object.entries(SYSTEM).map(([name, keyword]) => {
-      probe.style.color = keyword;
-      return [name, (getComputedStyle(probe).color.match(/[\d.]+/g) ?? ["0", "0", "0"]).slice(0, 3).map(Number)];
-    }),
-  );
+  /** @param {string} keyword */
+  const colour = (keyword) => {
+    probe.style.color = keyword;
+    return (getComputedStyle(probe).color.match(/[\d.]+/g) ?? []).slice(0, 3).map(Number);
+  };
+  const [ground, ink, accent] = ["Canvas", "CanvasText", "LinkText"].map(colour);
   probe.remove();
-  return colours;
+  if (!ground || !ink || !accent) return undefined;
+  const between = ground.map((part, k) => part + 0.35 * ((ink[k] ?? part) - part));
+  return { background: ground, panel: ground, ink, mute: ink, line: between, accent, hatch: between };
 }
 
 /** @type {Set<Plot>} */
@@ -93,6 +93,8 @@ export class Plot {
     this.failed = failed;
     /** @type {{ [field: string]: unknown } | null} */
     this.data = null;
+    /** What the request has besides on the screen, but not in files. @type {{ [field: string]: unknown }} */
+    this.onScreen = {};
     this.asked = 0;
     this.width = 0;
     this.canvas = make("canvas", { id: `plot-${name}`, role: "img", "aria-label": title });
@@ -146,6 +148,15 @@ export class Plot {
     this.request();
   }
 
+  /**
+   * Other data, the same table.
+   * @param {{ [field: string]: unknown }} data
+   */
+  change(data) {
+    this.data = data;
+    this.request();
+  }
+
   /** Draw in the next frame, once. */
   request() {
     if (this.asked) return;
@@ -166,7 +177,7 @@ export class Plot {
     try {
       const ratio = printing ? PRINT_RATIO : Math.max(1, devicePixelRatio);
       const colours = systemColours();
-      const drawn = this.drawing.draw(this.canvas, { ...this.data, frame: { width, ratio, theme: theme(), ...(colours ? { colours } : {}) } });
+      const drawn = this.drawing.draw(this.canvas, { ...this.data, ...(printing ? {} : this.onScreen), frame: { width, ratio, theme: theme(), ...(colours ? { colours } : {}) } });
       this.canvas.style.setProperty("width", `${drawn.width}px`);
       this.canvas.style.setProperty("height", `${drawn.height}px`);
       this.canvas.setAttribute("aria-label", drawn.description);

@@ -14,6 +14,7 @@
  * @typedef {import("../halfshade.js").PolarDecomposition} Polar
  * @typedef {import("../halfshade.js").DifferentialDecomposition} Differential
  * @typedef {import("../halfshade.js").StateDescription} State
+ * @typedef {import("../halfshade.js").MappedState} MappedState
  * @typedef {import("../halfshade.js").Diagnosis} Diagnosis
  * @typedef {import("../halfshade.js").Comparison} Comparison
  * @typedef {import("../halfshade.js").Reading} Reading

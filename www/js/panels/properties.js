@@ -1,6 +1,6 @@
 /** The Properties task: what the element does to light, each figure with its uncertainty. */
 import { DEFINITIONS, GROUPS, METHODS } from "../definitions.js";
-import { choice, fold, make, repaint, sentence } from "../dom.js";
+import { fold, make, repaint, sentence } from "../dom.js";
 import { RETARDANCE_UNIT, retardanceIn } from "../display.js";
 import { exported, figuresTable } from "../exports.js";
 import { elementName, fixed, readNumber, significant } from "../format.js";
@@ -52,15 +52,24 @@ export class PropertiesPanel {
     this.below = make("div", null);
     this.azimuth = this.slider("azimuth", -180, 180, "azimuthDeg");
     this.elevation = this.slider("elevation", -90, 90, "elevationDeg");
+    /** @type {import("../types.js").MappedState[]} */
+    this.mapped = [];
     /** The input whose fate is told in words. */
     this.state = 0;
-    this.stateWords = make("p", { id: "state-words", class: "fine", "aria-live": "off" });
+    /** The one under the pointer, which goes before it. @type {number | null} */
+    this.pointed = null;
+    this.stateChoice = make("select", { id: "state", class: "inline", "aria-label": "Input state" });
+    this.stateChoice.addEventListener("change", () => {
+      this.state = this.stateChoice.selectedIndex;
+      this.readOut();
+    });
+    this.stateText = make("span", { id: "state-text" });
     this.turnable(this.sphere.canvas);
     this.sphere.canvas.after(
       make(
         "div",
         { class: "turn", role: "group", "aria-label": "Turn the sphere" },
-        this.stateWords,
+        make("p", { id: "state-words", class: "fine" }, this.stateChoice, " ", this.stateText),
         this.azimuth.row,
         this.elevation.row,
         make(
@@ -83,8 +92,14 @@ export class PropertiesPanel {
 
   /** @param {Shown} shown */
   show(shown) {
+    const before = this.shown;
     this.shown = shown;
     const { result, request, pending, view } = shown;
+    // A drag asks for this many times a second.
+    if (before && isOnlyTurned(before, shown)) {
+      this.turn(view);
+      return;
+    }
     this.body.hidden = !result;
     if (!result || !request) {
       repaint(this.head);
@@ -103,9 +118,13 @@ export class PropertiesPanel {
       make("p", { class: "fine" }, `Realizability: ${verdict.title}. Figures marked “nearest” are of the nearest realizable matrix, all others of the measured one.`),
     );
     this.paintFigures(result, request.noise.kind !== "none", pending);
+    const { mueller, convention } = request;
+    this.mapped = quick.mapStates({ mueller, convention });
+    this.stateChoice.replaceChildren(...this.mapped.map(({ label }) => make("option", null, label)));
     this.turn(view);
-    this.readOut(request);
-    this.ellipses.show({ mueller: request.mueller, convention: request.convention }, this.states(request), () => statesAsText(request));
+    this.sphere.show(this.sphere.data, this.states(), () => statesAsText(request));
+    this.ellipses.show({ mueller, convention }, this.states(), () => statesAsText(request));
+    this.readOut();
     repaint(this.below, this.decompositions(result));
   }
 
@@ -117,40 +136,40 @@ export class PropertiesPanel {
     this.azimuth.set(azimuthDeg);
     this.elevation.set(elevationDeg);
     const request = this.shown?.request;
-    if (request) this.sphere.show({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg }, this.states(request), () => statesAsText(request));
+    if (request) this.sphere.change({ mueller: request.mueller, convention: request.convention, azimuthDeg, elevationDeg });
+  }
+
+  /** The chosen input in words, and what becomes of it; both ringed on the sphere. */
+  readOut() {
+    const told = this.pointed ?? this.state;
+    const state = this.mapped[told];
+    if (!state) return;
+    this.stateChoice.selectedIndex = told;
+    this.stateText.replaceChildren(stateText(state.input), make("br", null), state.output.degree === null ? "is blocked." : `becomes ${stateText(state.output)}.`);
+    this.sphere.onScreen = { chosen: state.label };
+    this.sphere.request();
   }
 
   /**
-   * The chosen input in words, and what becomes of it.
-   * @param {Pick<import("../types.js").Request, "mueller" | "convention">} request
+   * The input whose mark, or whose output's, is at this place of the sphere.
+   * @param {PointerEvent} event
+   * @returns {number | null}
    */
-  readOut({ mueller, convention }) {
-    const states = quick.mapStates({ mueller, convention });
-    const chosen = states[this.state] ?? states[0];
-    if (!chosen) return;
-    repaint(
-      this.stateWords,
-      choice({
-        id: "state",
-        label: "Input state",
-        value: String(this.state),
-        options: states.map(({ label }, index) => [String(index), label]),
-        change: (value) => {
-          this.state = Number(value);
-          this.readOut({ mueller, convention });
-        },
-      }),
-      ` becomes ${stateText(chosen.output)}.`,
-    );
+  stateAt({ offsetX, offsetY, pointerType }) {
+    const { data, width } = this.sphere;
+    if (!data || width === 0) return null;
+    const reach = pointerType === "touch" ? 24 : 12;
+    const marks = quick.sphereMarks(/** @type {any} */ ({ ...data, frame: { width } }));
+    const near = marks
+      .flatMap(({ label, input, output }) => [input, output ?? input].map(([x, y]) => ({ label, away: Math.hypot(x - offsetX, y - offsetY) })))
+      .reduce((best, mark) => (mark.away < best.away ? mark : best));
+    const index = this.mapped.findIndex(({ label }) => label === near.label);
+    return near.away <= reach && index >= 0 ? index : null;
   }
 
-  /**
-   * The six inputs and what becomes of them, in numbers.
-   * @param {import("../types.js").Request} request
-   */
-  states({ mueller, convention }) {
+  /** The six inputs and what becomes of them, in numbers. */
+  states() {
     const head = ["input", "S0", "S1", "S2", "S3", "degree", "azimuth", "ellipticity"];
-    const states = quick.mapStates({ mueller, convention });
     return make(
       "table",
       { class: "data states" },
@@ -158,14 +177,14 @@ export class PropertiesPanel {
       make(
         "tbody",
         null,
-        states.map(({ label, output }) =>
+        this.mapped.map(({ label, output }) =>
           make(
             "tr",
             null,
             make("th", { scope: "row" }, label),
             output.stokes.map((value) => make("td", { class: "number" }, fixed(value, 4))),
             make("td", { class: "number" }, output.degree === null ? "none" : fixed(output.degree, 4)),
-            make("td", { class: "number" }, output.azimuthDeg === null ? "none" : `${fixed(output.azimuthDeg, 2)}°`),
+            make("td", { class: "number" }, output.azimuthDeg === null ? "none" : azimuthText(output.azimuthDeg)),
             make("td", { class: "number" }, output.ellipticityDeg === null ? "none" : `${fixed(output.ellipticityDeg, 2)}°`),
           ),
         ),
@@ -402,13 +421,29 @@ export class PropertiesPanel {
     };
     /** @type {{ x: number, y: number } | null} */
     let last = null;
+    let isTap = false;
+    /** @param {number | null} pointed */
+    const point = (pointed) => {
+      if (pointed === this.pointed) return;
+      this.pointed = pointed;
+      canvas.classList.toggle("on-mark", pointed !== null);
+      this.readOut();
+    };
     canvas.addEventListener("pointerdown", (event) => {
       if (event.button !== 0) return;
       last = { x: event.clientX, y: event.clientY };
+      isTap = true;
       canvas.setPointerCapture(event.pointerId);
     });
     canvas.addEventListener("pointermove", (event) => {
-      if (!last) return;
+      if (!last) {
+        point(this.stateAt(event));
+        return;
+      }
+      // A hand is never quite still.
+      if (isTap && Math.hypot(event.clientX - last.x, event.clientY - last.y) < 4) return;
+      isTap = false;
+      point(null);
       const scale = 180 / canvas.clientWidth;
       // The front follows the pointer. A finger turns sideways only; up and down scrolls.
       by((last.x - event.clientX) * scale, event.pointerType === "touch" ? 0 : (event.clientY - last.y) * scale);
@@ -416,9 +451,17 @@ export class PropertiesPanel {
     });
     const end = () => {
       last = null;
+      isTap = false;
     };
-    canvas.addEventListener("pointerup", end);
+    canvas.addEventListener("pointerup", (event) => {
+      const tapped = isTap ? this.stateAt(event) : null;
+      end();
+      if (tapped === null) return;
+      this.state = tapped;
+      this.readOut();
+    });
     canvas.addEventListener("pointercancel", end);
+    canvas.addEventListener("pointerleave", () => point(null));
     canvas.addEventListener("keydown", (event) => {
       const step = event.shiftKey ? 1 : 5;
       /** @type {{ [key: string]: [number, number] }} */
@@ -470,11 +513,30 @@ function differentialTable(differential) {
  * @param {import("../types.js").State} state
  */
 function stateText({ stokes, degree, azimuthDeg, ellipticityDeg }) {
-  if (degree === null) return "no light";
-  const parts = [`S = (${stokes.map((value) => fixed(value, 4)).join(", ")})`, `degree of polarization ${fixed(degree, 4)}`];
-  if (azimuthDeg !== null) parts.push(`azimuth ${fixed(azimuthDeg, 2)}°`);
+  const parts = [`S = (${stokes.map((value) => fixed(value, 4)).join(", ")})`];
+  if (degree !== null) parts.push(`degree of polarization ${fixed(degree, 4)}`);
+  if (azimuthDeg !== null) parts.push(`azimuth ${azimuthText(azimuthDeg)}`);
   if (ellipticityDeg !== null) parts.push(`ellipticity ${fixed(ellipticityDeg, 2)}°`);
   return parts.join(", ");
+}
+
+/**
+ * Azimuths end where they begin: 179.999° is 0.00°, not 180.00°.
+ * @param {number} degrees in [0, 180)
+ */
+function azimuthText(degrees) {
+  return `${fixed(degrees < 179.995 ? degrees : 0, 2)}°`;
+}
+
+/**
+ * Whether nothing differs but the side that the sphere is seen from.
+ * @param {Shown} before
+ * @param {Shown} now
+ */
+function isOnlyTurned(before, now) {
+  /** @param {Shown} shown */
+  const rest = ({ view }) => JSON.stringify({ ...view, azimuthDeg: 0, elevationDeg: 0 });
+  return now.result !== null && before.result === now.result && before.request === now.request && before.pending === now.pending && rest(before) === rest(now);
 }
 
 /** The parts of the characteristic decomposition. */
