@@ -83,10 +83,9 @@ impl FigureTable {
 const NO_NOISE: &str = "no noise was stated";
 const NOT_ASKED: &str = "no draws were asked for";
 const NEAR_ZERO: &str = "within three standard errors of 0: read it as an upper limit";
-const UPPER_LIMIT: &str = "not different from 0: the upper end is a limit of 95 %";
-const NEAR_END: &str =
-    "within three standard errors of half a wave: the lower end is a limit of 95 %";
-const AT_ZERO: &str = "not different from 0, where it ends: the upper end is a limit of 95 %";
+const UPPER_LIMIT: &str = "not different from 0";
+const NEAR_END: &str = "within three standard errors of half a wave";
+const AT_ZERO: &str = "not different from 0, where it ends";
 const NEAR_EIGENVALUES: &str =
     "two eigenvalues lie within three standard errors, so there is no interval";
 const WIDE_ANGLE: &str = "the noise leaves more than half of the period open";
