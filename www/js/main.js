@@ -10,6 +10,7 @@ import { Grid } from "./grid.js";
 import { listenForHelp } from "./help.js";
 import { configurationOf, fromConfiguration, noiseChoice, textOf, withoutSeries } from "./link.js";
 import { ManyPanel, manyOf } from "./many.js";
+import { tinyMatrix } from "./matrix-view.js";
 import { meanOf } from "./mean.js";
 import { NoisePanel, forEngine, noiseOf, printedNoise, repeatsNoise } from "./noise.js";
 import { PropertiesPanel } from "./panels/properties.js";
@@ -243,9 +244,14 @@ async function takeLarge(how, content, name, file, options = {}) {
       showBanner(
         [
           "This array can be read in more than one way. Its matrices are counted by ",
-          [parsed, ...others].map(({ reading }) => {
+          [parsed, ...others].map(({ reading, matrices }) => {
             const stacking = reading.stacking === "last" ? "last" : "first";
-            return [make("button", { type: "button", id: `stack-${stacking}`, onclick: () => void takeLarge(how, content, name, file, { stacking }) }, `the ${stacking} axis`), " "];
+            return make(
+              "span",
+              { class: "alternative" },
+              tinyMatrix(`Its first matrix by the ${stacking} axis`, matrices[0]?.mueller ?? []),
+              make("button", { type: "button", id: `stack-${stacking}`, onclick: () => void takeLarge(how, content, name, file, { stacking }) }, `the ${stacking} axis`),
+            );
           }),
         ],
         true,

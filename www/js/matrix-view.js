@@ -1,7 +1,7 @@
 /** Matrices on the page: as numbers, and as coloured cells. */
 import { make } from "./dom.js";
 import { matrixText } from "./exports.js";
-import { elementName, fixed, fullText, rows, significant } from "./format.js";
+import { cellText, elementName, fixed, fullText, rows, significant } from "./format.js";
 import { writeClipboard } from "./paste.js";
 
 /** The strongest tint, so that text on it stays readable. */
@@ -26,6 +26,20 @@ export function matrixTable(id, title, matrix, tell) {
       { class: "numbers", "aria-label": title },
       make("tbody", null, rows(matrix).map((row) => make("tr", null, row.map((value) => make("td", { title: fullText(value) }, fixed(value, digits)))))),
     ),
+  );
+}
+
+/**
+ * Sixteen numbers in small, to tell two readings apart.
+ * @param {string} label
+ * @param {number[]} matrix
+ * @param {number | null} [decimals] printed resolution
+ */
+export function tinyMatrix(label, matrix, decimals = null) {
+  return make(
+    "table",
+    { class: "tiny", "aria-label": label },
+    make("tbody", null, rows(matrix).map((row) => make("tr", null, row.map((value) => make("td", null, cellText(fullText(value, decimals))))))),
   );
 }
 

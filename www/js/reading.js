@@ -1,6 +1,7 @@
 /** What was understood of the pasted text, with a control for each guess, and the text itself. */
 import { choice, fold, make, repaint } from "./dom.js";
-import { cellText, elementName, fullText, readNumber, rows, withMinus } from "./format.js";
+import { elementName, readNumber, withMinus } from "./format.js";
+import { tinyMatrix } from "./matrix-view.js";
 
 /**
  * @typedef {import("./types.js").Measurement} Measurement
@@ -241,13 +242,7 @@ export class ReadingPanel {
         return make(
           "div",
           { class: "alternative" },
-          first
-            ? make(
-                "table",
-                { class: "tiny", "aria-label": `Reading ${index + 1}` },
-                make("tbody", null, rows(first.mueller).map((row) => make("tr", null, row.map((value) => make("td", null, cellText(fullText(value, first.decimals))))))),
-              )
-            : null,
+          first ? tinyMatrix(`Reading ${index + 1}`, first.mueller, first.decimals) : null,
           make("button", { type: "button", id: `use-reading-${index}`, onclick: () => this.actions.reread(options) }, `Use the decimal ${decimal}`),
         );
       }),
