@@ -2,7 +2,7 @@
 import { fullText, tableOf } from "./format.js";
 import { meanOf } from "./mean.js";
 import { repeatsNoise } from "./noise.js";
-import { noMeasurement, usualConvention } from "./state.js";
+import { noMeasurement, usualConvention, usualView } from "./state.js";
 
 /**
  * @typedef {import("./types.js").Work} Work
@@ -13,8 +13,8 @@ import { noMeasurement, usualConvention } from "./state.js";
  * @typedef {{ v: number, [block: string]: any }} Configuration
  */
 
-/** The blocks that the page itself shows. All others are only kept. */
-const SHOWN = new Set(["v", "app", "task", "label", "measurement", "compareWith", "series", "dataFile", "examine", "view"]);
+/** The blocks that say what was measured and how it is shown. */
+const OWN = new Set(["v", "app", "task", "label", "measurement", "compareWith", "series", "dataFile", "examine", "view"]);
 
 /** In a view all values are numbers. */
 const RETARDANCE_UNITS = /** @type {const} */ (["deg", "waves", "nm"]);
@@ -22,31 +22,15 @@ const RETARDANCE_UNITS = /** @type {const} */ (["deg", "waves", "nm"]);
 /**
  * @param {Work} work
  * @param {View} view
- * @param {Request} request the measured matrix as the engine gets it
+ * @param {Request | null} request the measured matrix as the engine gets it; null where there is none
  * @param {boolean} textHolds whether the text says the same as the cells
  * @param {string} app version of the engine
  * @returns {Configuration}
  */
 export function configurationOf(work, view, request, textHolds, app) {
   const { measurement } = work;
-  const measured = { normalised: request.normalised, absolute: request.absolute, convention: request.convention, noise: request.noise };
-  const { many } = measurement;
-  const second = many?.use === "pair" ? many.matrices[1] : undefined;
-  return {
-    ...work.kept,
-    v: 1,
-    app,
-    task: view.task,
-    ...(measurement.label ? { label: measurement.label } : {}),
-    measurement: {
-      mueller: request.noise.kind === "replicates" ? null : request.mueller,
-      ...measured,
-      ...(textHolds && measurement.text ? { text: measurement.text } : {}),
-      ...(measurement.example ? { example: true } : {}),
-    },
-    ...(second ? { compareWith: { mueller: second, ...measured } } : {}),
-    ...(many && request.noise.kind !== "replicates" ? { series: seriesOf(many, textHolds) } : {}),
-    ...(many?.source ? { dataFile: { name: many.source, sha256: many.sha256 } } : {}),
+  const head = { ...work.blocks, v: 1, app, task: view.task, ...(measurement.label ? { label: measurement.label } : {}) };
+  const tail = {
     examine: work.examine,
     view: {
       azimuthDeg: view.azimuthDeg,
@@ -56,6 +40,23 @@ export function configurationOf(work, view, request, textHolds, app) {
       wavelengthNm: view.wavelengthNm,
     },
   };
+  if (!request) return { ...head, ...tail };
+  const measured = { normalised: request.normalised, absolute: request.absolute, convention: request.convention, noise: request.noise };
+  const { many } = measurement;
+  const second = many?.use === "pair" ? many.matrices[1] : undefined;
+  return {
+    ...head,
+    measurement: {
+      mueller: request.noise.kind === "replicates" ? null : request.mueller,
+      ...measured,
+      ...(textHolds && measurement.text ? { text: measurement.text } : {}),
+      ...(measurement.example ? { example: true } : {}),
+    },
+    ...(second ? { compareWith: { mueller: second, ...measured } } : {}),
+    ...(many && request.noise.kind !== "replicates" ? { series: seriesOf(many, textHolds) } : {}),
+    ...(many?.source ? { dataFile: { name: many.source, sha256: many.sha256 } } : {}),
+    ...tail,
+  };
 }
 
 /**
@@ -64,6 +65,7 @@ export function configurationOf(work, view, request, textHolds, app) {
  * @returns {Configuration}
  */
 export function withoutSeries({ series, measurement, ...rest }) {
+  if (!measurement) return rest;
   const { text, ...measured } = measurement;
   return { ...rest, measurement: measured };
 }
@@ -91,9 +93,9 @@ function seriesOf({ use, matrices, labels, coordinates, source }, textHolds) {
  */
 export function fromConfiguration(configuration, before, parse) {
   /** @type {{ [block: string]: unknown }} */
-  const kept = {};
+  const blocks = {};
   for (const [block, value] of Object.entries(configuration)) {
-    if (!SHOWN.has(block)) kept[block] = value;
+    if (!OWN.has(block)) blocks[block] = value;
   }
   const examine = configuration.examine ?? {};
   const view = configuration.view ?? {};
@@ -101,11 +103,11 @@ export function fromConfiguration(configuration, before, parse) {
     work: {
       measurement: measurementOf(configuration, parse),
       examine: { draws: examine.draws ?? 2000, seed: examine.seed ?? 1 },
-      kept,
+      blocks,
     },
     view: {
       ...before,
-      task: configuration.task === "properties" ? "properties" : "realizability",
+      task: typeof configuration.task === "string" ? configuration.task : usualView().task,
       azimuthDeg: view.azimuthDeg ?? before.azimuthDeg,
       elevationDeg: view.elevationDeg ?? before.elevationDeg,
       firstIndex: (view.firstIndex ?? before.firstIndex) === 1 ? 1 : 0,

@@ -13,13 +13,12 @@ import { ManyPanel, manyOf } from "./many.js";
 import { tinyMatrix } from "./matrix-view.js";
 import { meanOf } from "./mean.js";
 import { NoisePanel, forEngine, noiseOf, printedNoise, repeatsNoise } from "./noise.js";
-import { PropertiesPanel } from "./panels/properties.js";
-import { RealizabilityPanel } from "./panels/realizability.js";
 import { linkIn, listen, writeClipboard } from "./paste.js";
 import { followTheme } from "./plots.js";
 import { ProvenancePanel } from "./provenance.js";
 import { ReadingPanel } from "./reading.js";
 import { Store, noMeasurement } from "./state.js";
+import { TASKS, TASK_BLOCKS, taskNamed } from "./tasks.js";
 import { isSingleFile, loadExamples, publicAddress } from "./where.js";
 import { detectionText, verdictOf } from "./words.js";
 
@@ -28,7 +27,6 @@ import { detectionText, verdictOf } from "./words.js";
  * @typedef {import("./types.js").Request} Request
  * @typedef {import("./types.js").Examination} Examination
  * @typedef {import("./types.js").Example} Example
- * @typedef {import("./types.js").Task} Task
  * @typedef {import("./reading.js").ReadOutcome} ReadOutcome
  */
 
@@ -82,8 +80,27 @@ const noise = new NoisePanel(byId("noise"), {
 /** Why the engine does not take the noise statement. @type {string | null} */
 let noiseRefused = null;
 const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
-const realizability = new RealizabilityPanel(byId("realizability-panel"), { useNearest, use: useMatrix, tell: (message) => tell(message), failed: fail, format });
-const properties = new PropertiesPanel(byId("properties-panel"), { view: (view) => store.setView(view), tell: (message) => tell(message), failed: fail, format });
+const tasks = TASKS.map((entry) => {
+  const link = make("a", { href: `#${entry.name}`, "data-task": entry.name }, entry.label);
+  link.addEventListener("click", (event) => {
+    // The fragment of the address belongs to links.
+    event.preventDefault();
+    store.setView({ task: entry.name });
+  });
+  byId("tasks").append(link);
+  const root = make("div", { id: `${entry.name}-panel` });
+  byId("panels").append(root);
+  const panel = entry.panel(root, {
+    useNearest,
+    use: useMatrix,
+    change: changeBlocks,
+    view: (view) => store.setView(view),
+    tell: (message) => tell(message),
+    failed: fail,
+    format,
+  });
+  return { ...entry, link, root, panel };
+});
 
 const provenance = new ProvenancePanel(byId("provenance"), { info: () => quick.engineInfo(), link: linkNow, tell: (message) => tell(message) });
 
@@ -102,15 +119,7 @@ byId("undo").addEventListener("click", undo);
 byId("redo").addEventListener("click", redo);
 byId("copy-link").addEventListener("click", copyLink);
 listenForHelp(byId("help-button"));
-for (const link of document.querySelectorAll("nav a[data-task]")) {
-  link.addEventListener("click", (event) => {
-    event.preventDefault();
-    const task = /** @type {HTMLElement} */ (link).dataset["task"];
-    store.setView({ task: task === "properties" ? "properties" : "realizability" });
-  });
-}
 byId("skip").addEventListener("click", (event) => {
-  // The fragment of the address belongs to links.
   event.preventDefault();
   byId("task").focus();
 });
@@ -207,6 +216,7 @@ function take(text, name, { fresh = false, merge, options = {}, pick = 0, exampl
  */
 function takeText(text, name) {
   if (isConfiguration(text)) openConfiguration(() => quick.decodeFile(text), "file");
+  else if (shownTask().panel.paste?.(text)) return;
   else if (text.length > LONG_TEXT) void takeLarge("parseMatrices", text, name, { name: "", sha256: "" });
   else take(text, name, { fresh: true });
 }
@@ -351,6 +361,21 @@ function change(name, part, how = {}) {
   // Repeats speak of their own mean: with other numbers, their scatter is no statement.
   if (measurement.noise.kind === "replicates" && measurement.many?.use !== "repeats") measurement.noise = noMeasurement().noise;
   store.commit(name, { ...store.work, measurement }, how);
+}
+
+/**
+ * @param {string} name
+ * @param {{ [block: string]: unknown }} changed
+ * @param {string} [merge]
+ */
+function changeBlocks(name, changed, merge) {
+  const blocks = Object.fromEntries(Object.entries({ ...store.work.blocks, ...changed }).filter(([, value]) => value !== undefined));
+  store.commit(name, { ...store.work, blocks }, merge ? { merge } : {});
+}
+
+function shownTask() {
+  const { name } = taskNamed(store.view.task);
+  return /** @type {typeof tasks[number]} */ (tasks.find((task) => task.name === name));
 }
 
 /**
@@ -518,12 +543,11 @@ function render() {
   showOrigin(measurement);
   showExamples(measurement);
   showHistory();
-  for (const link of document.querySelectorAll("nav a[data-task]")) {
-    if (/** @type {HTMLElement} */ (link).dataset["task"] === view.task) link.setAttribute("aria-current", "page");
+  for (const { name, link, root } of tasks) {
+    if (name === shownTask().name) link.setAttribute("aria-current", "page");
     else link.removeAttribute("aria-current");
+    root.hidden = name !== shownTask().name;
   }
-  byId("realizability-panel").hidden = view.task !== "realizability";
-  byId("properties-panel").hidden = view.task !== "properties";
   showTask(request ? null : waiting);
   store.keep();
 }
@@ -533,21 +557,20 @@ function render() {
  */
 function showTask(stale) {
   const { work, view } = store;
+  const task = shownTask();
+  const isEmpty = answer === null && task.needsMatrix;
   const empty = byId("empty");
-  empty.hidden = answer !== null;
-  repaint(empty, answer ? null : firstWords(stale));
+  empty.hidden = !isEmpty;
+  repaint(empty, isEmpty ? firstWords(stale) : null);
   const note = byId("stale");
   note.hidden = !(answer && stale);
   note.textContent = answer && stale ? `${stale} What is shown below belongs to the last matrix that could be read.` : "";
   byId("task").classList.toggle("is-stale", Boolean(answer && stale));
   const shown = { work, view, result: answer?.result ?? null, request: answer?.request ?? null, pending: answer?.pending ?? false, stale, waiting: stale };
   provenance.show(shown);
-  if (view.task === "properties") {
-    realizability.show({ ...shown, result: null, request: null });
-    properties.show(shown);
-  } else {
-    properties.show({ ...shown, result: null, request: null });
-    realizability.show(shown);
+  for (const each of tasks) {
+    if (each === task && isReady && !isEmpty) each.panel.show(shown);
+    else each.panel.clear();
   }
   if (answer && !stale) {
     const { title } = verdictOf(answer.result, answer.request, answer.pending, format);
@@ -662,12 +685,13 @@ function redo() {
  * @returns {{ configuration: import("./link.js").Configuration | null, waiting: string | null }}
  */
 function configurationNow() {
-  const { measurement } = store.work;
+  const { work } = store;
+  const { measurement } = work;
   const outcome = read(measurement.text, measurement.options);
   const { request, waiting } = requestNow(outcome);
-  if (!request) return { configuration: null, waiting: waiting ?? "There is no matrix yet." };
+  if (!request && (waiting !== null || Object.keys(work.blocks).length === 0)) return { configuration: null, waiting: waiting ?? "There is no matrix yet." };
   const textHolds = outcome.parsed !== null && measurement.text.length <= LONG_TEXT;
-  return { configuration: configurationOf(store.work, store.view, request, textHolds, quick.engineInfo().version), waiting: null };
+  return { configuration: configurationOf(work, store.view, request, textHolds, quick.engineInfo().version), waiting: null };
 }
 
 /**
@@ -798,7 +822,7 @@ function openConfiguration(decode, from, fragment) {
     hideProblem();
     store.commit(`the opening of a ${from}`, work, { safe: true });
     const by = typeof configuration["app"] === "string" ? configuration["app"] : "another version";
-    const kept = Object.keys(work.kept);
+    const kept = Object.keys(work.blocks).filter((block) => !TASK_BLOCKS.has(block));
     const file = work.measurement.many ? null : configuration["dataFile"];
     showBanner(
       [

@@ -39,7 +39,7 @@ export function noMeasurement() {
 
 /** @returns {Work} */
 export function noWork() {
-  return { measurement: noMeasurement(), examine: { draws: 2000, seed: 1 }, kept: {} };
+  return { measurement: noMeasurement(), examine: { draws: 2000, seed: 1 }, blocks: {} };
 }
 
 /** @returns {View} */
@@ -168,7 +168,7 @@ export class Store {
       return false;
     }
     if (snapshot?.version !== SNAPSHOT_VERSION || !snapshot.work || !snapshot.view) return false;
-    this.work = { ...snapshot.work, measurement: { ...noMeasurement(), ...snapshot.work.measurement } };
+    this.work = { ...noWork(), ...snapshot.work, measurement: { ...noMeasurement(), ...snapshot.work.measurement } };
     this.view = { ...usualView(), ...snapshot.view };
     this.fragment = snapshot.fragment ?? "";
     this.safe = snapshot.safe ? this.work : noWork();

@@ -1,7 +1,6 @@
 /**
  * The shapes that the page and the engine exchange, as JSDoc types.
  *
- * @typedef {"realizability" | "properties"} Task
  * @typedef {"light" | "dark" | "print"} Theme
  *
  * @typedef {Required<import("../halfshade.js").Convention>} Convention
@@ -71,10 +70,11 @@
  * @typedef {object} Work everything that undo covers; never changed in place
  * @property {Measurement} measurement
  * @property {{ draws: number, seed: number }} examine
- * @property {{ [block: string]: unknown }} kept blocks of a link that this page does not use
+ * @property {{ [block: string]: unknown }} blocks the other blocks of the configuration: the states of the tasks, and
+ *   what only another version knows
  *
  * @typedef {object} View what undo leaves alone
- * @property {Task} task
+ * @property {string} task
  * @property {number} azimuthDeg
  * @property {number} elevationDeg
  * @property {0 | 1} firstIndex what the first row and column are called

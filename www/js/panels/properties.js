@@ -90,6 +90,14 @@ export class PropertiesPanel {
     root.append(this.head, this.body);
   }
 
+  clear() {
+    this.shown = null;
+    this.body.hidden = true;
+    repaint(this.head);
+    this.sphere.show(null);
+    this.ellipses.show(null);
+  }
+
   /** @param {Shown} shown */
   show(shown) {
     const before = this.shown;
@@ -102,9 +110,7 @@ export class PropertiesPanel {
     }
     this.body.hidden = !result;
     if (!result || !request) {
-      repaint(this.head);
-      this.sphere.show(null);
-      this.ellipses.show(null);
+      this.clear();
       return;
     }
     const { format } = this.actions;

@@ -43,13 +43,17 @@ export class RealizabilityPanel {
     root.append(this.head, this.causes.element, this.plot.element, this.below);
   }
 
+  clear() {
+    this.plot.show(null);
+    repaint(this.head);
+    repaint(this.below);
+    this.causes.element.hidden = true;
+  }
+
   /** @param {Shown} shown */
   show({ result, request, pending, work }) {
     if (!result || !request) {
-      this.plot.show(null);
-      repaint(this.head);
-      repaint(this.below);
-      this.causes.element.hidden = true;
+      this.clear();
       return;
     }
     const { format, useNearest } = this.actions;

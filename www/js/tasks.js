@@ -1,0 +1,45 @@
+/** The tasks, in the order of the page: what each is called, what it needs, and its panel. */
+import { PropertiesPanel } from "./panels/properties.js";
+import { RealizabilityPanel } from "./panels/realizability.js";
+
+/**
+ * @typedef {object} TaskActions what a panel may do to the rest of the page
+ * @property {() => void} useNearest take the nearest realizable matrix over
+ * @property {(mueller: number[], name: string) => void} use take a computed matrix over as the measured one, as one step
+ * @property {(name: string, blocks: { [block: string]: unknown }, merge?: string) => void} change take new blocks over as
+ *   one step; `undefined` removes one
+ * @property {(view: Partial<import("./types.js").View>) => void} view
+ * @property {(message: string) => void} tell
+ * @property {(error: unknown) => void} failed
+ * @property {import("./types.js").FormatValue} format
+ *
+ * @typedef {object} TaskPanel
+ * @property {(shown: import("./types.js").Shown) => void} show
+ * @property {() => void} clear another task is shown, or nothing can be
+ * @property {(text: string) => boolean} [paste] a text that was pasted or dropped anywhere; false where it is not
+ *   for this task
+ *
+ * @typedef {object} TaskEntry
+ * @property {string} name in links, and in the identities of its elements
+ * @property {string} label
+ * @property {boolean} needsMatrix whether there is nothing to show without a measured matrix
+ * @property {string[]} blocks the blocks of a configuration that hold its state
+ * @property {(root: HTMLElement, actions: TaskActions) => TaskPanel} panel
+ */
+
+/** @type {TaskEntry[]} */
+export const TASKS = [
+  { name: "realizability", label: "Realizability", needsMatrix: true, blocks: [], panel: (root, actions) => new RealizabilityPanel(root, actions) },
+  { name: "properties", label: "Properties", needsMatrix: true, blocks: [], panel: (root, actions) => new PropertiesPanel(root, actions) },
+];
+
+/**
+ * The task of this name; the first where there is none.
+ * @param {unknown} name
+ */
+export function taskNamed(name) {
+  return TASKS.find((task) => task.name === name) ?? /** @type {TaskEntry} */ (TASKS[0]);
+}
+
+/** The blocks that some task shows. */
+export const TASK_BLOCKS = new Set(TASKS.flatMap((task) => task.blocks));
