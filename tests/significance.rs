@@ -12,13 +12,33 @@ use num_complex::Complex64;
 
 const SIGMA: f64 = 0.005;
 
-/// Pure samples of four kinds, another one for every k.
-fn pure_truth(kind: usize, draws: &mut NormalDraws) -> Mueller {
+/// Kinds of truths, the first four pure.
+const KINDS: usize = 6;
+const PURE_KINDS: usize = 4;
+
+/// Samples of six kinds, another one for every k.
+fn truth(kind: usize, draws: &mut NormalDraws) -> Mueller {
     let angle = draws.draw();
     match kind {
         0 => elements::elliptical_retarder(1.0 + angle, angle, 0.3).unwrap(),
         1 => elements::linear_diattenuator(1.0, 0.0, angle).unwrap(),
         2 => elements::linear_diattenuator(0.9, 0.4, angle).unwrap(),
+        4 => {
+            elements::isotropic_depolarizer(0.01).unwrap()
+                * elements::linear_retarder(1.3, angle).unwrap()
+        }
+        5 => {
+            let parts = [
+                elements::linear_retarder(1.3, angle).unwrap().row_major(),
+                elements::linear_diattenuator(0.9, 0.4, 0.3)
+                    .unwrap()
+                    .row_major(),
+            ];
+            Mueller::from_row_major(&std::array::from_fn(|k| {
+                0.8 * parts[0][k] + 0.2 * parts[1][k]
+            }))
+            .unwrap()
+        }
         _ => {
             let mut entry = || Complex64::new(draws.draw(), draws.draw()) * 0.5;
             Jones::from_rows([[entry(), entry()], [entry(), entry()]])
@@ -42,7 +62,7 @@ fn rejected(count: u32, kind: usize, m00_is_exact: bool) -> f64 {
     let mut draws = NormalDraws::new(40 + kind as u64);
     let mut rejections = 0;
     for k in 0..count {
-        let truth = pure_truth(kind, &mut draws);
+        let truth = truth(kind, &mut draws);
         // Relative to the transmittance, as a bench has it.
         let sigma = SIGMA * truth.m00();
         let measured = noisy(&truth, sigma, m00_is_exact, &mut draws);
@@ -54,20 +74,22 @@ fn rejected(count: u32, kind: usize, m00_is_exact: bool) -> f64 {
     f64::from(rejections) / f64::from(count)
 }
 
-/// Rejection at 5 % between 3 % and 7 % over 2000 truths of each kind (design:
-/// physics section 5, measured there as 4 to 5.5 %).
+/// Rejection at 5 % never above 7 %, and not below 3 % for pure samples, over 2000 truths of
+/// each kind. *Derived*: 5 % is what the test promises; 2000 leave a standard deviation of
+/// 0.5 %. Mixtures may be rejected less often.
 #[test]
 #[ignore = "takes a minute: cargo test --release --test significance -- --ignored"]
 fn size_of_the_test_in_full() {
-    for kind in 0..4 {
+    for kind in 0..KINDS {
         for m00_is_exact in [false, true] {
             let share = rejected(2000, kind, m00_is_exact);
             println!(
                 "kind {kind}, M00 exact {m00_is_exact}: {:.2} %",
                 100.0 * share
             );
+            let least = if kind < PURE_KINDS { 0.03 } else { 0.0 };
             assert!(
-                (0.03..=0.07).contains(&share),
+                (least..=0.07).contains(&share),
                 "{kind} {m00_is_exact}: {share}"
             );
         }
@@ -79,11 +101,38 @@ fn size_of_the_test_in_full() {
 #[test]
 fn size_of_the_test() {
     for m00_is_exact in [false, true] {
-        let share = (0..4)
+        let share = (0..PURE_KINDS)
             .map(|kind| rejected(200, kind, m00_is_exact))
             .sum::<f64>()
-            / 4.0;
+            / PURE_KINDS as f64;
         assert!((0.03..=0.07).contains(&share), "{m00_is_exact}: {share}");
+        // Four standard deviations of a count of 200 with 5 %.
+        for kind in PURE_KINDS..KINDS {
+            let share = rejected(200, kind, m00_is_exact);
+            assert!(share <= 0.11, "{kind} {m00_is_exact}: {share}");
+        }
+    }
+}
+
+/// *Derived* from the purpose: M00 low by 3 % at σ = 0.005 is six standard deviations of
+/// M00, and at least 90 in 100 such measurements of a pure sample are told from noise.
+#[test]
+fn a_gain_error_of_three_per_cent_is_seen() {
+    let trials = 200;
+    for kind in 0..PURE_KINDS {
+        let mut draws = NormalDraws::new(7);
+        let mut seen = 0;
+        for k in 0..trials {
+            let truth = truth(kind, &mut draws);
+            let sigma = SIGMA * truth.m00();
+            let mut elements = truth.row_major();
+            elements[0] *= 0.97;
+            let wrong = Mueller::from_row_major(&elements).unwrap();
+            let measured = noisy(&wrong, sigma, false, &mut draws);
+            let test = significance(&measured, false, sigma, k).unwrap().unwrap();
+            seen += u32::from(test.p_value < 0.05);
+        }
+        assert!(seen >= 180, "{kind}: {seen} of {trials}");
     }
 }
 

@@ -128,11 +128,13 @@ pub fn weighted_significance(
         let errors = covariance.draw(&mut draws);
         let elements = std::array::from_fn(|k| mean[k] + errors[k]);
         let values = Coherency::from_elements(&elements).eigen()?.values;
+        let estimate = measurement.draw_covariance(&mut draws)?;
         // Most of the time there is something to do; where not, the distance is zero.
         let simulated = if values[3] >= 0.0 {
             0.0
         } else {
-            weighted_distance(&elements, covariance)?.unwrap_or(f64::MAX)
+            weighted_distance(&elements, estimate.as_ref().unwrap_or(covariance))?
+                .unwrap_or(f64::MAX)
         };
         beyond += u32::from(simulated >= statistic);
     }

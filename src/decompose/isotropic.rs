@@ -2,7 +2,6 @@ use crate::coherency::{Coherency, jones_of};
 use crate::linalg::HermitianEigen;
 use crate::mueller::{Jones, Mueller};
 use crate::noise::Measurement;
-use crate::stats::{chi_squared_tail, f_tail};
 use crate::tolerance;
 
 /// A pure element with isotropic depolarization, in parallel:
@@ -64,12 +63,6 @@ pub fn isotropic(measurement: &Measurement, eigen: &HermitianEigen) -> Option<Is
         mueller,
         chi_square,
         degrees_of_freedom,
-        p_value: chi_square.and_then(|value| match measurement.sigma_freedom() {
-            Some(freedom) => {
-                let numerator = f64::from(degrees_of_freedom);
-                f_tail(value / numerator, numerator, freedom)
-            }
-            None => chi_squared_tail(value, degrees_of_freedom),
-        }),
+        p_value: chi_square.and_then(|value| measurement.tail(value, degrees_of_freedom)),
     })
 }

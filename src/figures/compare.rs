@@ -2,7 +2,6 @@ use super::errors::Gradients;
 use super::values::{Analysis, FigureName};
 use crate::error::Result;
 use crate::noise::Measurement;
-use crate::stats::{Covariance, chi_squared_tail};
 
 /// How two measurements differ.
 #[derive(Debug, Clone, PartialEq)]
@@ -12,11 +11,12 @@ pub struct Comparison {
     /// The same in standard deviations of the difference; `None` where a noise is not
     /// stated, zero for an element that is exact in both.
     pub in_sigma: Option<[f64; 16]>,
-    /// `dᵀ (Σ1 + Σ2)⁻¹ d` over the elements that are not exact in both.
+    /// `dᵀ Σ⁻¹ d` over the elements that are not exact in both, Σ that of the difference.
     pub chi_square: Option<f64>,
     /// How many these are.
     pub degrees_of_freedom: u32,
-    /// Of χ².
+    /// Of that: χ², or what takes its place where a noise is an estimate
+    /// ([`Measurement::tail`]).
     pub p_value: Option<f64>,
     /// Differences of the figures with their standard errors, angles in radians.
     pub figures: Vec<(FigureName, Difference)>,
@@ -31,14 +31,15 @@ pub struct Difference {
     pub se: Option<f64>,
 }
 
-/// Compares two measurements with independent errors.
+/// Compares two measurements with independent noise. The same systematic statement for both
+/// is that of one instrument: its errors are shared, and mostly cancel.
 ///
 /// # Errors
-/// `no-convergence`; those of [`Covariance::new`].
+/// `no-convergence`; those of [`Covariance::new`](crate::stats::Covariance::new).
 pub fn compare(first: &Measurement, second: &Measurement) -> Result<Comparison> {
     let (a, b) = (first.mueller().row_major(), second.mueller().row_major());
     let difference: [f64; 16] = std::array::from_fn(|k| b[k] - a[k]);
-    let covariance = sum_of(first, second)?;
+    let (covariance, freedom) = first.of_difference(second)?.unzip();
     let in_sigma = covariance.as_ref().map(|covariance| {
         std::array::from_fn(|k| {
             if covariance.is_held(k) {
@@ -72,10 +73,10 @@ pub fn compare(first: &Measurement, second: &Measurement) -> Result<Comparison> 
             }
         });
         let se = gradients.as_ref().and_then(|(one, other)| {
-            let of = |gradients: &Gradients, measurement: &Measurement| {
-                measurement.standard_error(gradients.figures[name as usize].as_ref()?)
-            };
-            Some(of(one, first)?.hypot(of(other, second)?)).filter(|se| se.is_finite())
+            let of = |gradients: &Gradients| gradients.figures[name as usize];
+            first
+                .standard_error_of_difference(&of(one)?, second, &of(other)?)
+                .filter(|se| se.is_finite())
         });
         (
             name,
@@ -88,26 +89,11 @@ pub fn compare(first: &Measurement, second: &Measurement) -> Result<Comparison> 
     Ok(Comparison {
         difference,
         in_sigma,
-        p_value: chi_square.and_then(|value| chi_squared_tail(value, degrees_of_freedom)),
+        p_value: chi_square
+            .zip(freedom)
+            .and_then(|(value, freedom)| freedom.tail(value, degrees_of_freedom)),
         chi_square,
         degrees_of_freedom,
         figures: figures.to_vec(),
     })
-}
-
-/// `None` unless the noise of both is stated.
-fn sum_of(first: &Measurement, second: &Measurement) -> Result<Option<Covariance>> {
-    let whole = |measurement: &Measurement| -> Result<Option<[f64; 256]>> {
-        if let Some(covariance) = measurement.covariance() {
-            return Ok(Some(covariance.row_major()));
-        }
-        let sigma = measurement.element_sigma();
-        sigma
-            .map(|sigma| Ok(Covariance::diagonal(&sigma)?.row_major()))
-            .transpose()
-    };
-    let (Some(one), Some(other)) = (whole(first)?, whole(second)?) else {
-        return Ok(None);
-    };
-    Covariance::new(&std::array::from_fn(|k| one[k] + other[k])).map(Some)
 }

@@ -20,7 +20,9 @@ pub enum Method {
     /// For a length near zero: the noncentral chi-squared distribution of its square,
     /// inverted.
     NoncentralChiSquared,
-    /// A length that may be zero: 95 % below the upper end.
+    /// A length that may be zero: the upper end of its interval by the noncentral
+    /// chi-squared distribution alone. Which of the two is given depends on the
+    /// measurement, and a limit of 95 % on one side would then hold the truth less often.
     UpperLimit,
     /// A figure at the end of its range: 95 % on one side.
     OneSided,
@@ -373,14 +375,14 @@ impl Length {
         if self.ratio >= FAR_FROM_ZERO.powi(2) {
             return None;
         }
+        let (low, high) = self.two_sided()?;
         if self.ratio <= chi_squared_95(self.freedom)? {
             return Some(Interval {
                 low: None,
-                high: Some(self.at(noncentrality_at(self.ratio, self.freedom, 0.05)?)),
+                high: Some(high),
                 method: Method::UpperLimit,
             });
         }
-        let (low, high) = self.two_sided()?;
         both(low, high, Method::NoncentralChiSquared)
     }
 

@@ -300,6 +300,7 @@ fn noise(measurement: &Fields) -> Result<()> {
         "covariance",
         "decimals",
         "matrices",
+        "systematic",
     ];
     let Some(noise) = measurement.object("noise", &known)? else {
         return Ok(());
@@ -317,7 +318,7 @@ fn noise(measurement: &Fields) -> Result<()> {
     let (kind, part) = noise.required("kind", kind)?;
     if let Some(other) = known
         .iter()
-        .find(|&&name| name != "kind" && name != part && noise.get(name).is_some())
+        .find(|&&name| !["kind", "systematic", part].contains(&name) && noise.get(name).is_some())
     {
         return Err(noise.error(
             "unknown-field",
@@ -325,6 +326,7 @@ fn noise(measurement: &Fields) -> Result<()> {
             &format!("Noise of the kind '{kind}' has no '{other}'."),
         ));
     }
+    systematic(&noise)?;
     match kind {
         "none" => Ok(()),
         "uniform" | "relative" | "rounding" => noise.required(part, noise.number(part)?).map(drop),
@@ -332,6 +334,30 @@ fn noise(measurement: &Fields) -> Result<()> {
         "covariance" => noise.required(part, noise.numbers::<256>(part)?).map(drop),
         _ => matrices(&noise, part).map(drop),
     }
+}
+
+/// The uncertainties of the instrument.
+fn systematic(noise: &Fields) -> Result<()> {
+    let known = ["generator", "analyser", "darkSigma"];
+    let Some(stated) = noise.object("systematic", &known)? else {
+        return Ok(());
+    };
+    stated.number("darkSigma")?;
+    let parts = [
+        "retardanceDeg",
+        "polarizerDeg",
+        "retardanceSigmaDeg",
+        "azimuthSigmaDeg",
+        "contrastSigma",
+    ];
+    for name in ["generator", "analyser"] {
+        if let Some(side) = stated.object(name, &parts)? {
+            for part in parts {
+                side.number(part)?;
+            }
+        }
+    }
+    Ok(())
 }
 
 fn is_matrix(value: &Value) -> bool {

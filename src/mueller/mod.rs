@@ -10,3 +10,4 @@ pub use interface::Interface;
 pub use jones::Jones;
 pub(crate) use jones::PAULI;
 pub use matrix::Mueller;
+pub(crate) use matrix::frame_rotation;

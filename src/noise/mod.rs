@@ -1,10 +1,15 @@
 //! What is known of the noise, and the measurement that carries it.
 
+mod repeats;
+mod systematic;
+
+pub use systematic::{Side, Systematic};
+
 use std::sync::Arc;
 
 use crate::error::{Error, Result};
 use crate::mueller::Mueller;
-use crate::stats::{Covariance, NormalDraws, rounding_sigma};
+use crate::stats::{Covariance, NormalDraws, chi_squared_tail, f_tail, rounding_sigma};
 use crate::tolerance;
 
 /// What the person says of the noise. It refers to the matrix as given.
@@ -32,8 +37,8 @@ pub enum Noise {
         /// 16×16 numbers, row by row.
         covariance: Box<[f64; 256]>,
     },
-    /// The matrix is the mean of measurements of the same sample, whose scatter, pooled
-    /// over the elements, is the noise: see [`Measurement::of_replicates`].
+    /// The matrix is the mean of measurements of the same sample, whose scatter is the
+    /// noise: see [`Measurement::of_replicates`].
     Replicates {
         /// At least two.
         matrices: Vec<Mueller>,
@@ -61,6 +66,18 @@ enum Errors {
     Pooled(f64, f64),
     /// Anything else.
     General(Arc<Covariance>),
+    /// The same, but the covariance is an estimate with so many degrees of freedom.
+    Sampled(Arc<Covariance>, f64),
+}
+
+/// A systematic part beside the random one.
+#[derive(Debug, Clone, PartialEq)]
+struct Common {
+    stated: Systematic,
+    /// What one standard uncertainty of each quantity does to the elements.
+    columns: Vec<[f64; 16]>,
+    /// Of both parts together.
+    covariance: Arc<Covariance>,
 }
 
 /// A measured matrix with what is known of it, canonical convention.
@@ -71,6 +88,7 @@ pub struct Measurement {
     absolute: bool,
     noise: Noise,
     errors: Errors,
+    systematic: Option<Common>,
 }
 
 impl Measurement {
@@ -109,7 +127,9 @@ impl Measurement {
                     covariance
                 })?
             }
-            Noise::Replicates { matrices } => pooled(matrices, &mueller, m00_is_exact)?,
+            Noise::Replicates { matrices } => {
+                repeats::errors_of_mean(matrices, &mueller, m00_is_exact)?
+            }
             &Noise::Rounding { decimals } if decimals <= Noise::MOST_DECIMALS => {
                 Errors::Equal(rounding_sigma(decimals))
             }
@@ -130,14 +150,61 @@ impl Measurement {
             absolute,
             noise,
             errors,
+            systematic: None,
         })
+    }
+
+    /// With uncertainties of the instrument beside the random noise. They are the same in
+    /// every repeat, and add `Σ u² (∂M/∂q)(∂M/∂q)ᵀ` to the covariance; elements that are
+    /// exact stay so.
+    ///
+    /// # Errors
+    /// `bad-systematic` for values out of range, or where the noise itself is not stated;
+    /// those of [`Covariance::new`].
+    pub fn with_systematic(mut self, stated: Systematic) -> Result<Self> {
+        let Some(sigma) = self.element_sigma() else {
+            return Err(Error::new(
+                "bad-systematic",
+                "A systematic part stands beside a random one: state the noise as well.",
+            )
+            .at_field("noise.systematic"));
+        };
+        let mut columns = stated.columns(&self.mueller, self.m00_is_exact)?;
+        if columns.is_empty() {
+            return Ok(self);
+        }
+        for column in &mut columns {
+            for (value, sigma) in column.iter_mut().zip(sigma) {
+                if sigma == 0.0 {
+                    *value = 0.0;
+                }
+            }
+        }
+        let random = self.random_covariance()?.row_major();
+        let covariance = Arc::new(Covariance::new(&with_columns(&random, &columns))?);
+        self.systematic = Some(Common {
+            stated,
+            columns,
+            covariance,
+        });
+        Ok(self)
+    }
+
+    /// Of the random part alone.
+    fn random_covariance(&self) -> Result<Covariance> {
+        match &self.errors {
+            Errors::General(covariance) | Errors::Sampled(covariance, _) => {
+                Ok(covariance.as_ref().clone())
+            }
+            _ => Covariance::diagonal(&self.element_sigma().unwrap_or_default()),
+        }
     }
 
     /// The mean of measurements of the same sample.
     ///
-    /// Their standard deviation is pooled over the elements that are not exact, so that
-    /// it has 16 (n − 1) degrees of freedom, or 15 (n − 1) where M00 is exact; tests
-    /// account for it being an estimate.
+    /// Up to 40 of them have one σ, pooled over the elements that are not exact, so that
+    /// it has 16 (n − 1) degrees of freedom, or 15 (n − 1) where M00 is exact; more have
+    /// their whole covariance, with n − 1. Tests account for both being estimates.
     ///
     /// # Errors
     /// `too-few` for less than two; `bad-sigma` where they do not scatter.
@@ -187,16 +254,17 @@ impl Measurement {
     #[must_use]
     pub fn equal_sigma(&self) -> Option<f64> {
         match self.errors {
+            _ if self.systematic.is_some() => None,
             Errors::Equal(sigma) | Errors::Pooled(sigma, _) => Some(sigma),
             _ => None,
         }
     }
 
-    /// The degrees of freedom of σ, where that is an estimate.
+    /// The degrees of freedom of [`Measurement::equal_sigma`], where that is an estimate.
     #[must_use]
     pub fn sigma_freedom(&self) -> Option<f64> {
         match self.errors {
-            Errors::Pooled(_, freedom) => Some(freedom),
+            Errors::Pooled(_, freedom) if self.systematic.is_none() => Some(freedom),
             _ => None,
         }
     }
@@ -204,16 +272,91 @@ impl Measurement {
     /// The covariance of errors that are not independent and equal.
     #[must_use]
     pub fn covariance(&self) -> Option<&Covariance> {
-        match &self.errors {
-            Errors::General(covariance) => Some(covariance),
+        match (&self.systematic, &self.errors) {
+            (Some(common), _) => Some(&common.covariance),
+            (None, Errors::General(covariance) | Errors::Sampled(covariance, _)) => {
+                Some(covariance)
+            }
             _ => None,
         }
+    }
+
+    /// What other repeats would make of [`Measurement::covariance`]: one draw. `None`
+    /// where it is no estimate.
+    ///
+    /// # Errors
+    /// Those of [`Covariance::new`].
+    pub(crate) fn draw_covariance(&self, draws: &mut NormalDraws) -> Result<Option<Covariance>> {
+        let columns = self
+            .systematic
+            .as_ref()
+            .map_or(&[][..], |common| &common.columns);
+        let random = match (&self.errors, columns) {
+            (Errors::Sampled(covariance, freedom), _) => covariance.draw_estimate(draws, *freedom),
+            (Errors::Pooled(_, freedom), [_, ..]) => {
+                let ratio = draws.draw_sigma_ratio(*freedom);
+                let sigma = self.element_sigma_of_noise().unwrap_or_default();
+                Covariance::diagonal(&sigma.map(|sigma| ratio * sigma))?.row_major()
+            }
+            _ => return Ok(None),
+        };
+        Covariance::new(&with_columns(&random, columns)).map(Some)
+    }
+
+    /// The probability that `statistic`, a squared distance over the covariance with so
+    /// many degrees of freedom, is larger by chance: χ² for a known noise, F for a pooled
+    /// σ, Hotelling's distribution for a covariance of repeats. A systematic part is
+    /// known, so that the degrees of freedom of both together follow from their shares
+    /// (Welch 1947).
+    #[must_use]
+    pub fn tail(&self, statistic: f64, degrees_of_freedom: u32) -> Option<f64> {
+        self.freedom()
+            .map_or(Freedom::KNOWN, |freedom| freedom)
+            .tail(statistic, degrees_of_freedom)
+    }
+
+    /// How well the noise is known; `None` where nothing was said.
+    pub(crate) fn freedom(&self) -> Option<Freedom> {
+        let whole = self.typical_sigma()?.powi(2);
+        let (degrees, is_matrix, random) = match &self.errors {
+            Errors::Unknown => return None,
+            Errors::Equal(_) | Errors::General(_) => return Some(Freedom::KNOWN),
+            Errors::Pooled(sigma, degrees) => (*degrees, false, sigma * sigma),
+            Errors::Sampled(covariance, degrees) => {
+                (*degrees, true, covariance.typical_sigma().powi(2))
+            }
+        };
+        Some(Freedom {
+            share: random / whole,
+            degrees,
+            is_matrix,
+        })
+    }
+
+    /// The systematic part of each element's standard deviation; `None` where there is none.
+    #[must_use]
+    pub fn systematic_sigma(&self) -> Option<[f64; 16]> {
+        let common = self.systematic.as_ref()?;
+        Some(std::array::from_fn(|k| {
+            common
+                .columns
+                .iter()
+                .fold(0.0_f64, |length, column| length.hypot(column[k]))
+        }))
     }
 
     /// The standard deviation of each element, zero for an exact one; `None` where
     /// nothing was said.
     #[must_use]
     pub fn element_sigma(&self) -> Option<[f64; 16]> {
+        match &self.systematic {
+            Some(common) => Some(std::array::from_fn(|k| common.covariance.sigma(k))),
+            None => self.element_sigma_of_noise(),
+        }
+    }
+
+    /// The same of the random part alone.
+    fn element_sigma_of_noise(&self) -> Option<[f64; 16]> {
         match &self.errors {
             Errors::Unknown => None,
             Errors::Equal(sigma) | Errors::Pooled(sigma, _) => Some(std::array::from_fn(|k| {
@@ -223,7 +366,9 @@ impl Measurement {
                     *sigma
                 }
             })),
-            Errors::General(covariance) => Some(std::array::from_fn(|k| covariance.sigma(k))),
+            Errors::General(covariance) | Errors::Sampled(covariance, _) => {
+                Some(std::array::from_fn(|k| covariance.sigma(k)))
+            }
         }
     }
 
@@ -231,10 +376,10 @@ impl Measurement {
     /// exact.
     #[must_use]
     pub fn typical_sigma(&self) -> Option<f64> {
-        match &self.errors {
-            Errors::Unknown => None,
-            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => Some(*sigma),
-            Errors::General(covariance) => Some(covariance.typical_sigma()),
+        match (self.covariance(), &self.errors) {
+            (Some(covariance), _) => Some(covariance.typical_sigma()),
+            (None, Errors::Equal(sigma) | Errors::Pooled(sigma, _)) => Some(*sigma),
+            _ => None,
         }
     }
 
@@ -242,45 +387,134 @@ impl Measurement {
     /// the elements, row by row.
     #[must_use]
     pub fn standard_error(&self, gradient: &[f64; 16]) -> Option<f64> {
-        let variance = match &self.errors {
-            Errors::Unknown => return None,
-            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => {
-                let first = usize::from(self.m00_is_exact);
-                // Each term scaled by itself: squares of tiny gradients must not vanish.
-                return Some(
-                    gradient[first..]
-                        .iter()
-                        .fold(0.0_f64, |length, g| length.hypot(g * sigma)),
-                );
-            }
-            Errors::General(covariance) => covariance.variance(gradient),
-        };
-        Some(variance.max(0.0).sqrt())
+        if let Some(covariance) = self.covariance() {
+            return Some(covariance.variance(gradient).max(0.0).sqrt());
+        }
+        let sigma = self.equal_sigma()?;
+        let first = usize::from(self.m00_is_exact);
+        // Each term scaled by itself: squares of tiny gradients must not vanish.
+        Some(
+            gradient[first..]
+                .iter()
+                .fold(0.0_f64, |length, g| length.hypot(g * sigma)),
+        )
     }
 
     /// The covariance of two quantities with these gradients, to first order.
     #[must_use]
     pub fn covariance_of(&self, one: &[f64; 16], other: &[f64; 16]) -> Option<f64> {
-        match &self.errors {
-            Errors::Unknown => None,
-            Errors::Equal(sigma) | Errors::Pooled(sigma, _) => {
-                let first = usize::from(self.m00_is_exact);
-                let pairs = one[first..].iter().zip(&other[first..]);
-                Some(pairs.map(|(a, b)| (a * sigma) * (b * sigma)).sum())
-            }
-            Errors::General(covariance) => Some(covariance.covariance_of(one, other)),
+        if let Some(covariance) = self.covariance() {
+            return Some(covariance.covariance_of(one, other));
         }
+        let sigma = self.equal_sigma()?;
+        let first = usize::from(self.m00_is_exact);
+        let pairs = one[first..].iter().zip(&other[first..]);
+        Some(pairs.map(|(a, b)| (a * sigma) * (b * sigma)).sum())
+    }
+
+    /// The covariance of the second minus this one, and how well it is known; `None`
+    /// unless the noise of both is stated. The random parts are independent; the same
+    /// systematic statement is that of one instrument, whose errors both share.
+    ///
+    /// # Errors
+    /// Those of [`Covariance::new`].
+    pub(crate) fn of_difference(&self, second: &Self) -> Result<Option<(Covariance, Freedom)>> {
+        let (Some(one), Some(other)) = (self.freedom(), second.freedom()) else {
+            return Ok(None);
+        };
+        let random = (
+            self.random_covariance()?.row_major(),
+            second.random_covariance()?.row_major(),
+        );
+        let sum = std::array::from_fn(|k| random.0[k] + random.1[k]);
+        let columns = self.columns_of_difference(second);
+        let variances = [self, second].map(|each| each.typical_sigma().unwrap_or_default().powi(2));
+        Ok(Some((
+            Covariance::new(&with_columns(&sum, &columns))?,
+            one.of_sum(variances[0], other, variances[1]),
+        )))
+    }
+
+    /// What the systematic parts do to the second minus this one.
+    fn columns_of_difference(&self, second: &Self) -> Vec<[f64; 16]> {
+        match (&self.systematic, &second.systematic) {
+            (Some(one), Some(other)) if one.stated == other.stated => one
+                .columns
+                .iter()
+                .zip(&other.columns)
+                .map(|(one, other)| std::array::from_fn(|k| other[k] - one[k]))
+                .collect(),
+            (one, other) => [one, other]
+                .into_iter()
+                .flatten()
+                .flat_map(|common| common.columns.iter().copied())
+                .collect(),
+        }
+    }
+
+    /// The first-order standard error of a quantity of the second minus the same of this
+    /// one, from its gradients at both.
+    pub(crate) fn standard_error_of_difference(
+        &self,
+        gradient: &[f64; 16],
+        second: &Self,
+        second_gradient: &[f64; 16],
+    ) -> Option<f64> {
+        let (Some(one), Some(other)) = (&self.systematic, &second.systematic) else {
+            return Some(
+                self.standard_error(gradient)?
+                    .hypot(second.standard_error(second_gradient)?),
+            );
+        };
+        let random = |measurement: &Self, gradient| {
+            Self {
+                systematic: None,
+                ..measurement.clone()
+            }
+            .standard_error(gradient)
+        };
+        let along = |columns: &[[f64; 16]], gradient: &[f64; 16]| -> Vec<f64> {
+            let product =
+                |column: &[f64; 16]| column.iter().zip(gradient).map(|(a, b)| a * b).sum();
+            columns.iter().map(product).collect()
+        };
+        let parts = (
+            along(&one.columns, gradient),
+            along(&other.columns, second_gradient),
+        );
+        let systematic = if one.stated == other.stated {
+            parts.0.iter().zip(&parts.1).map(|(a, b)| b - a).collect()
+        } else {
+            [parts.0, parts.1].concat()
+        };
+        let noise = random(self, gradient)?.hypot(random(second, second_gradient)?);
+        Some(systematic.into_iter().fold(noise, f64::hypot))
     }
 
     /// One draw of the errors; zeros where nothing was said.
     pub(crate) fn draw(&self, draws: &mut NormalDraws) -> [f64; 16] {
+        let mut errors = self.draw_noise(draws);
+        if let Some(common) = &self.systematic {
+            for column in &common.columns {
+                let scale = draws.draw();
+                for (error, value) in errors.iter_mut().zip(column) {
+                    *error += scale * value;
+                }
+            }
+        }
+        errors
+    }
+
+    /// One draw of the random part.
+    fn draw_noise(&self, draws: &mut NormalDraws) -> [f64; 16] {
+        // An estimated σ may as well be larger: then the errors follow Student's t.
+        let mut student = |freedom: &f64| 1.0 / draws.draw_sigma_ratio(*freedom);
         match &self.errors {
             Errors::Unknown => [0.0; 16],
             Errors::Equal(sigma) | Errors::Pooled(sigma, _) => {
-                // An estimated σ may as well be larger: then the errors follow Student's t.
-                let scale = match self.sigma_freedom() {
-                    Some(freedom) => sigma / draws.draw_sigma_ratio(freedom),
-                    None => *sigma,
+                let scale = match &self.errors {
+                    Errors::Pooled(_, freedom) => sigma * student(freedom),
+                    _ => *sigma,
                 };
                 let mut errors = draws.draw_matrix().map(|draw| draw * scale);
                 if self.m00_is_exact {
@@ -289,6 +523,10 @@ impl Measurement {
                 errors
             }
             Errors::General(covariance) => covariance.draw(draws),
+            Errors::Sampled(covariance, freedom) => {
+                let scale = student(freedom);
+                covariance.draw(draws).map(|error| scale * error)
+            }
         }
     }
 
@@ -299,13 +537,25 @@ impl Measurement {
     pub(crate) fn with_signs(&self, signs: &[f64; 16]) -> Result<Self> {
         let elements = self.mueller.row_major();
         let mueller = Mueller::from_row_major(&std::array::from_fn(|k| signs[k] * elements[k]))?;
+        let turned = |covariance: &Covariance| Arc::new(covariance.with_signs(signs));
         let errors = match &self.errors {
-            Errors::General(covariance) => Errors::General(Arc::new(covariance.with_signs(signs))),
+            Errors::General(covariance) => Errors::General(turned(covariance)),
+            Errors::Sampled(covariance, freedom) => Errors::Sampled(turned(covariance), *freedom),
             other => other.clone(),
         };
+        let systematic = self.systematic.as_ref().map(|common| Common {
+            stated: common.stated,
+            columns: common
+                .columns
+                .iter()
+                .map(|column| std::array::from_fn(|k| signs[k] * column[k]))
+                .collect(),
+            covariance: turned(&common.covariance),
+        });
         Ok(Self {
             mueller,
             errors,
+            systematic,
             ..self.clone()
         })
     }
@@ -319,33 +569,70 @@ impl Measurement {
     }
 }
 
-/// The σ of the mean, pooled over the elements, with its degrees of freedom.
-fn pooled(matrices: &[Mueller], mean: &Mueller, m00_is_exact: bool) -> Result<Errors> {
-    let field = "noise.matrices";
-    if matrices.len() < 2 {
-        return Err(Error::new("too-few", "Repeats are at least two matrices.").at_field(field));
+/// How well a noise is known.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) struct Freedom {
+    /// Of the part that is an estimate in the whole variance.
+    share: f64,
+    /// Of that part.
+    degrees: f64,
+    /// Whether a whole covariance is estimated, and not one σ.
+    is_matrix: bool,
+}
+
+impl Freedom {
+    const KNOWN: Self = Self {
+        share: 0.0,
+        degrees: 1.0,
+        is_matrix: false,
+    };
+
+    /// Of the sum of two independent errors with these typical variances.
+    pub(crate) fn of_sum(self, variance: f64, other: Self, other_variance: f64) -> Self {
+        let whole = variance + other_variance;
+        let parts = [(self, variance), (other, other_variance)]
+            .map(|(one, variance)| (one.share * variance / whole, one.degrees));
+        let share: f64 = parts.iter().map(|(share, _)| share).sum();
+        let spread: f64 = parts
+            .iter()
+            .map(|(share, degrees)| share * share / degrees)
+            .sum();
+        Self {
+            share,
+            degrees: if spread > 0.0 {
+                share * share / spread
+            } else {
+                1.0
+            },
+            is_matrix: self.is_matrix || other.is_matrix,
+        }
     }
-    let first = usize::from(m00_is_exact);
-    let centre = mean.row_major();
-    let squares: f64 = matrices
-        .iter()
-        .flat_map(|one| {
-            let elements = one.row_major();
-            (first..16).map(move |k| (elements[k] - centre[k]).powi(2))
-        })
-        .sum();
-    let count = matrices.len() as f64;
-    let freedom = (16 - first) as f64 * (count - 1.0);
-    let sigma = (squares / freedom / count).sqrt();
-    // The mean of equal numbers may differ from them by its rounding.
-    if sigma <= tolerance::ZERO * mean.largest() {
-        return Err(Error::new(
-            "bad-sigma",
-            "The repeats are equal to the last digit, so their scatter says nothing of the noise.",
-        )
-        .at_field(field));
+
+    /// See [`Measurement::tail`].
+    pub(crate) fn tail(self, statistic: f64, degrees_of_freedom: u32) -> Option<f64> {
+        if self.share == 0.0 {
+            return chi_squared_tail(statistic, degrees_of_freedom);
+        }
+        let numerator = f64::from(degrees_of_freedom);
+        let degrees = self.degrees / (self.share * self.share);
+        if self.is_matrix {
+            let denominator = degrees - numerator + 1.0;
+            return f_tail(
+                statistic * denominator / (numerator * degrees),
+                numerator,
+                denominator,
+            );
+        }
+        f_tail(statistic / numerator, numerator, degrees)
     }
-    Ok(Errors::Pooled(in_range(sigma, field)?, freedom))
+}
+
+/// `Σ + Σ_j d_j d_jᵀ`.
+fn with_columns(covariance: &[f64; 256], columns: &[[f64; 16]]) -> [f64; 256] {
+    std::array::from_fn(|k| {
+        let (i, j) = (k / 16, k % 16);
+        covariance[k] + columns.iter().map(|d| d[i] * d[j]).sum::<f64>()
+    })
 }
 
 fn in_range(sigma: f64, field: &str) -> Result<f64> {

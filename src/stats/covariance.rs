@@ -185,6 +185,22 @@ impl Covariance {
         (self.root * standard).into()
     }
 
+    /// One draw of what an estimate of this covariance from a sample with so many degrees
+    /// of freedom would be, row by row (Bartlett 1933).
+    pub(crate) fn draw_estimate(&self, draws: &mut NormalDraws, freedom: f64) -> [f64; 256] {
+        let mut factor = Matrix16::zeros();
+        for i in 0..16 {
+            for j in 0..i {
+                factor[(i, j)] = draws.draw();
+            }
+            let left = freedom - i as f64;
+            factor[(i, i)] = draws.draw_sigma_ratio(left) * left.sqrt();
+        }
+        let root = self.root * factor / freedom.sqrt();
+        let estimate = root * root.transpose();
+        std::array::from_fn(|k| estimate[(k / 16, k % 16)])
+    }
+
     /// With one element held.
     ///
     /// # Errors

@@ -9,11 +9,22 @@ use crate::error::Result;
 use crate::examine::Simulation;
 use crate::json::Fields;
 use crate::mueller::Mueller;
-use crate::noise::{Measurement, Noise};
+use crate::noise::{Measurement, Noise, Side, Systematic};
 use crate::text::{
     Column, Content, DecimalMark, Delimiter, Entry, NamedMatrix, NamedTable, OutputForm,
     ReadOptions, Stacking,
 };
+
+/// What a noise statement of some kind may have.
+const NOISE_PARTS: &[&str] = &[
+    "kind",
+    "sigma",
+    "fraction",
+    "covariance",
+    "decimals",
+    "matrices",
+    "systematic",
+];
 
 /// Draws that take no longer than a minute.
 const MOST_DRAWS: u32 = 100_000;
@@ -147,7 +158,10 @@ fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
             fields.flag("normalised")?.unwrap_or_default(),
             fields.flag("absolute")?.unwrap_or_default(),
         )?;
-        return Ok((measurement, read.convention));
+        return Ok((
+            with_systematic(measurement, fields, &read)?,
+            read.convention,
+        ));
     }
     let measurement = Measurement::new(
         read.mueller(fields)?,
@@ -155,7 +169,52 @@ fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
         fields.flag("absolute")?.unwrap_or_default(),
         noise(fields, &read)?,
     )?;
-    Ok((measurement, read.convention))
+    Ok((
+        with_systematic(measurement, fields, &read)?,
+        read.convention,
+    ))
+}
+
+/// With what the noise statement says of the instrument.
+fn with_systematic(
+    measurement: Measurement,
+    request: &Fields,
+    read: &ConventionRead,
+) -> Result<Measurement> {
+    let Some(noise) = request.object("noise", NOISE_PARTS)? else {
+        return Ok(measurement);
+    };
+    let Some(fields) = noise.object("systematic", &["generator", "analyser", "darkSigma"])? else {
+        return Ok(measurement);
+    };
+    measurement.with_systematic(Systematic {
+        generator: side(&fields, "generator", read)?,
+        analyser: side(&fields, "analyser", read)?,
+        dark: fields.number("darkSigma")?.unwrap_or_default(),
+    })
+}
+
+fn side(fields: &Fields, name: &str, read: &ConventionRead) -> Result<Side> {
+    let known = [
+        "retardanceDeg",
+        "polarizerDeg",
+        "retardanceSigmaDeg",
+        "azimuthSigmaDeg",
+        "contrastSigma",
+    ];
+    let usual = Side::default();
+    let Some(side) = fields.object(name, &known)? else {
+        return Ok(usual);
+    };
+    let radians = |name| Ok(side.number(name)?.map(f64::to_radians));
+    let polarizer = radians("polarizerDeg")?.unwrap_or_default();
+    Ok(Side {
+        retardance: radians("retardanceDeg")?.unwrap_or(usual.retardance),
+        polarizer: read.convention.azimuth(polarizer),
+        retardance_error: radians("retardanceSigmaDeg")?.unwrap_or_default(),
+        azimuth_error: radians("azimuthSigmaDeg")?.unwrap_or_default(),
+        contrast_error: side.number("contrastSigma")?.unwrap_or_default(),
+    })
 }
 
 /// The repeats of a measurement, whose own matrix is then `null`: their mean is meant.
@@ -171,7 +230,8 @@ fn replicates(fields: &Fields, read: &ConventionRead) -> Result<Option<Vec<Muell
             "With repeats the matrix is their mean, and 'mueller' must be null.",
         ));
     }
-    let noise = fields.required("noise", fields.object("noise", &["kind", "matrices"])?)?;
+    let known = ["kind", "matrices", "systematic"];
+    let noise = fields.required("noise", fields.object("noise", &known)?)?;
     let given = noise.required("matrices", noise.get("matrices"))?;
     let wrong = || {
         noise.error(
@@ -213,7 +273,14 @@ pub fn compare_request(request: &Value) -> Result<(Measurement, Measurement, Con
 /// The noise statement, its elements laid out and signed as the person's, in the
 /// canonical convention.
 fn noise(request: &Fields, read: &ConventionRead) -> Result<Noise> {
-    let known = ["kind", "sigma", "fraction", "covariance", "decimals"];
+    let known = [
+        "kind",
+        "sigma",
+        "fraction",
+        "covariance",
+        "decimals",
+        "systematic",
+    ];
     let Some(fields) = request.object("noise", &known)? else {
         return Ok(Noise::None);
     };
@@ -229,7 +296,7 @@ fn noise(request: &Fields, read: &ConventionRead) -> Result<Noise> {
     let (kind, part) = fields.required("kind", kind)?;
     if let Some(other) = known
         .iter()
-        .find(|&&name| name != "kind" && name != part && fields.get(name).is_some())
+        .find(|&&name| !["kind", "systematic", part].contains(&name) && fields.get(name).is_some())
     {
         return Err(fields.error(
             "unknown-field",

@@ -15,8 +15,30 @@ export interface Convention {
     order?: "rows" | "columns";
 }
 
+/** A polarizer at rest and a retarder that turns; how far they are from what the reduction took them for. */
+export interface SystematicSide {
+    /** What the retardance was taken for. Default 90. */
+    retardanceDeg?: number;
+    /** Where the polarizer stands. Default 0. */
+    polarizerDeg?: number;
+    /** Standard uncertainties; each defaults to none. */
+    retardanceSigmaDeg?: number;
+    /** Of the azimuth of the side as a whole. */
+    azimuthSigmaDeg?: number;
+    /** Of the factor on its degree of polarization. */
+    contrastSigma?: number;
+}
+
+/** Uncertainties of the instrument, the same in every repeat; not without a random part. */
+export interface Systematic {
+    generator?: SystematicSide;
+    analyser?: SystematicSide;
+    /** Of constant light in every reading, as a share of M00. */
+    darkSigma?: number;
+}
+
 /** What is known of the noise; it refers to the matrix as given. */
-export type Noise =
+export type Noise = { systematic?: Systematic } & (
     | { kind: "none" }
     /** One σ, in the unit of the matrix. */
     | { kind: "uniform"; sigma: number }
@@ -26,9 +48,10 @@ export type Noise =
     | { kind: "perElement"; sigma: Matrix16 }
     /** Of the elements as they are laid out, 16 × 16 row by row; rows of zeros for exact ones. */
     | { kind: "covariance"; covariance: number[] }
-    /** The scatter of repeats, pooled over the elements; `mueller` is then null, and their mean is meant. */
+    /** The scatter of repeats, up to 40 pooled over the elements; `mueller` is then null, and their mean is meant. */
     | { kind: "replicates"; matrices: Matrix16[] }
-    | { kind: "rounding"; decimals: number };
+    | { kind: "rounding"; decimals: number }
+);
 
 export interface Measurement {
     /** Null with repeats. */
