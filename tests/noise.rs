@@ -276,3 +276,40 @@ fn what_is_no_noise_is_refused() {
         "covariance-not-symmetric"
     );
 }
+
+/// *Derived*: with an error in one element alone, the standard error is the derivative times
+/// σ; here by a stencil of five points over steps 300 times those of the engine.
+#[test]
+fn standard_errors_are_those_of_finite_differences() {
+    let truth = elements::isotropic_depolarizer(0.2).unwrap()
+        * elements::linear_retarder(1.3, 0.5).unwrap()
+        * elements::linear_diattenuator(0.8, 0.3, 0.2).unwrap()
+        * elements::circular_retarder(0.4).unwrap();
+    const STEP: f64 = 3e-4;
+    let values = |k: usize, by: f64| {
+        let mut elements = truth.row_major();
+        elements[k] += by;
+        let moved = Mueller::from_row_major(&elements).unwrap();
+        let moved = Measurement::new(moved, false, false, Noise::None).unwrap();
+        let found = examine(&moved, None).unwrap();
+        FigureName::ALL.map(|name| found.figures.get(name).value.unwrap())
+    };
+    for k in 0..16 {
+        let mut sigma = [0.0; 16];
+        sigma[k] = 1e-5;
+        let noise = Noise::PerElement { sigma };
+        let measurement = Measurement::new(truth, false, false, noise).unwrap();
+        let found = halfshade::figures::figures_of(&measurement, 0, 1).unwrap();
+        let [far_above, above, below, far_below] =
+            [2.0, 1.0, -1.0, -2.0].map(|n| values(k, n * STEP));
+        for (i, name) in FigureName::ALL.into_iter().enumerate() {
+            let derivative =
+                (8.0 * (above[i] - below[i]) - (far_above[i] - far_below[i])) / (12.0 * STEP);
+            let se = found.get(name).se.unwrap() / 1e-5;
+            assert!(
+                (se - derivative.abs()).abs() < 1e-6 * (1.0 + se),
+                "{name:?}, element {k}: {se}, {derivative}"
+            );
+        }
+    }
+}
