@@ -209,6 +209,112 @@ test("each way to state the noise, what is wrong with it, and the link that carr
   await clean(fresh);
 });
 
+test("every statement of the noise by keyboard, a covariance from a file, and what the instrument adds", async () => {
+  const watched = await browser.open("hosted", CLIPBOARD);
+  const { page } = watched;
+  const focused = () => page.evaluate(() => document.activeElement?.id ?? "");
+  const tabTo = async (/** @type {string} */ id) => {
+    for (let k = 0; k < 60 && (await focused()) !== id; k += 1) await page.keyboard.press("Tab");
+    assert.equal(await focused(), id);
+  };
+  const type = async (/** @type {string} */ text) => {
+    await page.keyboard.press("ControlOrMeta+a");
+    await page.keyboard.type(text);
+  };
+  await paste(page, FILM);
+  await verdict(page, /no noise is stated|digits/);
+  // One group of choices: Tab reaches the chosen one, arrows the others.
+  await tabTo("noise-none");
+  await page.keyboard.press("ArrowDown");
+  assert.equal(await page.locator("#noise-rounding").isChecked(), true);
+  await says(page, "#sigma-note", /Rounding alone/);
+  await page.keyboard.press("ArrowDown");
+  assert.equal(await focused(), "sigma");
+  await type("0.004");
+  await verdict(page, "Not realizable, but within noise");
+  // The picture says its error bars in words.
+  assert.match((await page.locator("#plot-eigenvalues").getAttribute("aria-label")) ?? "", /each with its standard error: λ1 = 1\.\d+ ± 0\.\d+/);
+  await page.locator("#noise-more summary").focus();
+  await page.keyboard.press("Enter");
+  await page.locator("#noise-uniform").focus();
+  await page.keyboard.press("ArrowDown");
+  assert.equal(await focused(), "fraction");
+  await type("0.42");
+  await verdict(page, "Not realizable, but within noise");
+  await page.locator("#noise-relative").focus();
+  await page.keyboard.press("ArrowDown");
+  assert.equal(await focused(), "noise-text");
+  await page.keyboard.insertText(Array(16).fill("0.004").join(" "));
+  await verdict(page, "Not realizable, but within noise");
+  await page.locator("#noise-perElement").focus();
+  await page.keyboard.press("ArrowDown");
+  assert.equal(await page.locator("#noise-covariance").isChecked(), true);
+  const covariance = Array.from({ length: 16 }, (_, i) => Array.from({ length: 16 }, (_, j) => (i === j ? 1.6e-5 : 2e-6)).join(",")).join("\n");
+  await tabTo("noise-open");
+  const [chooser] = await Promise.all([page.waitForEvent("filechooser"), page.keyboard.press("Enter")]);
+  await chooser.setFiles({ name: "covariance.csv", mimeType: "text/csv", buffer: Buffer.from(covariance) });
+  await page.waitForFunction(() => /** @type {HTMLTextAreaElement} */ (document.getElementById("noise-text")).value.trim().split(/\s+/).length === 256);
+  await verdict(page, "Not realizable, but within noise");
+  // A file with too few numbers says so and changes nothing else.
+  await page.locator("#noise-file").setInputFiles({ name: "short.csv", mimeType: "text/csv", buffer: Buffer.from(Array(16).fill("1").join(",")) });
+  await says(page, "#sigma-note", /256 numbers are needed, and 16 were found/);
+  await page.locator("#undo").click();
+  await verdict(page, "Not realizable, but within noise");
+
+  // The instrument: contrast wrong by 2 %, on top of a small noise.
+  await page.locator("#noise-uniform").check();
+  await page.locator("#sigma").fill("0.0005");
+  await verdict(page, "Not realizable, beyond noise");
+  await page.locator("#instrument summary").focus();
+  await page.keyboard.press("Enter");
+  await tabTo("instrument-generator-contrastSigma");
+  await type("2");
+  await tabTo("instrument-analyser-contrastSigma");
+  await type("2");
+  await verdict(page, "Not realizable, but within noise");
+  await says(page, "#verdict-reason", /with the stated uncertainty of the instrument/);
+  await tabTo("instrument-darkSigma");
+  await type("-1");
+  await says(page, "#instrument-note", /not below zero/);
+  await type("0.1");
+  await page.locator("#copy-link").click();
+  await says(page, "#status", /Link copied/);
+  const copied = await page.evaluate(() => navigator.clipboard.readText());
+  // A retarder that measures no circular part has no such statement.
+  await page.locator("#instrument-generator-retardanceDeg").fill("180");
+  await page.locator("#instrument-generator-retardanceSigmaDeg").fill("1");
+  await says(page, "#instrument-note", /measures no circular part/);
+  await clean(watched);
+  const fresh = await browser.open("hosted", { hash: /#\S+/.exec(copied)?.[0] ?? "" });
+  await verdict(fresh.page, "Not realizable, but within noise");
+  assert.equal(await fresh.page.locator("#instrument-generator-contrastSigma").inputValue(), "2");
+  assert.equal(await fresh.page.locator("#instrument-darkSigma").inputValue(), "0.1");
+  await clean(fresh);
+});
+
+test("repeats pasted: their mean is judged by their scatter, and a link carries them", async () => {
+  const watched = await browser.open("hosted", CLIPBOARD);
+  const { page } = watched;
+  // Invented: a quarter-wave film three times, with errors of a few thousandths.
+  const film = [0.9, 0, 0, 0, 0, 0.9, 0, 0, 0, 0, 0, 0.9, 0, 0, -0.9, 0];
+  const error = (/** @type {number} */ n) => 0.014 * (((Math.sin(n) * 43758.5) % 1) - 0.5 * Math.sign(Math.sin(n)));
+  const repeats = [0, 1, 2].map((n) => film.map((value, k) => (value + error(16 * n + k + 1)).toFixed(4)).join("\t")).join("\n");
+  await paste(page, repeats);
+  await page.locator("#many-use").selectOption("repeats");
+  await says(page, "#sigma-note", /scatter of 3 repeats/);
+  await verdict(page, /Realizable|within noise/);
+  await page.locator('nav a[data-task="properties"]').click();
+  await says(page, "#properties-panel", /95 %/);
+  await page.locator("#copy-link").click();
+  await says(page, "#status", /Link copied/);
+  const copied = await page.evaluate(() => navigator.clipboard.readText());
+  await clean(watched);
+  const fresh = await browser.open("hosted", { hash: /#\S+/.exec(copied)?.[0] ?? "" });
+  await says(fresh.page, "#sigma-note", /scatter of 3 repeats/);
+  await says(fresh.page, "#properties-panel", /95 %/);
+  await clean(fresh);
+});
+
 for (const form of FORMS) {
   test(`${form}: files come in by button and by drop, and a saved session opens again`, async () => {
     const watched = await browser.open(form, { acceptDownloads: true });

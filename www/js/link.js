@@ -1,6 +1,7 @@
 /** Work and view as the configuration that a link holds, and back. Pure. */
 import { fullText, tableOf } from "./format.js";
 import { meanOf } from "./mean.js";
+import { typedOf } from "./instrument.js";
 import { repeatsNoise } from "./noise.js";
 import { noMeasurement, usualConvention, usualView } from "./state.js";
 
@@ -125,7 +126,7 @@ export function fromConfiguration(configuration, before, parse) {
 function measurementOf(configuration, parse) {
   const given = configuration.measurement;
   if (!given) return noMeasurement();
-  const noise = given.noise ?? { kind: "none" };
+  const { systematic, ...noise } = given.noise ?? { kind: "none" };
   const repeats = noise.kind === "replicates" ? meanOf(noise.matrices, given.normalised ?? false) : null;
   if (!repeats && !Array.isArray(given.mueller)) return noMeasurement();
   /** @type {number[]} */
@@ -144,6 +145,7 @@ function measurementOf(configuration, parse) {
     absolute: given.absolute ?? false,
     convention: { ...usualConvention(), ...given.convention },
     noise: repeats ? repeatsNoise(noise.matrices, repeats.sigma) : noiseChoice(noise),
+    instrument: typedOf(systematic),
     example: given.example ?? false,
     label: configuration.label ?? "",
     many: manyOf(configuration, read?.matrices ?? []),

@@ -8,6 +8,7 @@ import { fileStem, isConfiguration, listenForFiles, saveFile, textIn } from "./f
 import { countFrom, fullText, place, readNumber } from "./format.js";
 import { Grid } from "./grid.js";
 import { listenForHelp } from "./help.js";
+import { InstrumentPanel, systematicOf } from "./instrument.js";
 import { configurationOf, fromConfiguration, noiseChoice, textOf, withoutSeries } from "./link.js";
 import { ManyPanel, manyOf } from "./many.js";
 import { tinyMatrix } from "./matrix-view.js";
@@ -77,8 +78,9 @@ const noise = new NoisePanel(byId("noise"), {
   numbers: (text) => quick.parseMatrices(text, undefined).matrices.flatMap((matrix) => matrix.mueller),
   numbersOfFile: async (file) => quick.parseFile(new Uint8Array(await file.arrayBuffer()), undefined).matrices.flatMap((matrix) => matrix.mueller),
 });
-/** Why the engine does not take the noise statement. @type {string | null} */
-let noiseRefused = null;
+const instrument = new InstrumentPanel(byId("instrument-panel"), (stated, merge) => change("the change of the instrument’s uncertainty", { instrument: stated }, { merge }));
+/** Why the engine does not take a part of the noise statement. @type {{ noise: string | null, instrument: string | null }} */
+let refused = { noise: null, instrument: null };
 const convention = new ConventionPanel(byId("convention"), (chosen) => change("the change of convention", { convention: chosen }));
 const tasks = TASKS.map((entry) => {
   const link = make("a", { href: `#${entry.name}`, "data-task": entry.name }, entry.label);
@@ -504,11 +506,22 @@ function requestNow(outcome) {
       normalised,
       absolute,
       convention: measurement.convention,
-      noise: noiseOf(measurement.noise, measurement.decimals).noise,
+      noise: statedNoise(measurement),
       ...examine,
     },
     waiting: null,
   };
+}
+
+/**
+ * The random part, and that of the instrument beside it.
+ * @param {Measurement} measurement
+ * @returns {import("./types.js").Noise}
+ */
+function statedNoise({ noise: choice, decimals, instrument: stated }) {
+  const { noise: random } = noiseOf(choice, decimals);
+  const { systematic } = systematicOf(stated);
+  return random.kind === "none" || !systematic ? random : { ...random, systematic };
 }
 
 /**
@@ -538,7 +551,8 @@ function render() {
   reading.show(measurement, outcome, filled);
   many.show(measurement.many, measurement.pick, isReady ? request : null);
   display.show(view);
-  noise.show(measurement.noise, measurement.decimals, filled, noiseRefused, isReady ? detection(measurement) : "");
+  noise.show(measurement.noise, measurement.decimals, filled, refused.noise, isReady ? detection(measurement) : "");
+  instrument.show(measurement.instrument, statedNoise(measurement).kind !== "none", refused.instrument);
   convention.show(measurement.convention);
   showOrigin(measurement);
   showExamples(measurement);
@@ -603,19 +617,27 @@ function firstWords(waiting) {
   ];
 }
 
-/** @param {Request} request */
-function compute(request) {
+/**
+ * @param {Request} request
+ * @param {boolean} [isAgain] without a part that the engine refused
+ */
+function compute(request, isAgain = false) {
   const key = JSON.stringify(request);
   if (answer?.key === key) return;
-  noiseRefused = null;
+  if (!isAgain) refused = { noise: null, instrument: null };
   try {
     answer = { key, request, result: quick.examine({ ...forEngine(request), draws: 0 }), pending: true };
   } catch (error) {
     const at = /** @type {{ at?: { field?: string } | null }} */ (error).at;
     // A statement of the noise that can't be used is none; why stands beside it.
-    if (at?.field?.startsWith("noise") && request.noise.kind !== "none") {
-      compute({ ...request, noise: { kind: "none" } });
-      noiseRefused = /** @type {Error} */ (error).message;
+    const { message } = /** @type {Error} */ (error);
+    if (at?.field?.startsWith("noise.systematic")) {
+      refused = { ...refused, instrument: message };
+      const { systematic, ...random } = request.noise;
+      compute({ ...request, noise: random }, true);
+    } else if (at?.field?.startsWith("noise") && request.noise.kind !== "none") {
+      refused = { ...refused, noise: message };
+      compute({ ...request, noise: { kind: "none" } }, true);
     } else fail(error);
     return;
   }

@@ -38,6 +38,9 @@ export function noiseOf(choice, decimals) {
   }
 }
 
+/** More repeats than this have their whole covariance, not one σ. */
+const MOST_POOLED = 40;
+
 /**
  * Repeats as a noise statement.
  * @param {number[][]} matrices
@@ -45,7 +48,7 @@ export function noiseOf(choice, decimals) {
  * @returns {NoiseChoice}
  */
 export function repeatsNoise(matrices, sigma) {
-  const note = `From the scatter of ${matrices.length} repeats about their mean, pooled over the elements: σ = ${significant(sigma, 3)} of the mean. Tests and intervals account for its being an estimate.`;
+  const note = `From the scatter of ${matrices.length} repeats about their mean, ${matrices.length > MOST_POOLED ? "with their whole covariance" : `pooled over the elements: σ = ${significant(sigma, 3)} of the mean`}. Tests and intervals account for its being an estimate.`;
   return { kind: "replicates", sigma: "", given: { kind: "replicates", matrices }, note };
 }
 

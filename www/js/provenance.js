@@ -1,6 +1,7 @@
 /** What a result stands on: the block that a report ends with, on the screen and on paper. */
 import { conventionInWords } from "./convention.js";
 import { fold, make, repaint } from "./dom.js";
+import { systematicInWords } from "./instrument.js";
 import { fullText, rows, significant, withMinus } from "./format.js";
 import { writeClipboard } from "./paste.js";
 
@@ -68,7 +69,7 @@ function noiseInWords(noise) {
   if (noise.kind === "rounding") return `rounding to ${noise.decimals} decimals, standard deviation ${significant(10 ** -noise.decimals / Math.sqrt(12), 3)} of each element`;
   if (noise.kind === "relative") return `standard deviation ${fullText(noise.fraction)} of m00 for each element, independent`;
   if (noise.kind === "perElement") return `standard deviations, laid out as given: ${noise.sigma.map((sigma) => fullText(sigma)).join(", ")}; independent`;
-  if (noise.kind === "replicates") return `the scatter of ${noise.matrices.length} repeats about their mean, pooled over the elements`;
+  if (noise.kind === "replicates") return `the scatter of ${noise.matrices.length} repeats about their mean, ${noise.matrices.length > 40 ? "with their whole covariance" : "pooled over the elements"}`;
   return `a covariance of the elements; standard deviations, laid out as given: ${Array.from({ length: 16 }, (_, k) => significant(Math.sqrt(noise.covariance[17 * k] ?? 0), 3)).join(", ")}`;
 }
 
@@ -91,6 +92,7 @@ export function provenanceOf(request, info, computed) {
     { name: "Normalisation", text: request.normalised ? "normalised to m00, which is exact" : "not normalised" },
     { name: "Unit", text: request.absolute ? "absolute transmittance or reflectance" : "relative" },
     { name: "Noise", text: noiseInWords(noise) },
+    ...(noise.systematic ? [{ name: "Instrument", text: `standard uncertainties, ${systematicInWords(noise.systematic)}` }] : []),
     { name: "Draws and seed", text: `${draws} draws, seed ${seed}` },
     { name: "Tolerance", text: "an eigenvalue above −10⁻¹² of m00 counts as zero" },
   ];

@@ -29,6 +29,7 @@ export function noMeasurement() {
     normalised: false,
     absolute: false,
     noise: { kind: "none", sigma: "", given: null },
+    instrument: {},
     convention: usualConvention(),
     example: false,
     label: "",

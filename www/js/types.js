@@ -51,6 +51,7 @@
  * @property {boolean} normalised
  * @property {boolean} absolute
  * @property {NoiseChoice} noise
+ * @property {import("./instrument.js").Stated} instrument
  * @property {Convention} convention
  * @property {boolean} example
  * @property {string} label

@@ -270,6 +270,12 @@ function oddsOf(pValue, simulations = null) {
 
 /** @param {Request} request */
 function noiseSentence({ noise }) {
+  const words = randomPart(noise);
+  return noise.systematic ? `${words}, with the stated uncertainty of the instrument,` : words;
+}
+
+/** @param {Request["noise"]} noise */
+function randomPart(noise) {
   if (noise.kind === "uniform") return `Noise of σ = ${significant(noise.sigma, 3)}`;
   if (noise.kind === "rounding") return `Rounding to ${decimalsText(noise.decimals)}`;
   if (noise.kind === "relative") return `Noise of ${significant(100 * noise.fraction, 3)} % of ${elementName(0, 0)}`;
