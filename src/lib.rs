@@ -44,6 +44,8 @@ pub mod decompose;
 
 pub mod figures;
 
+pub mod fit;
+
 pub mod examine;
 
 pub mod text;

@@ -8,8 +8,8 @@ mod significance;
 mod weighted;
 
 pub use causes::{Candidate, Cause, likely_causes, mirror_is_visible};
-pub(crate) use nearest::nearest_to;
 pub use nearest::{Nearest, nearest};
+pub(crate) use nearest::{nearest_to, realizable_spectrum};
 pub use realizability::{
     Passivity, PassivityVerdict, Realizability, Verdict, is_realizable, passivity, realizability,
     stokes_margin,
@@ -37,6 +37,10 @@ impl Coherency {
     #[must_use]
     pub fn from_mueller(mueller: &Mueller) -> Self {
         Self::from_elements(&mueller.row_major())
+    }
+
+    pub(crate) fn from_matrix(matrix: Matrix4<Complex64>) -> Self {
+        Self(matrix)
     }
 
     pub(crate) fn from_elements(elements: &[f64; 16]) -> Self {

@@ -7,7 +7,7 @@ use crate::coherency::eigenvalue_errors;
 use crate::error::Result;
 use crate::linalg::inverse_symmetric3;
 use crate::noise::Measurement;
-use crate::stats::{chi_squared_95, noncentrality_at};
+use crate::stats::{chi_squared_95, noncentrality_at, normal_95};
 use crate::tolerance;
 
 /// How an interval was found.
@@ -55,9 +55,6 @@ pub struct Figure {
     /// Why something is `None`, or how to read it.
     pub reason: Option<&'static str>,
 }
-
-/// Half of the central 95 % of a normal distribution, in standard deviations.
-const NORMAL_95: f64 = 1.959_963_984_540_054;
 
 /// Beyond so many standard errors from zero a length has the errors of a number.
 const FAR_FROM_ZERO: f64 = 6.0;
@@ -182,15 +179,15 @@ impl Judge<'_> {
             let Some(se) = se else {
                 return figure(Some(value), None, None, Some(NOT_SMOOTH));
             };
-            if wide(2.0 * NORMAL_95 * se) {
+            if wide(2.0 * normal_95() * se) {
                 return figure(None, None, None, Some(WIDE_ANGLE));
             }
             if name.is_length() && value < tolerance::STANDARD_ERRORS * se {
                 return figure(Some(value), Some(se), None, Some(NEAR_ZERO));
             }
             let interval = both(
-                value - NORMAL_95 * se,
-                value + NORMAL_95 * se,
+                value - normal_95() * se,
+                value + normal_95() * se,
                 Method::FirstOrder,
             );
             return figure(Some(value), Some(se), interval, None);
@@ -342,7 +339,7 @@ impl Judge<'_> {
         let m00 = measurement.mueller().m00();
         let mut gradient = [0.0; 16];
         gradient[0] = 1.0;
-        let error = NORMAL_95 * measurement.standard_error(&gradient)?;
+        let error = normal_95() * measurement.standard_error(&gradient)?;
         // Towards zero D is no normal error but a bound, so that the two add up.
         let below = m00 * (length.length - low);
         let towards = if low == 0.0 {

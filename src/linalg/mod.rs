@@ -3,11 +3,13 @@
 //! Only this folder calls nalgebra's iterations: they do not end on a NaN, come
 //! unsorted, and report failure as `None`.
 
+mod dynamic;
 mod eigen;
 mod logarithm;
 mod svd;
 mod symmetric;
 
+pub use dynamic::{RightSingular, right_singular};
 pub use eigen::{HermitianEigen, hermitian_eigen};
 pub use logarithm::principal_logarithm;
 pub use svd::{Svd3, svd3};

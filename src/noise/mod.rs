@@ -505,6 +505,16 @@ impl Measurement {
         errors
     }
 
+    /// One draw of the errors as if what is estimated of them were true.
+    pub(crate) fn draw_known(&self, draws: &mut NormalDraws) -> [f64; 16] {
+        if let Some(covariance) = self.covariance() {
+            return covariance.draw(draws);
+        }
+        let sigma = self.element_sigma().unwrap_or_default();
+        let draw = draws.draw_matrix();
+        std::array::from_fn(|k| sigma[k] * draw[k])
+    }
+
     /// One draw of the random part.
     fn draw_noise(&self, draws: &mut NormalDraws) -> [f64; 16] {
         // An estimated σ may as well be larger: then the errors follow Student's t.

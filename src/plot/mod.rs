@@ -15,6 +15,7 @@
 //! | coherency eigenvalues | [`EigenvaluePlot`] | [`draw_eigenvalues`] | [`eigenvalues_svg`] | [`eigenvalues_description`] |
 //! | Poincaré sphere | [`SpherePlot`] | [`draw_sphere`] | [`sphere_svg`] | [`sphere_description`] |
 //! | polarization ellipses | [`EllipsesPlot`] | [`draw_ellipses`] | [`ellipses_svg`] | [`ellipses_description`] |
+//! | curves over one axis | [`CurvesPlot`] | [`draw_curves`] | [`curves_svg`] | [`curves_description`] |
 //!
 //! On a canvas each is drawn by [`on_canvas`].
 
@@ -22,6 +23,7 @@
 mod delegate;
 
 mod canvas;
+mod curves;
 mod eigenvalues;
 mod ellipses;
 mod number;
@@ -33,6 +35,9 @@ mod theme;
 mod ticks;
 
 pub use canvas::{Canvas, on_canvas};
+pub use curves::{
+    Curve, CurvesPlot, Named, curves_description, curves_height, curves_svg, draw_curves,
+};
 pub use eigenvalues::{
     EigenvaluePlot, draw_eigenvalues, eigenvalues_description, eigenvalues_height, eigenvalues_svg,
 };

@@ -14,6 +14,8 @@ pub struct Covariance {
     matrix: Matrix16,
     /// Of the free elements; zero at the held ones.
     inverse: Matrix16,
+    /// `inverse_root inverse_rootᵀ = inverse`.
+    inverse_root: Matrix16,
     /// `root rootᵀ = matrix`.
     root: Matrix16,
     held: [bool; 16],
@@ -110,6 +112,7 @@ impl Covariance {
         Ok(Self {
             matrix: root * root.transpose(),
             inverse: inverse_root * inverse_root.transpose(),
+            inverse_root,
             root,
             held,
         })
@@ -174,6 +177,11 @@ impl Covariance {
         difference.dot(&(self.inverse * difference)).max(0.0)
     }
 
+    /// A matrix W with `WᵀW = Σ⁻¹` over the free elements; nothing of the held ones.
+    pub(crate) fn whitening(&self) -> Matrix16 {
+        self.inverse_root.transpose()
+    }
+
     /// `Σ⁻¹` over the free elements, zero at the held ones.
     pub(crate) fn inverse(&self) -> &Matrix16 {
         &self.inverse
@@ -221,6 +229,7 @@ impl Covariance {
         Self {
             matrix: signs * self.matrix * signs,
             inverse: signs * self.inverse * signs,
+            inverse_root: signs * self.inverse_root,
             root: signs * self.root,
             held: self.held,
         }

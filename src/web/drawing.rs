@@ -6,14 +6,15 @@ use wasm_bindgen::prelude::*;
 use web_sys::HtmlCanvasElement;
 
 use super::convert::to_js;
-use super::request::{ConventionRead, plain};
+use super::request::{ConventionRead, items, plain};
 use super::thrown;
 use crate::convention::{Convention, PositiveS3, ZeroAngle};
 use crate::error::Result as EngineResult;
 use crate::json::Fields;
 use crate::mueller::Mueller;
 use crate::plot::{
-    self, EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, View,
+    self, Curve, CurvesPlot, EigenvaluePlot, EllipsePair, EllipsesPlot, Named, SpherePlot, Surface,
+    Theme, View,
 };
 use crate::state::Stokes;
 use crate::tolerance;
@@ -137,6 +138,68 @@ fn ellipses_request(request: &JsValue) -> EngineResult<(EllipsesPlot, Frame)> {
         },
         Frame::of(&fields, plot::ellipses_height)?,
     ))
+}
+
+/// The title beside the plot: curves are of many things.
+fn curves_request(request: &JsValue) -> EngineResult<(CurvesPlot, String, Frame)> {
+    let request = plain(request)?;
+    let known = [
+        "title", "along", "upwards", "curves", "levels", "places", "frame",
+    ];
+    let fields = Fields::of(&request, "", &known)?;
+    let title = fields.text("title")?.unwrap_or_default().to_owned();
+    let text = |name| Ok(fields.required(name, fields.text(name)?)?.to_owned());
+    let mut plot = CurvesPlot {
+        along: text("along")?,
+        upwards: text("upwards")?,
+        curves: Vec::new(),
+        levels: named(&fields, "levels")?,
+        places: named(&fields, "places")?,
+    };
+    for (k, curve) in items(&fields, "curves")?.iter().enumerate() {
+        let path = format!("curves[{k}]");
+        let curve = Fields::of(curve, &path, &["name", "x", "y", "dots"])?;
+        let (x, y) = (numbers(&curve, "x")?, numbers(&curve, "y")?);
+        if x.len() != y.len() {
+            return Err(curve.error("bad-request", "y", "There must be a y for each x."));
+        }
+        plot.curves.push(Curve {
+            name: curve.text("name")?.unwrap_or_default().to_owned(),
+            points: x.into_iter().zip(y).map(|(x, y)| [x, y]).collect(),
+            is_dots: curve.flag("dots")?.unwrap_or_default(),
+        });
+    }
+    Ok((plot, title, Frame::of(&fields, plot::curves_height)?))
+}
+
+fn named(fields: &Fields, name: &str) -> EngineResult<Vec<Named>> {
+    items(fields, name)?
+        .iter()
+        .enumerate()
+        .map(|(k, item)| {
+            let path = format!("{name}[{k}]");
+            let item = Fields::of(item, &path, &["name", "value"])?;
+            Ok(Named {
+                name: item.text("name")?.unwrap_or_default().to_owned(),
+                value: item.required("value", item.number("value")?)?,
+            })
+        })
+        .collect()
+}
+
+fn numbers(fields: &Fields, name: &str) -> EngineResult<Vec<f64>> {
+    items(fields, name)?
+        .iter()
+        .map(|item| {
+            item.as_f64().ok_or_else(|| {
+                fields.error(
+                    "bad-request",
+                    name,
+                    &format!("'{name}' must be a list of numbers."),
+                )
+            })
+        })
+        .collect()
 }
 
 /// Horizontal, vertical, the person's two diagonals, clockwise, counter-clockwise:
@@ -379,6 +442,41 @@ pub fn ellipses_svg(
         &surface,
         &theme,
         "Polarization ellipses",
+        &description,
+    ))
+}
+
+/// Draws curves over one axis.
+///
+/// # Errors
+/// For values or sizes that can't be drawn.
+#[wasm_bindgen(js_name = drawCurves, unchecked_return_type = "Drawn")]
+pub fn draw_curves(
+    canvas: &HtmlCanvasElement,
+    #[wasm_bindgen(unchecked_param_type = "CurvesRequest")] request: &JsValue,
+) -> Result<JsValue, JsValue> {
+    let (plot, _, Frame { surface, theme }) = thrown(curves_request(request))?;
+    thrown(plot::on_canvas(canvas, &surface, |area| {
+        plot::draw_curves(area, &plot, &theme)
+    }))?;
+    drawn(&surface, thrown(plot::curves_description(&plot))?)
+}
+
+/// Curves over one axis as SVG.
+///
+/// # Errors
+/// For values or sizes that can't be drawn.
+#[wasm_bindgen(js_name = curvesSvg)]
+pub fn curves_svg(
+    #[wasm_bindgen(unchecked_param_type = "CurvesRequest")] request: &JsValue,
+) -> Result<String, JsValue> {
+    let (plot, title, Frame { surface, theme }) = thrown(curves_request(request))?;
+    let description = thrown(plot::curves_description(&plot))?;
+    thrown(plot::curves_svg(
+        &plot,
+        &surface,
+        &theme,
+        &title,
         &description,
     ))
 }

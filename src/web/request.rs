@@ -454,7 +454,7 @@ pub fn export_request(request: &Value) -> Result<(OutputForm, Content)> {
 }
 
 /// The items of a list; none where it is left out.
-fn items<'a>(fields: &Fields<'a>, name: &str) -> Result<&'a [Value]> {
+pub fn items<'a>(fields: &Fields<'a>, name: &str) -> Result<&'a [Value]> {
     match fields.get(name) {
         None | Some(Value::Null) => Ok(&[]),
         Some(Value::Array(items)) => Ok(items),

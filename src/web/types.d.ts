@@ -392,6 +392,22 @@ export interface EllipsesRequest {
     frame: Frame;
 }
 
+/** Curves over one axis; at most eight. */
+export interface CurvesRequest {
+    /** Of the picture as a file. */
+    title?: string;
+    /** What stands along and upwards, each with its unit. */
+    along: string;
+    upwards: string;
+    /** The first is drawn in colour and whole, the others in dashes; `dots` is for what was measured. */
+    curves: { name?: string; x: number[]; y: number[]; dots?: boolean }[];
+    /** Lines across the whole frame. */
+    levels?: { name?: string; value: number }[];
+    /** Lines at places along the axis. */
+    places?: { name?: string; value: number }[];
+    frame: Frame;
+}
+
 export interface Drawn {
     /** What the plot shows, in words, with its numbers. */
     description: string;

@@ -434,8 +434,8 @@ test("each form of copies reads back to the same numbers", async () => {
   await clean(watched);
 });
 
-test("causes are looked for, tried and undone; a pair is compared", async () => {
-  const watched = await browser.open("hosted");
+test("causes are looked for, tried and undone; a pair is compared, and a link carries it", async () => {
+  const watched = await browser.open("hosted", CLIPBOARD);
   const { page } = watched;
   const wrong = FILM.split("\n").map((row, i) => (i === 3 ? row.split(" ").map((text) => String(-Number(text))).join(" ") : row)).join("\n");
   await paste(page, wrong);
@@ -458,7 +458,13 @@ test("causes are looked for, tried and undone; a pair is compared", async () => 
   await says(page, "#pair-difference", /they differ beyond noise/);
   await page.locator("#sigma").fill("0.2");
   await says(page, "#pair-difference", /no difference beyond noise/);
+  await page.locator("#copy-link").click();
+  await says(page, "#status", /Link copied/);
+  const copied = await page.evaluate(() => navigator.clipboard.readText());
   await clean(watched);
+  const fresh = await browser.open("hosted", { hash: /#\S+/.exec(copied)?.[0] ?? "" });
+  await says(fresh.page, "#pair-difference", /no difference beyond noise/);
+  await clean(fresh);
 });
 
 test("units: waves and nanometres, per cent and counts", async () => {

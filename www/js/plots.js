@@ -16,6 +16,7 @@ import { withTexts } from "./png.js";
 export const DRAWINGS = {
   eigenvalues: { draw: (canvas, request) => quick.drawEigenvalues(canvas, request), svg: (request) => quick.eigenvaluesSvg(request) },
   sphere: { draw: (canvas, request) => quick.drawSphere(canvas, request), svg: (request) => quick.sphereSvg(request) },
+  curves: { draw: (canvas, request) => quick.drawCurves(canvas, request), svg: (request) => quick.curvesSvg(request) },
   ellipses: { draw: (canvas, request) => quick.drawEllipses(canvas, request), svg: (request) => quick.ellipsesSvg(request) },
 };
 

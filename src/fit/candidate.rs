@@ -1,0 +1,461 @@
+use nalgebra::{DMatrix, DVector, SVector};
+
+use super::derived;
+use super::least_squares::{Determination, Minimum, Problem, Stop, determination, minimise_from};
+use super::mixtures;
+use super::models::{Model, Shape, Side, triangular};
+use super::parameters::{Name, Reported, reported};
+use super::starts::Guide;
+use super::target::{ModelProblem, Target, row_major};
+use crate::coherency::{Coherency, nearest_to, weighted_significance};
+use crate::error::{Error, Result};
+use crate::mueller::Mueller;
+use crate::noise::Measurement;
+use crate::stats::{normal_95, student_95};
+
+/// One parameter with its uncertainty.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Parameter {
+    /// Which.
+    pub name: Name,
+    /// Radians for an angle; transmittance and Jones entries in the unit of the matrix, and
+    /// in its root.
+    pub value: f64,
+    /// First order; `None` where nothing determines it, or without degrees of freedom.
+    pub se: Option<f64>,
+    /// The ends of 95 %.
+    pub interval: Option<(f64, f64)>,
+    /// Held at the end of its range.
+    pub at_bound: bool,
+}
+
+/// A model fitted to a measured matrix.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Fit {
+    /// Which.
+    pub model: Model,
+    /// Of its depolarization, where that makes a difference.
+    pub side: Option<Side>,
+    /// In the order of the model.
+    pub parameters: Vec<Parameter>,
+    /// What follows from a Jones matrix: transmittance, diattenuation, retardance and its axis.
+    pub derived: Vec<Parameter>,
+    /// Of the parameters, row by row.
+    pub covariance: DMatrix<f64>,
+    /// Combinations of parameters that nothing determines: unit vectors over the parameters.
+    pub null_directions: Vec<Vec<f64>>,
+    /// Of the squared residuals over their variances; `None` without noise.
+    pub chi_square: Option<f64>,
+    /// The root mean square of the residuals, in the unit of the matrix.
+    pub rms: f64,
+    /// Elements less what is determined.
+    pub degrees_of_freedom: u32,
+    /// Of χ², or simulated for mixtures; `None` without noise or degrees of freedom.
+    pub p_value: Option<f64>,
+    /// How many measurements were simulated for it.
+    pub simulations: u32,
+    /// Akaike's criterion, corrected for few elements where the noise is unknown.
+    pub aic: Option<f64>,
+    /// The Bayesian criterion.
+    pub bic: Option<f64>,
+    /// The fitted matrix.
+    pub mueller: Mueller,
+    /// Measured less fitted, in standard errors, row by row; in units of `rms` without noise.
+    pub residuals: [f64; 16],
+    /// Why the search ended.
+    pub stop: Stop,
+    /// At the end.
+    pub gradient_cosine: f64,
+    /// Of the model.
+    pub evaluations: usize,
+    pub(super) solved: Solved,
+}
+
+/// What later questions about a fit start from.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Solved {
+    pub shape: Shape,
+    /// All of them, the fixed one too.
+    pub x: Vec<f64>,
+    /// Of `x`.
+    pub covariance: DMatrix<f64>,
+}
+
+/// A minimum, of what, and the parameter that was held for it.
+type Found = (Shape, Minimum, Option<(usize, f64)>);
+
+/// A measurement that models are fitted to.
+pub struct Fitter<'a> {
+    pub(super) measurement: &'a Measurement,
+    pub(super) target: Target,
+    pub(super) guide: Guide,
+    pub(super) seed: u64,
+}
+
+impl<'a> Fitter<'a> {
+    /// Of a measured matrix.
+    ///
+    /// # Errors
+    /// `no-m00` where M00 is not positive, `no-convergence`.
+    pub fn new(measurement: &'a Measurement, seed: u64) -> Result<Self> {
+        let target = Target::of(measurement)
+            .filter(|_| measurement.mueller().m00() > 0.0)
+            .ok_or_else(|| {
+                Error::new(
+                    "no-m00",
+                    "M00 is not positive, so no model can be fitted: light that comes out is never less than none.",
+                )
+                .at_field("mueller")
+            })?;
+        Ok(Self {
+            guide: Guide::of(&target)?,
+            measurement,
+            target,
+            seed,
+        })
+    }
+
+    /// The best of one model.
+    ///
+    /// # Errors
+    /// `no-convergence`.
+    pub fn fit(&self, model: Model, side: Side) -> Result<Fit> {
+        let side_used = model.side(side);
+        let (shape, minimum, fixed) = if model == Model::RankFour {
+            self.whole()?
+        } else {
+            self.solve(
+                &self.target,
+                &self.guide,
+                model,
+                side_used.unwrap_or_default(),
+            )?
+        };
+        self.report(shape, side_used, minimum, fixed)
+    }
+
+    /// Any realizable matrix: the nearest one.
+    fn whole(&self) -> Result<Found> {
+        let eigen = &Coherency::from_mueller(self.measurement.mueller()).eigen()?;
+        let nearest = nearest_to(self.measurement, eigen)?.ok_or_else(no_fit)?;
+        let columns: Vec<_> = (0..4)
+            .map(|k| {
+                let value = (nearest.eigen.values[k] / self.target.unit).max(0.0);
+                std::array::from_fn(|i| nearest.eigen.vectors[k][i] * (2.0 * value).sqrt())
+            })
+            .collect();
+        let (x, pivots) = triangular(&columns);
+        let shape = Shape {
+            model: Model::RankFour,
+            side: Side::Parallel,
+            pivots,
+            is_polarizer: false,
+        };
+        let problem = ModelProblem {
+            target: &self.target,
+            shape,
+            fixed: None,
+        };
+        let (residuals, jacobian) = problem.evaluate(&x).ok_or_else(no_fit)?;
+        let minimum = Minimum {
+            parameters: x,
+            sum_of_squares: residuals.norm_squared(),
+            gradient_cosine: 0.0,
+            stop: Stop::Minimum,
+            evaluations: 1,
+            residuals,
+            jacobian,
+        };
+        Ok((shape, minimum, None))
+    }
+
+    pub(super) fn solve(
+        &self,
+        target: &Target,
+        guide: &Guide,
+        model: Model,
+        side: Side,
+    ) -> Result<Found> {
+        let (starts, pivots) = guide.starts(model, side, self.seed);
+        let mut shape = Shape {
+            model,
+            side,
+            pivots,
+            is_polarizer: false,
+        };
+        let find = |shape, fixed, starts: &[Vec<f64>]| {
+            let problem = ModelProblem {
+                target,
+                shape,
+                fixed,
+            };
+            minimise_from(&problem, starts).ok_or_else(no_fit)
+        };
+        let found = find(shape, None, &starts)?;
+        // The cosine of a diattenuation's parameter is the root of what the dark axis lets
+        // through: below zero, the best of all is a polarizer.
+        match model {
+            Model::LinearDiattenuator if found.parameters[1].cos() < 0.0 => {
+                let sign = found.parameters[1].sin().signum();
+                let fixed = Some((1, sign * std::f64::consts::FRAC_PI_2));
+                let mut start = found.parameters;
+                start.remove(1);
+                Ok((shape, find(shape, fixed, &[start])?, fixed))
+            }
+            Model::EllipticalDiattenuator
+                if SVector::<f64, 3>::from_column_slice(&found.parameters[1..4])
+                    .norm()
+                    .cos()
+                    < 0.0 =>
+            {
+                shape.is_polarizer = true;
+                Ok((shape, find(shape, None, &[found.parameters])?, None))
+            }
+            _ => Ok((shape, found, None)),
+        }
+    }
+
+    fn report(
+        &self,
+        shape: Shape,
+        side: Option<Side>,
+        minimum: Minimum,
+        fixed: Option<(usize, f64)>,
+    ) -> Result<Fit> {
+        let model = shape.model;
+        let problem = ModelProblem {
+            target: &self.target,
+            shape,
+            fixed,
+        };
+        let x = problem.whole(&minimum.parameters);
+        let matrix = shape.evaluate(&x).matrix;
+        let at_bound = usize::from(fixed.is_some() || shape.is_polarizer);
+        let mut determined = determination(&minimum.jacobian)?;
+        if shape.is_polarizer {
+            without_length(&mut determined, &x);
+        }
+        if let Some((place, _)) = fixed {
+            insert_fixed(&mut determined, place);
+        }
+        let count = model.parameter_count() - at_bound;
+        let rank = determined.rank.min(count);
+        let freedom = 16_usize.saturating_sub(rank);
+        let degrees_of_freedom = if model == Model::RankFour {
+            0
+        } else {
+            u32::try_from(freedom).unwrap_or_default()
+        };
+        let difference = self.target.elements - row_major(&matrix);
+        let sum = minimum.sum_of_squares;
+        let has_noise = self.measurement.has_noise();
+        // Without a statement the residuals say how large the noise is.
+        let scale = if has_noise {
+            Some(1.0)
+        } else {
+            (degrees_of_freedom > 0).then(|| sum / f64::from(degrees_of_freedom))
+        };
+        let reach = if has_noise {
+            self.measurement
+                .sigma_freedom()
+                .map_or(Some(normal_95()), student_95)
+        } else {
+            student_95(f64::from(degrees_of_freedom))
+        };
+        let covariance = determined.covariance * scale.unwrap_or_default();
+        let unit = self.target.unit;
+        let report = reported(&shape, &x, unit);
+        let judge = Judge {
+            covariance: &covariance,
+            null: &determined.null_directions,
+            // The whole of a mixture has no parameters of its own to doubt.
+            reach: reach.filter(|_| scale.is_some()),
+        };
+        let parameters = match model {
+            _ if model.is_mixture() => mixtures::weights(&shape, &x, unit, &judge)?,
+            _ => judge.parameters(&report, at_bound > 0),
+        };
+        let derived = match model.rank() {
+            Some(1) => derived::of_jones(&shape, &x, unit, &judge)?,
+            _ => Vec::new(),
+        };
+        let outcome = mixtures::Outcome {
+            matrix: &matrix,
+            sum,
+        };
+        let (p_value, simulations) = if !has_noise {
+            (None, 0)
+        } else if model == Model::RankFour {
+            self.whole_p()?
+        } else if model.is_mixture() {
+            mixtures::p_value(self, model, &outcome)?
+        } else {
+            (self.measurement.tail(sum, degrees_of_freedom), 0)
+        };
+        let elements = (16 - self.target.exact) as f64;
+        let free = (model.parameter_count() - usize::from(self.target.m00_is_exact)) as f64;
+        let (aic, bic) = criteria(has_noise, sum, elements, free);
+        let rms = (difference.norm_squared() / 16.0).sqrt() * unit;
+        let sigma = self.measurement.element_sigma();
+        let residuals = std::array::from_fn(|k| {
+            let raw = difference[k] * unit;
+            match sigma.map(|sigma| sigma[k]) {
+                Some(sigma) if sigma > 0.0 => raw / sigma,
+                Some(_) => 0.0,
+                None if rms > 0.0 => raw / rms,
+                None => 0.0,
+            }
+        });
+        Ok(Fit {
+            model,
+            side,
+            covariance: &report.derivatives * &covariance * report.derivatives.transpose(),
+            null_directions: if model.is_mixture() {
+                Vec::new()
+            } else {
+                determined.null_directions.clone()
+            },
+            parameters,
+            derived,
+            chi_square: has_noise.then_some(sum),
+            rms,
+            degrees_of_freedom,
+            p_value,
+            simulations,
+            aic,
+            bic,
+            mueller: Mueller::from_matrix(matrix * unit),
+            residuals,
+            stop: minimum.stop,
+            gradient_cosine: minimum.gradient_cosine,
+            evaluations: minimum.evaluations,
+            solved: Solved {
+                shape,
+                x,
+                covariance,
+            },
+        })
+    }
+
+    /// Of the nearest realizable matrix: the test of realizability.
+    fn whole_p(&self) -> Result<(Option<f64>, u32)> {
+        let eigen = Coherency::from_mueller(self.measurement.mueller()).eigen()?;
+        let nearest = nearest_to(self.measurement, &eigen)?;
+        let found = weighted_significance(self.measurement, nearest.as_ref(), self.seed)?;
+        Ok(found.map_or((None, 0), |test| (Some(test.p_value), test.simulations)))
+    }
+}
+
+/// What the covariance of the fitted parameters makes of anything that follows from them.
+pub(super) struct Judge<'a> {
+    pub covariance: &'a DMatrix<f64>,
+    pub null: &'a [Vec<f64>],
+    /// Standard errors to each end of 95 %; `None` where there are none.
+    pub reach: Option<f64>,
+}
+
+impl Judge<'_> {
+    /// The standard error of what changes so with the fitted parameters.
+    pub fn standard_error(&self, slopes: &DVector<f64>) -> Option<f64> {
+        self.reach?;
+        // What moves along a direction that nothing determines has no error to give.
+        let size = slopes.amax();
+        let is_free = self.null.iter().any(|direction| {
+            let along: f64 = slopes.iter().zip(direction).map(|(a, b)| a * b).sum();
+            along.abs() > 1e-6 * size
+        });
+        if is_free {
+            return None;
+        }
+        let variance = slopes.dot(&(self.covariance * slopes));
+        Some(variance.max(0.0).sqrt()).filter(|se| se.is_finite())
+    }
+
+    pub fn parameter(
+        &self,
+        name: Name,
+        value: f64,
+        slopes: &DVector<f64>,
+        at_bound: bool,
+    ) -> Parameter {
+        let se = self.standard_error(slopes).filter(|se| {
+            // An angle that may be anything has no error.
+            name.period().is_none_or(|period| *se < 0.25 * period)
+        });
+        Parameter {
+            name,
+            value,
+            se: se.filter(|_| !at_bound),
+            interval: se
+                .zip(self.reach)
+                .filter(|_| !at_bound)
+                .map(|(se, reach)| (value - reach * se, value + reach * se)),
+            at_bound,
+        }
+    }
+
+    fn parameters(&self, report: &Reported, at_bound: bool) -> Vec<Parameter> {
+        (0..report.names.len())
+            .map(|k| {
+                let name = report.names[k];
+                let held = at_bound && name == Name::Diattenuation;
+                let slopes = report.derivatives.row(k).transpose();
+                self.parameter(name, report.values[k], &slopes, held)
+            })
+            .collect()
+    }
+}
+
+/// Akaike's and the Bayesian criterion; with unknown noise from the sum of squares, with the
+/// correction for few elements (Hurvich & Tsai 1989).
+fn criteria(
+    has_noise: bool,
+    sum: f64,
+    elements: f64,
+    parameters: f64,
+) -> (Option<f64>, Option<f64>) {
+    if has_noise {
+        return (
+            Some(sum + 2.0 * parameters),
+            Some(sum + parameters * elements.ln()),
+        );
+    }
+    let all = parameters + 1.0;
+    let left = elements - all - 1.0;
+    if sum <= 0.0 {
+        return (None, None);
+    }
+    let misfit = elements * (sum / elements).ln();
+    (
+        (left >= 1.0).then(|| misfit + 2.0 * all + 2.0 * all * (all + 1.0) / left),
+        Some(misfit + all * elements.ln()),
+    )
+}
+
+/// The length of a polarizer's vector means nothing: that it is free is no finding.
+fn without_length(determined: &mut Determination, x: &[f64]) {
+    let length = x[1].hypot(x[2]).hypot(x[3]);
+    determined.null_directions.retain(|direction| {
+        let along: f64 = (1..4).map(|k| direction[k] * x[k] / length).sum();
+        along.abs() < 0.99
+    });
+}
+
+/// A parameter that did not move is known.
+fn insert_fixed(determined: &mut Determination, place: usize) {
+    determined.covariance = determined
+        .covariance
+        .clone()
+        .insert_row(place, 0.0)
+        .insert_column(place, 0.0);
+    for direction in &mut determined.null_directions {
+        direction.insert(place, 0.0);
+    }
+}
+
+pub(super) fn no_fit() -> Error {
+    Error::new(
+        "no-fit",
+        "The model could not be fitted to this matrix: its exact elements leave no way.",
+    )
+}
