@@ -88,17 +88,18 @@ impl Side {
     /// With a polarizer along x and the retarder at any angle, `s = (1, ½(1 + cos δ) + …)`
     /// gives `∂s/∂δ = X s` with the same X for all angles (derived).
     fn errors(&self, name: &str) -> Result<Vec<Matrix4<f64>>> {
-        let field = |part: &str| format!("{name}.{part}");
-        let retardance_error = in_range(self.retardance_error, &field("retardanceSigmaDeg"))?;
-        let azimuth_error = in_range(self.azimuth_error, &field("azimuthSigmaDeg"))?;
-        let contrast_error = in_range(self.contrast_error, &field("contrastSigma"))?;
+        let [retardance_error, azimuth_error, contrast_error] = [
+            in_range(self.retardance_error, name)?,
+            in_range(self.azimuth_error, name)?,
+            in_range(self.contrast_error, name)?,
+        ];
         let mut errors = Vec::new();
         if retardance_error > 0.0 {
             let (sine, cosine) = self.retardance.sin_cos();
             if !self.polarizer.is_finite() || !sine.is_finite() || sine.abs() < LEAST_SINE {
                 return Err(refuse(
                     "A retarder of this retardance measures no circular part; state the one that was used.",
-                    &field("retardanceDeg"),
+                    name,
                 ));
             }
             let half = sine / (1.0 - cosine);

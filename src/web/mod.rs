@@ -7,6 +7,7 @@ mod causes;
 mod convert;
 mod drawing;
 mod examination;
+mod fitting;
 mod request;
 mod value;
 
@@ -141,6 +142,40 @@ pub fn compare(
     let (first, second, convention) = thrown(request)?;
     let found = thrown(figures::compare(&first, &second))?;
     to_js(&ComparisonTwin::new(&found, &convention))
+}
+
+/// Fits candidate models to a measured matrix, and says which of them to take.
+///
+/// # Errors
+/// For a request that is not understood, at its field; `no-m00`, `no-fit`.
+#[wasm_bindgen(unchecked_return_type = "Fits")]
+pub fn fit(#[wasm_bindgen(unchecked_param_type = "FitRequest")] request: &JsValue) -> JsResult {
+    let request = plain(request).and_then(|request| fitting::fits(&request));
+    to_js(&thrown(request)?)
+}
+
+/// How χ² rises where one parameter of a fit is held and the others are fitted again.
+///
+/// # Errors
+/// As [`fit`], and `no-profile`.
+#[wasm_bindgen(unchecked_return_type = "Profile")]
+pub fn profile(
+    #[wasm_bindgen(unchecked_param_type = "ProfileRequest")] request: &JsValue,
+) -> JsResult {
+    let request = plain(request).and_then(|request| fitting::profile(&request));
+    to_js(&thrown(request)?)
+}
+
+/// Simulated measurements of a fitted matrix, each fitted again: a slice of them.
+///
+/// # Errors
+/// As [`fit`], and `no-bootstrap`.
+#[wasm_bindgen(unchecked_return_type = "BootstrapSamples")]
+pub fn bootstrap(
+    #[wasm_bindgen(unchecked_param_type = "BootstrapRequest")] request: &JsValue,
+) -> JsResult {
+    let request = plain(request).and_then(|request| fitting::bootstrap(&request));
+    to_js(&thrown(request)?)
 }
 
 /// What a noise can show, before anything is measured.

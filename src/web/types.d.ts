@@ -266,6 +266,117 @@ export interface Comparison {
     reason: string | null;
 }
 
+/** In order of parameters. */
+export type ModelName =
+    | "linearRetarder"
+    | "linearDiattenuator"
+    | "alignedDiattenuatingRetarder"
+    | "ellipticalRetarder"
+    | "ellipticalDiattenuator"
+    | "pure"
+    | "pureIsotropic"
+    | "pureLinearCircular"
+    | "pureDiagonal"
+    | "rankTwo"
+    | "rankThree"
+    | "rankFour";
+
+/** Where the depolarization stands: beside the element, behind it or in front of it. */
+export type DepolarizationSide = "parallel" | "after" | "before";
+
+export interface FitRequest {
+    target: Measurement;
+    /** Default all of them. */
+    models?: ModelName[];
+    /** Default "parallel"; for the models with several depolarizations "after". */
+    side?: DepolarizationSide;
+    seed?: number;
+}
+
+export interface FitParameter {
+    name: string;
+    value: number;
+    /** First order; null where nothing determines it. */
+    se: number | null;
+    /** 95 %. */
+    low: number | null;
+    high: number | null;
+    /** "root" is the root of the unit of the matrix. */
+    unit: "1" | "deg" | "matrix" | "root";
+    /** Held at the end of its range. */
+    atBound: boolean;
+}
+
+export interface ModelFit {
+    model: ModelName;
+    side: DepolarizationSide | null;
+    parameterCount: number;
+    parameters: FitParameter[];
+    /** What follows from a Jones matrix. */
+    derived: FitParameter[];
+    /** Of the parameters; empty for mixtures. */
+    covariance: number[][];
+    correlation: (number | null)[][];
+    /** Parameters that can be moved together without any effect. */
+    nullDirections: string[][];
+    /** Other numbers for the same element. */
+    equivalents: { name: string; value: number }[][];
+    /** Of the element without its depolarization. */
+    jones: JonesMatrix | null;
+    /** Null without noise. */
+    chiSquare: number | null;
+    degreesOfFreedom: number;
+    pValue: number | null;
+    /** For a p by simulation: how many. */
+    simulations: number;
+    aic: number | null;
+    bic: number | null;
+    mueller: Matrix16;
+    /** Measured less fitted in σ; in units of `rms` without noise. */
+    residuals: Matrix16;
+    /** In the unit of the matrix. */
+    rms: number;
+    /** Judged by the gradient. */
+    stop: "minimum" | "stalled" | "patience";
+    gradientCosine: number;
+    evaluations: number;
+    /** What it should be read with. */
+    remarks: string[];
+}
+
+export interface Fits {
+    fits: ModelFit[];
+    recommended: { model: ModelName; rule: "p-value" | "criterion"; sentence: string } | null;
+}
+
+export interface ProfileRequest extends Omit<FitRequest, "models"> {
+    model: ModelName;
+    /** The name of a parameter of the fit, or of what follows from it. */
+    parameter: string;
+}
+
+export interface Profile {
+    values: number[];
+    /** χ² less its minimum. */
+    rises: number[];
+    /** Where it has risen by 3.84; null where it does not. */
+    low: number | null;
+    high: number | null;
+    unit: FitParameter["unit"];
+}
+
+export interface BootstrapRequest extends Omit<FitRequest, "models"> {
+    model: ModelName;
+    /** Slices join to the same numbers however they are cut. */
+    first?: number;
+    count?: number;
+}
+
+export interface BootstrapSamples {
+    samples: { name: string; unit: FitParameter["unit"]; values: (number | null)[] }[];
+    chiSquare: number[];
+}
+
 export interface FormatRequest {
     value: number;
     se?: number | null;
