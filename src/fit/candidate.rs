@@ -1,7 +1,9 @@
 use nalgebra::{DMatrix, DVector, SVector};
 
 use super::derived;
-use super::least_squares::{Determination, Minimum, Problem, Stop, determination, minimise_from};
+use super::least_squares::{
+    Determination, Minimum, Problem, Stop, determination, largest_cosine, minimise_from,
+};
 use super::mixtures;
 use super::models::{Model, Shape, Side, triangular};
 use super::parameters::{Name, Reported, reported};
@@ -80,6 +82,13 @@ pub(super) struct Solved {
     /// Of `x`.
     pub covariance: DMatrix<f64>,
 }
+
+/// A column of less effect than this share of the largest belongs to a Jones matrix of no
+/// weight.
+const UNUSED: f64 = 1e-3;
+
+/// Where one of them has gone, the others settle to this cosine.
+const MIXTURE_ORTHOGONAL: f64 = 1e-4;
 
 /// A minimum, of what, and the parameter that was held for it.
 type Found = (Shape, Minimum, Option<(usize, f64)>);
@@ -223,6 +232,14 @@ impl<'a> Fitter<'a> {
         fixed: Option<(usize, f64)>,
     ) -> Result<Fit> {
         let model = shape.model;
+        let mut minimum = minimum;
+        if model.is_mixture() {
+            // A Jones matrix that the mixture does without has no way to be orthogonal.
+            minimum.gradient_cosine = largest_cosine(&minimum.residuals, &minimum.jacobian, UNUSED);
+            if minimum.gradient_cosine < MIXTURE_ORTHOGONAL {
+                minimum.stop = Stop::Minimum;
+            }
+        }
         let problem = ModelProblem {
             target: &self.target,
             shape,

@@ -9,7 +9,7 @@ use crate::linalg::right_singular;
 const RANK: f64 = 1e-7;
 
 /// The cosine between residuals and any column of the Jacobian, at a minimum.
-const ORTHOGONAL: f64 = 1e-6;
+pub(super) const ORTHOGONAL: f64 = 1e-6;
 
 /// Evaluations for each parameter.
 const PATIENCE: usize = 60;
@@ -108,6 +108,29 @@ impl<P: Problem> LeastSquaresProblem<f64, Dyn, Dyn> for Adapter<'_, P> {
 /// The least sum of squares near `start` (Levenberg 1944; Marquardt 1963). `None` where the
 /// problem can't be evaluated there.
 pub fn minimise(problem: &impl Problem, start: &[f64]) -> Option<Minimum> {
+    let method = LevenbergMarquardt::new()
+        .with_ftol(1e-15)
+        .with_xtol(1e-14)
+        .with_gtol(1e-13)
+        .with_patience(PATIENCE);
+    minimise_by(&method, problem, start)
+}
+
+/// The same to about six digits of the sum, for what is simulated many times.
+pub fn minimise_roughly(problem: &impl Problem, start: &[f64]) -> Option<Minimum> {
+    let method = LevenbergMarquardt::new()
+        .with_ftol(1e-5)
+        .with_xtol(1e-6)
+        .with_gtol(1e-6)
+        .with_patience(2);
+    minimise_by(&method, problem, start)
+}
+
+fn minimise_by(
+    method: &LevenbergMarquardt<f64>,
+    problem: &impl Problem,
+    start: &[f64],
+) -> Option<Minimum> {
     let mut adapter = Adapter {
         problem,
         parameters: DVector::zeros(start.len()),
@@ -115,11 +138,6 @@ pub fn minimise(problem: &impl Problem, start: &[f64]) -> Option<Minimum> {
     };
     adapter.set_params(&DVector::from_row_slice(start));
     adapter.evaluated.as_ref()?;
-    let method = LevenbergMarquardt::new()
-        .with_ftol(1e-15)
-        .with_xtol(1e-14)
-        .with_gtol(1e-13)
-        .with_patience(PATIENCE);
     let (ended, report) = if start.is_empty() {
         (adapter, None)
     } else {
@@ -128,7 +146,7 @@ pub fn minimise(problem: &impl Problem, start: &[f64]) -> Option<Minimum> {
     };
     let parameters = ended.parameters.as_slice().to_vec();
     let (residuals, jacobian) = problem.evaluate(&parameters)?;
-    let gradient_cosine = largest_cosine(&residuals, &jacobian);
+    let gradient_cosine = largest_cosine(&residuals, &jacobian, 0.0);
     let is_out = matches!(
         report.as_ref().map(|report| &report.termination),
         Some(TerminationReason::LostPatience)
@@ -170,7 +188,9 @@ pub fn minimise_from(problem: &impl Problem, starts: &[Vec<f64>]) -> Option<Mini
     })
 }
 
-fn largest_cosine(residuals: &DVector<f64>, jacobian: &DMatrix<f64>) -> f64 {
+/// Over the columns whose effect is at least this share of the largest.
+pub(super) fn largest_cosine(residuals: &DVector<f64>, jacobian: &DMatrix<f64>, share: f64) -> f64 {
+    let largest = jacobian.column_iter().fold(0.0_f64, |a, b| a.max(b.norm()));
     let length = residuals.norm();
     // Residuals of a fit that is exact are rounding, with no direction of their own.
     if length < 1e-7 {
@@ -178,6 +198,7 @@ fn largest_cosine(residuals: &DVector<f64>, jacobian: &DMatrix<f64>) -> f64 {
     }
     jacobian
         .column_iter()
+        .filter(|column| column.norm() >= share * largest)
         .map(|column| {
             let scale = column.norm() * length;
             if scale > 0.0 {

@@ -1,10 +1,11 @@
 use nalgebra::{DVector, Matrix4, SVector};
 
 use super::candidate::{Fitter, Judge, Parameter};
+use super::least_squares::minimise_roughly;
 use super::models::{Model, Shape, Side};
 use super::parameters::Name;
-use super::starts::Guide;
-use super::target::row_major;
+use super::starts::mixture_start;
+use super::target::{ModelProblem, row_major};
 use crate::coherency::{Coherency, eigenvalue_errors, eigenvalue_gradient, realizable_spectrum};
 use crate::error::Result;
 use crate::stats::NormalDraws;
@@ -118,9 +119,21 @@ pub(super) fn p_value(
             }
             None => {
                 let target = fitter.target.around(SVector::from(simulated));
-                let guide = Guide::of(&target)?;
-                let (_, minimum, _) = fitter.solve(&target, &guide, model, Side::Parallel)?;
-                minimum.sum_of_squares
+                let eigen = Coherency::from_elements(&simulated).eigen()?;
+                let (x, pivots) = mixture_start(&eigen, rank);
+                let shape = Shape {
+                    model,
+                    side: Side::Parallel,
+                    pivots,
+                    is_polarizer: false,
+                };
+                let problem = ModelProblem {
+                    target: &target,
+                    shape,
+                    fixed: None,
+                };
+                minimise_roughly(&problem, &x)
+                    .map_or(f64::INFINITY, |minimum| minimum.sum_of_squares)
             }
         };
         beyond += u32::from(least >= outcome.sum * ratio * ratio);

@@ -145,12 +145,7 @@ impl Guide {
                 self.with_depolarizer(model, side, seed)
             }
             Model::RankTwo | Model::RankThree | Model::RankFour => {
-                let rank = model.rank().unwrap_or(4);
-                let least = 1e-4 * self.eigen.values[0].abs();
-                let columns: Vec<_> = (0..rank)
-                    .map(|k| column(&self.eigen, k, self.eigen.values[k].max(least)))
-                    .collect();
-                let (x, pivots) = triangular(&columns);
+                let (x, pivots) = mixture_start(&self.eigen, model.rank().unwrap_or(4));
                 (vec![x], pivots)
             }
         }
@@ -194,6 +189,15 @@ impl Guide {
         }
         (starts, pivots)
     }
+}
+
+/// The largest eigenvalues, none of them zero: what is zero could not grow.
+pub(super) fn mixture_start(eigen: &HermitianEigen, rank: usize) -> (Vec<f64>, [usize; 4]) {
+    let least = 1e-4 * eigen.values[0].abs();
+    let columns: Vec<_> = (0..rank)
+        .map(|k| column(eigen, k, eigen.values[k].max(least)))
+        .collect();
+    triangular(&columns)
 }
 
 /// `sqrt(2λ)` times an eigenvector: the entries of a Jones matrix.
