@@ -1,17 +1,18 @@
 use nalgebra::{DMatrix, DVector, SVector};
+use num_complex::Complex64;
 
 use super::derived;
 use super::least_squares::{
     Determination, Minimum, Problem, Stop, determination, largest_cosine, minimise_from,
 };
 use super::mixtures;
-use super::models::{Model, Shape, Side, triangular};
+use super::models::{Model, Shape, Side, columns_of, triangular};
 use super::parameters::{Name, Reported, reported};
 use super::starts::Guide;
 use super::target::{ModelProblem, Target, row_major};
 use crate::coherency::{Coherency, nearest_to, weighted_significance};
 use crate::error::{Error, Result};
-use crate::mueller::Mueller;
+use crate::mueller::{Mueller, PAULI};
 use crate::noise::Measurement;
 use crate::stats::{normal_95, student_95};
 
@@ -73,14 +74,31 @@ pub struct Fit {
     pub(super) solved: Solved,
 }
 
+impl Fit {
+    /// The Jones matrices whose incoherent sum the model is, without the depolarization of
+    /// its own, entries row by row; none for the models with fewer parameters than one.
+    #[must_use]
+    pub fn jones_matrices(&self) -> Vec<[Complex64; 4]> {
+        let (shape, x) = (&self.solved.shape, &self.solved.x);
+        let Some(rank) = self.model.rank() else {
+            return Vec::new();
+        };
+        let own = x.len() - self.model.depolarizations();
+        columns_of(&x[..own], rank, &shape.pivots)
+            .into_iter()
+            .map(|column| column.map(|entry| entry * self.solved.unit.sqrt()))
+            .collect()
+    }
+}
+
 /// What later questions about a fit start from.
 #[derive(Debug, Clone, PartialEq)]
 pub(super) struct Solved {
     pub shape: Shape,
     /// All of them, the fixed one too.
     pub x: Vec<f64>,
-    /// Of `x`.
-    pub covariance: DMatrix<f64>,
+    /// |M00| of the measured matrix.
+    pub unit: f64,
 }
 
 /// A column of less effect than this share of the largest belongs to a Jones matrix of no
@@ -220,6 +238,13 @@ impl<'a> Fitter<'a> {
                 shape.is_polarizer = true;
                 Ok((shape, find(shape, None, &[found.parameters])?, None))
             }
+            Model::PureLinearCircular | Model::PureDiagonal => {
+                let Some((x, pivots)) = with_positive_factors(&shape, &found.parameters) else {
+                    return Ok((shape, found, None));
+                };
+                shape.pivots = pivots;
+                Ok((shape, find(shape, None, &[x])?, None))
+            }
             _ => Ok((shape, found, None)),
         }
     }
@@ -346,11 +371,7 @@ impl<'a> Fitter<'a> {
             stop: minimum.stop,
             gradient_cosine: minimum.gradient_cosine,
             evaluations: minimum.evaluations,
-            solved: Solved {
-                shape,
-                x,
-                covariance,
-            },
+            solved: Solved { shape, x, unit },
         })
     }
 
@@ -447,6 +468,50 @@ fn criteria(
         (left >= 1.0).then(|| misfit + 2.0 * all + 2.0 * all * (all + 1.0) / left),
         Some(misfit + all * elements.ln()),
     )
+}
+
+/// Two negative factors of a depolarizer are half a turn of the element: the same matrix with
+/// the first factors positive. `None` where they are.
+fn with_positive_factors(shape: &Shape, x: &[f64]) -> Option<(Vec<f64>, [usize; 4])> {
+    let own = x.len() - shape.model.depolarizations();
+    let mut factors = x[own..].to_vec();
+    let turn = match (
+        shape.model,
+        factors[0] < 0.0,
+        factors.get(1).is_some_and(|d| *d < 0.0),
+    ) {
+        (Model::PureLinearCircular, true, _) => 3,
+        (Model::PureDiagonal, true, true) => 3,
+        (Model::PureDiagonal, true, false) => 2,
+        (Model::PureDiagonal, false, true) => 1,
+        _ => return None,
+    };
+    if shape.model == Model::PureLinearCircular {
+        factors[0] = -factors[0];
+    } else {
+        for (k, factor) in factors.iter_mut().enumerate() {
+            if k + 1 != turn {
+                *factor = -*factor;
+            }
+        }
+    }
+    let [entries] = columns_of(&x[..own], 1, &shape.pivots)[..] else {
+        return None;
+    };
+    let jones = nalgebra::Matrix2::new(entries[0], entries[1], entries[2], entries[3]);
+    let turned = if shape.side == Side::Before {
+        jones * PAULI[turn].matrix()
+    } else {
+        PAULI[turn].matrix() * jones
+    };
+    let (mut x, pivots) = triangular(&[[
+        turned[(0, 0)],
+        turned[(0, 1)],
+        turned[(1, 0)],
+        turned[(1, 1)],
+    ]]);
+    x.extend(factors);
+    Some((x, pivots))
 }
 
 /// The length of a polarizer's vector means nothing: that it is free is no finding.

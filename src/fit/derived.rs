@@ -1,8 +1,8 @@
 use nalgebra::DVector;
 
 use super::candidate::{Judge, Parameter};
-use super::models::Shape;
-use super::parameters::{Name, entries_of};
+use super::models::{Shape, columns_of};
+use super::parameters::Name;
 use super::starts::pure_mueller;
 use crate::decompose::polar_forward;
 use crate::error::Result;
@@ -51,8 +51,7 @@ pub(super) fn of_jones(
 /// Transmittance, diattenuation, retardance and the azimuth and ellipticity of the fast
 /// eigenstate, as far as they are determined.
 pub(super) fn quantities(shape: &Shape, own: &[f64], unit: f64) -> Result<Vec<(Name, f64)>> {
-    let (entries, _) = entries_of(own, &shape.pivots);
-    let Some(mueller) = pure_mueller(&[entries]) else {
+    let Some(mueller) = pure_mueller(&columns_of(own, 1, &shape.pivots)) else {
         return Ok(Vec::new());
     };
     let m = mueller.row_major();

@@ -355,19 +355,8 @@ fn polarizer(v: &Vector3<f64>) -> ByVector {
 /// `H = ½ L L†`, L with as many columns as Jones matrices are mixed, triangular in the
 /// order of the pivots: for one column the entries of the Jones matrix themselves.
 fn mixture(own: &[f64], rank: usize, pivots: &[usize; 4]) -> Evaluated {
-    let mut columns = vec![[Complex64::ZERO; 4]; rank];
-    let mut places = Vec::with_capacity(own.len());
-    for column in 0..rank {
-        for (k, &row) in pivots.iter().enumerate().skip(column) {
-            places.push((column, row, Complex64::ONE));
-            if k > column {
-                places.push((column, row, Complex64::I));
-            }
-        }
-    }
-    for (&(column, row, phase), &value) in places.iter().zip(own) {
-        columns[column][row] += phase * value;
-    }
+    let columns = columns_of(own, rank, pivots);
+    let places = places_of(rank, pivots);
     let mut h = Matrix4::<Complex64>::zeros();
     for column in &columns {
         for i in 0..4 {
@@ -391,6 +380,29 @@ fn mixture(own: &[f64], rank: usize, pivots: &[usize; 4]) -> Evaluated {
         matrix: *Coherency::from_matrix(h).mueller().matrix(),
         derivatives,
     }
+}
+
+/// The columns of L.
+pub(super) fn columns_of(own: &[f64], rank: usize, pivots: &[usize; 4]) -> Vec<[Complex64; 4]> {
+    let mut columns = vec![[Complex64::ZERO; 4]; rank];
+    for ((column, row, phase), &value) in places_of(rank, pivots).into_iter().zip(own) {
+        columns[column][row] += phase * value;
+    }
+    columns
+}
+
+/// Column and row of L that each parameter moves, along the real or the imaginary axis.
+pub(super) fn places_of(rank: usize, pivots: &[usize; 4]) -> Vec<(usize, usize, Complex64)> {
+    let mut places = Vec::new();
+    for column in 0..rank {
+        for (k, &row) in pivots.iter().enumerate().skip(column) {
+            places.push((column, row, Complex64::ONE));
+            if k > column {
+                places.push((column, row, Complex64::I));
+            }
+        }
+    }
+    places
 }
 
 /// The parameters of [`mixture`] whose H has these columns, `H = ½ Σ c c†`, and the pivots

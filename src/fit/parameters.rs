@@ -3,7 +3,7 @@ use std::f64::consts::{FRAC_PI_2, PI, TAU};
 use nalgebra::{DMatrix, Vector3};
 use num_complex::Complex64;
 
-use super::models::{Model, Shape};
+use super::models::{Model, Shape, columns_of, places_of};
 use crate::state::half_turn;
 
 /// What a parameter is.
@@ -203,7 +203,10 @@ pub(super) fn reported(shape: &Shape, x: &[f64], unit: f64) -> Reported {
 
 /// The seven numbers of a Jones matrix whose largest entry is real and positive.
 fn jones(all: &mut Reported, shape: &Shape, own: &[f64], unit: f64) {
-    let (entries, places) = entries_of(own, &shape.pivots);
+    let [entries] = columns_of(own, 1, &shape.pivots)[..] else {
+        return;
+    };
+    let places = places_of(1, &shape.pivots);
     let scale = unit.sqrt();
     let largest = (0..4).fold(0, |best, k| {
         if entries[k].norm() > entries[best].norm() * (1.0 + 1e-12) {
@@ -222,7 +225,7 @@ fn jones(all: &mut Reported, shape: &Shape, own: &[f64], unit: f64) {
         let slopes: Vec<(usize, Complex64)> = places
             .iter()
             .enumerate()
-            .map(|(column, &(entry, phase))| {
+            .map(|(column, &(_, entry, phase))| {
                 // v e^{-iφ}, φ the argument of the largest entry.
                 let angle = if entry == largest {
                     (phase / reference).im
@@ -244,25 +247,6 @@ fn jones(all: &mut Reported, shape: &Shape, own: &[f64], unit: f64) {
             all.push(Name::Jones(row, false), scale * value.im, &part(|z| z.im));
         }
     }
-}
-
-/// The entries of a Jones matrix from its fitted parameters, and which entry each moves.
-pub(super) fn entries_of(
-    own: &[f64],
-    pivots: &[usize; 4],
-) -> ([Complex64; 4], Vec<(usize, Complex64)>) {
-    let mut places = Vec::with_capacity(7);
-    for (k, &row) in pivots.iter().enumerate() {
-        places.push((row, Complex64::ONE));
-        if k > 0 {
-            places.push((row, Complex64::I));
-        }
-    }
-    let mut entries = [Complex64::ZERO; 4];
-    for (&(row, phase), &value) in places.iter().zip(own) {
-        entries[row] += phase * value;
-    }
-    (entries, places)
 }
 
 /// δ in [0, π] with the axis that goes with it, and the sign of the change.

@@ -112,7 +112,7 @@ pub(crate) struct Pauli {
 }
 
 impl Pauli {
-    fn matrix(&self) -> Matrix2<Complex64> {
+    pub(crate) fn matrix(&self) -> Matrix2<Complex64> {
         Matrix2::from_fn(|row, column| {
             if column == row ^ self.flip {
                 self.values[row]

@@ -11,12 +11,14 @@ mod literal;
 mod notation;
 mod npy;
 mod number;
+mod recipe;
 mod source;
 mod table;
 
 pub use export::{Column, Content, Entry, NamedMatrix, NamedTable, OutputForm, export_text};
 pub use file::{decode, parse_file};
 pub use number::{DecimalMark, NumberProblem, PrintedNumber, parse_number};
+pub use recipe::python_recipe;
 
 use std::cmp::Reverse;
 

@@ -13,6 +13,7 @@ use crate::fit::{
 use crate::json::Fields;
 use crate::mueller::Jones;
 use crate::noise::Measurement;
+use crate::text::python_recipe;
 
 /// More samples than this at once leave no chance to stop.
 const MOST_SAMPLES: u64 = 10_000;
@@ -103,6 +104,14 @@ pub fn fits(request: &Value) -> Result<FitsTwin> {
             .map(|fit| FitTwin::new(fit, &request.convention))
             .collect(),
     })
+}
+
+/// A fit as a Python text that computes its matrix again.
+pub fn recipe(request: &Value) -> Result<String> {
+    let (request, fields) = FitRequest::of(request, &["model"])?;
+    let model = fields.required("model", fields.choice("model", &MODELS)?)?;
+    let fit = Fitter::new(&request.measurement, request.seed)?.fit(model, request.side)?;
+    Ok(python_recipe(&fit, &request.convention))
 }
 
 /// The curve of χ² over one parameter.

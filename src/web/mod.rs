@@ -166,6 +166,17 @@ pub fn profile(
     to_js(&thrown(request)?)
 }
 
+/// A fit as a Python text that computes the fitted matrix again, with NumPy alone.
+///
+/// # Errors
+/// As [`fit`].
+#[wasm_bindgen(js_name = fitRecipe)]
+pub fn fit_recipe(
+    #[wasm_bindgen(unchecked_param_type = "RecipeRequest")] request: &JsValue,
+) -> Result<String, JsValue> {
+    thrown(plain(request).and_then(|request| fitting::recipe(&request)))
+}
+
 /// Simulated measurements of a fitted matrix, each fitted again: a slice of them.
 ///
 /// # Errors

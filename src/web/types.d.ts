@@ -349,6 +349,10 @@ export interface Fits {
     recommended: { model: ModelName; rule: "p-value" | "criterion"; sentence: string } | null;
 }
 
+export interface RecipeRequest extends Omit<FitRequest, "models"> {
+    model: ModelName;
+}
+
 export interface ProfileRequest extends Omit<FitRequest, "models"> {
     model: ModelName;
     /** The name of a parameter of the fit, or of what follows from it. */
