@@ -8,8 +8,8 @@ mod significance;
 mod weighted;
 
 pub use causes::{Candidate, Cause, likely_causes, mirror_is_visible};
+pub(crate) use nearest::nearest_to;
 pub use nearest::{Nearest, nearest};
-pub(crate) use nearest::{nearest_to, realizable_spectrum};
 pub use realizability::{
     Passivity, PassivityVerdict, Realizability, Verdict, is_realizable, passivity, realizability,
     stokes_margin,

@@ -78,8 +78,9 @@ impl Fitter<'_> {
                 fixed: None,
             };
             let minimum = minimise(&problem, &fit.solved.x).ok_or_else(no_fit)?;
-            let report = reported(&shape, &minimum.parameters, unit);
-            let follows = derived::quantities(&shape, &minimum.parameters[..own], unit)?;
+            let x = problem.to_scale(&minimum.parameters);
+            let report = reported(&shape, &x, unit);
+            let follows = derived::quantities(&shape, &x[..own], unit)?;
             for (place, &(name, centre)) in centres.iter().enumerate() {
                 let value = if place < shift {
                     report.values.get(place).copied()

@@ -3,7 +3,7 @@ use num_complex::Complex64;
 
 use super::derived;
 use super::least_squares::{
-    Determination, Minimum, Problem, Stop, determination, largest_cosine, minimise_from,
+    Determination, Minimum, ROUNDING, Stop, determination, largest_cosine, minimise, minimise_from,
 };
 use super::mixtures;
 use super::models::{Model, Shape, Side, columns_of, triangular};
@@ -108,8 +108,25 @@ const UNUSED: f64 = 1e-3;
 /// Where one of them has gone, the others settle to this cosine.
 const MIXTURE_ORTHOGONAL: f64 = 1e-4;
 
+/// A minimum with the weight of an exact M00, and judged without it.
+fn finished(problem: &ModelProblem<'_>, mut found: Minimum) -> Minimum {
+    if problem.shape.model.is_mixture() {
+        // A Jones matrix that the mixture does without has no way to be orthogonal.
+        found.gradient_cosine = largest_cosine(&found.residuals, &found.jacobian, UNUSED);
+        if found.gradient_cosine < MIXTURE_ORTHOGONAL {
+            found.stop = Stop::Minimum;
+        }
+    }
+    found.parameters = problem.to_scale(&found.parameters);
+    (found.residuals, found.jacobian) = problem.weighted(&found.parameters);
+    found
+}
+
+/// The place and the value of a parameter that is held.
+type Held = Option<(usize, f64)>;
+
 /// A minimum, of what, and the parameter that was held for it.
-type Found = (Shape, Minimum, Option<(usize, f64)>);
+type Found = (Shape, Minimum, Held);
 
 /// A measurement that models are fitted to.
 pub struct Fitter<'a> {
@@ -148,8 +165,14 @@ impl<'a> Fitter<'a> {
     /// `no-convergence`.
     pub fn fit(&self, model: Model, side: Side) -> Result<Fit> {
         let side_used = model.side(side);
+        let has_equal_errors =
+            self.measurement.equal_sigma().is_some() || !self.measurement.has_noise();
         let (shape, minimum, fixed) = if model == Model::RankFour {
             self.whole()?
+        } else if model.is_mixture() && has_equal_errors {
+            self.closed_mixture(model)
+        } else if model.is_mixture() {
+            self.weighted_mixture(model)?
         } else {
             self.solve(
                 &self.target,
@@ -163,17 +186,63 @@ impl<'a> Fitter<'a> {
 
     /// Any realizable matrix: the nearest one.
     fn whole(&self) -> Result<Found> {
+        Ok(self.known(Model::RankFour, &self.nearest_columns()?))
+    }
+
+    /// The nearest realizable matrix as four Jones matrices, in units of M00.
+    fn nearest_columns(&self) -> Result<Vec<[Complex64; 4]>> {
         let eigen = &Coherency::from_mueller(self.measurement.mueller()).eigen()?;
         let nearest = nearest_to(self.measurement, eigen)?.ok_or_else(no_fit)?;
-        let columns: Vec<_> = (0..4)
+        Ok((0..4)
             .map(|k| {
                 let value = (nearest.eigen.values[k] / self.target.unit).max(0.0);
                 std::array::from_fn(|i| nearest.eigen.vectors[k][i] * (2.0 * value).sqrt())
             })
+            .collect())
+    }
+
+    /// Under unequal errors: of few Jones matrices the nearest realizable matrix is itself the
+    /// best mixture, else it is where to start.
+    fn weighted_mixture(&self, model: Model) -> Result<Found> {
+        let rank = model.rank().unwrap_or(4);
+        let columns = self.nearest_columns()?;
+        let weight = |column: &[Complex64; 4]| column.iter().map(Complex64::norm_sqr).sum::<f64>();
+        if weight(&columns[rank]) < UNUSED * UNUSED * UNUSED * weight(&columns[0]) {
+            return Ok(self.known(model, &columns[..rank]));
+        }
+        let found = self.solve(&self.target, &self.guide, model, Side::Parallel)?;
+        let (start, pivots) = triangular(&columns[..rank]);
+        let shape = Shape { pivots, ..found.0 };
+        let problem = ModelProblem {
+            target: &self.target,
+            shape,
+            fixed: None,
+        };
+        Ok(match minimise(&problem, &start) {
+            Some(other) if other.sum_of_squares < found.1.sum_of_squares * (1.0 - ROUNDING) => {
+                (shape, finished(&problem, other), None)
+            }
+            _ => found,
+        })
+    }
+
+    /// For equal errors M ↔ H is an isometry: the largest eigenvalues stay.
+    fn closed_mixture(&self, model: Model) -> Found {
+        let eigen = &self.guide.eigen;
+        let rank = model.rank().unwrap_or(4);
+        let exact = self.target.m00_is_exact.then_some(self.target.elements[0]);
+        let kept = mixtures::kept_spectrum(&eigen.values, rank, exact);
+        let columns: Vec<_> = (0..rank)
+            .map(|k| std::array::from_fn(|i| eigen.vectors[k][i] * (2.0 * kept[k]).sqrt()))
             .collect();
-        let (x, pivots) = triangular(&columns);
+        self.known(model, &columns)
+    }
+
+    /// A mixture of known Jones matrices as a fit.
+    fn known(&self, model: Model, columns: &[[Complex64; 4]]) -> Found {
+        let (x, pivots) = triangular(columns);
         let shape = Shape {
-            model: Model::RankFour,
+            model,
             side: Side::Parallel,
             pivots,
             is_polarizer: false,
@@ -183,7 +252,7 @@ impl<'a> Fitter<'a> {
             shape,
             fixed: None,
         };
-        let (residuals, jacobian) = problem.evaluate(&x).ok_or_else(no_fit)?;
+        let (residuals, jacobian) = problem.weighted(&x);
         let minimum = Minimum {
             parameters: x,
             sum_of_squares: residuals.norm_squared(),
@@ -193,7 +262,7 @@ impl<'a> Fitter<'a> {
             residuals,
             jacobian,
         };
-        Ok((shape, minimum, None))
+        (shape, minimum, None)
     }
 
     pub(super) fn solve(
@@ -203,7 +272,16 @@ impl<'a> Fitter<'a> {
         model: Model,
         side: Side,
     ) -> Result<Found> {
-        let (starts, pivots) = guide.starts(model, side, self.seed);
+        let (mut starts, pivots) = guide.starts(model, side, self.seed);
+        for &special in model.specials() {
+            let (shape, found, fixed) = self.solve(target, guide, special, side)?;
+            let problem = ModelProblem {
+                target,
+                shape,
+                fixed,
+            };
+            starts.extend(model.embedding(special, &problem.whole(&found.parameters)));
+        }
         let mut shape = Shape {
             model,
             side,
@@ -216,37 +294,51 @@ impl<'a> Fitter<'a> {
                 shape,
                 fixed,
             };
-            minimise_from(&problem, starts).ok_or_else(no_fit)
+            minimise_from(&problem, starts)
+                .map(|found| finished(&problem, found))
+                .ok_or_else(no_fit)
         };
-        let found = find(shape, None, &starts)?;
-        // The cosine of a diattenuation's parameter is the root of what the dark axis lets
-        // through: below zero, the best of all is a polarizer.
-        match model {
-            Model::LinearDiattenuator if found.parameters[1].cos() < 0.0 => {
-                let sign = found.parameters[1].sin().signum();
-                let fixed = Some((1, sign * std::f64::consts::FRAC_PI_2));
-                let mut start = found.parameters;
-                start.remove(1);
-                Ok((shape, find(shape, fixed, &[start])?, fixed))
-            }
-            Model::EllipticalDiattenuator
-                if SVector::<f64, 3>::from_column_slice(&found.parameters[1..4])
-                    .norm()
-                    .cos()
-                    < 0.0 =>
-            {
-                shape.is_polarizer = true;
-                Ok((shape, find(shape, None, &[found.parameters])?, None))
-            }
-            Model::PureLinearCircular | Model::PureDiagonal => {
-                let Some((x, pivots)) = with_positive_factors(&shape, &found.parameters) else {
-                    return Ok((shape, found, None));
+        if model.has_bound() {
+            let mut best: Option<Found> = None;
+            let mut evaluations = 0;
+            for start in &starts {
+                let found = find(shape, None, std::slice::from_ref(start))?;
+                evaluations += found.evaluations;
+                let (shape, found, fixed) = match beyond(model, &found.parameters) {
+                    None => (shape, found, None),
+                    Some((bound, fixed, start)) => {
+                        let held = Shape {
+                            is_polarizer: bound,
+                            ..shape
+                        };
+                        let found = find(held, fixed, &[start])?;
+                        evaluations += found.evaluations;
+                        (held, found, fixed)
+                    }
                 };
-                shape.pivots = pivots;
-                Ok((shape, find(shape, None, &[x])?, None))
+                let is_better = best.as_ref().is_none_or(|(_, best, _)| {
+                    found.sum_of_squares < best.sum_of_squares * (1.0 - ROUNDING)
+                });
+                if is_better {
+                    best = Some((shape, found, fixed));
+                }
             }
-            _ => Ok((shape, found, None)),
+            let (shape, found, fixed) = best.ok_or_else(no_fit)?;
+            return Ok((
+                shape,
+                Minimum {
+                    evaluations,
+                    ..found
+                },
+                fixed,
+            ));
         }
+        let found = find(shape, None, &starts)?;
+        let Some((x, pivots)) = with_positive_factors(&shape, &found.parameters) else {
+            return Ok((shape, found, None));
+        };
+        shape.pivots = pivots;
+        Ok((shape, find(shape, None, &[x])?, None))
     }
 
     fn report(
@@ -254,17 +346,9 @@ impl<'a> Fitter<'a> {
         shape: Shape,
         side: Option<Side>,
         minimum: Minimum,
-        fixed: Option<(usize, f64)>,
+        fixed: Held,
     ) -> Result<Fit> {
         let model = shape.model;
-        let mut minimum = minimum;
-        if model.is_mixture() {
-            // A Jones matrix that the mixture does without has no way to be orthogonal.
-            minimum.gradient_cosine = largest_cosine(&minimum.residuals, &minimum.jacobian, UNUSED);
-            if minimum.gradient_cosine < MIXTURE_ORTHOGONAL {
-                minimum.stop = Stop::Minimum;
-            }
-        }
         let problem = ModelProblem {
             target: &self.target,
             shape,
@@ -444,6 +528,20 @@ impl Judge<'_> {
     }
 }
 
+/// What to fit instead where the cosine of a diattenuation's parameter, the root of what the
+/// dark axis lets through, is below zero: a polarizer, as a shape or as a held parameter, and
+/// where to start.
+fn beyond(model: Model, x: &[f64]) -> Option<(bool, Held, Vec<f64>)> {
+    if model == Model::LinearDiattenuator {
+        let held = (1, x[1].sin().signum() * std::f64::consts::FRAC_PI_2);
+        let mut start = x.to_vec();
+        start.remove(1);
+        return (x[1].cos() < 0.0).then_some((false, Some(held), start));
+    }
+    let length = SVector::<f64, 3>::from_column_slice(&x[1..4]).norm();
+    (length.cos() < 0.0).then(|| (true, None, x.to_vec()))
+}
+
 /// Akaike's and the Bayesian criterion; with unknown noise from the sum of squares, with the
 /// correction for few elements (Hurvich & Tsai 1989).
 fn criteria(
@@ -477,7 +575,7 @@ fn with_positive_factors(shape: &Shape, x: &[f64]) -> Option<(Vec<f64>, [usize; 
     let mut factors = x[own..].to_vec();
     let turn = match (
         shape.model,
-        factors[0] < 0.0,
+        factors.first().is_some_and(|d| *d < 0.0),
         factors.get(1).is_some_and(|d| *d < 0.0),
     ) {
         (Model::PureLinearCircular, true, _) => 3,

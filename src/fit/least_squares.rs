@@ -11,6 +11,15 @@ const RANK: f64 = 1e-7;
 /// The cosine between residuals and any column of the Jacobian, at a minimum.
 pub(super) const ORTHOGONAL: f64 = 1e-6;
 
+/// Below this cosine nothing is left to settle.
+const SETTLED: f64 = 1e-9;
+
+/// A sum of squares is known to this share: errors of a millionth are residuals with ten digits.
+pub(super) const ROUNDING: f64 = 1e-9;
+
+/// Gauss-Newton steps after the search.
+const MOST_STEPS: usize = 8;
+
 /// Evaluations for each parameter.
 const PATIENCE: usize = 60;
 
@@ -109,11 +118,11 @@ impl<P: Problem> LeastSquaresProblem<f64, Dyn, Dyn> for Adapter<'_, P> {
 /// problem can't be evaluated there.
 pub fn minimise(problem: &impl Problem, start: &[f64]) -> Option<Minimum> {
     let method = LevenbergMarquardt::new()
-        .with_ftol(1e-15)
-        .with_xtol(1e-14)
-        .with_gtol(1e-13)
+        .with_ftol(1e-14)
+        .with_xtol(1e-11)
+        .with_gtol(1e-12)
         .with_patience(PATIENCE);
-    minimise_by(&method, problem, start)
+    minimise_by(&method, problem, start).map(|found| settled(problem, found))
 }
 
 /// The same to about six digits of the sum, for what is simulated many times.
@@ -124,6 +133,51 @@ pub fn minimise_roughly(problem: &impl Problem, start: &[f64]) -> Option<Minimum
         .with_gtol(1e-6)
         .with_patience(2);
     minimise_by(&method, problem, start)
+}
+
+/// Where the trust region has shrunk on rounding, plain Gauss-Newton steps still lead to the
+/// minimum: each must bring the residuals nearer to orthogonal and not raise their sum.
+fn settled(problem: &impl Problem, mut found: Minimum) -> Minimum {
+    for _ in 0..MOST_STEPS {
+        if found.gradient_cosine < SETTLED {
+            break;
+        }
+        let Ok(determined) = determination(&found.jacobian) else {
+            break;
+        };
+        let step = determined.covariance * (found.jacobian.transpose() * &found.residuals);
+        let parameters: Vec<f64> = found
+            .parameters
+            .iter()
+            .zip(step.iter())
+            .map(|(value, step)| value - step)
+            .collect();
+        let Some((residuals, jacobian)) = problem.evaluate(&parameters) else {
+            break;
+        };
+        found.evaluations += 1;
+        let sum_of_squares = residuals.norm_squared();
+        let gradient_cosine = largest_cosine(&residuals, &jacobian, 0.0);
+        let is_better = gradient_cosine < found.gradient_cosine
+            && sum_of_squares <= found.sum_of_squares * (1.0 + ROUNDING);
+        if !is_better {
+            break;
+        }
+        found = Minimum {
+            parameters,
+            residuals,
+            jacobian,
+            sum_of_squares,
+            gradient_cosine,
+            stop: if gradient_cosine < ORTHOGONAL {
+                Stop::Minimum
+            } else {
+                found.stop
+            },
+            evaluations: found.evaluations,
+        };
+    }
+    found
 }
 
 fn minimise_by(
@@ -177,7 +231,7 @@ pub fn minimise_from(problem: &impl Problem, starts: &[Vec<f64>]) -> Option<Mini
         // A later start must be better by more than rounding: the answer does not hop.
         let limit = best
             .as_ref()
-            .map_or(f64::INFINITY, |best| best.sum_of_squares * (1.0 - 1e-9));
+            .map_or(f64::INFINITY, |best| best.sum_of_squares * (1.0 - ROUNDING));
         if found.sum_of_squares < limit {
             best = Some(found);
         }

@@ -6,7 +6,7 @@ use super::models::{Model, Shape, Side};
 use super::parameters::Name;
 use super::starts::mixture_start;
 use super::target::{ModelProblem, row_major};
-use crate::coherency::{Coherency, eigenvalue_errors, eigenvalue_gradient, realizable_spectrum};
+use crate::coherency::{Coherency, eigenvalue_errors, eigenvalue_gradient};
 use crate::error::Result;
 use crate::stats::NormalDraws;
 use crate::tolerance;
@@ -148,21 +148,21 @@ pub(super) fn p_value(
 /// the largest eigenvalues stay, clipped at zero, or projected on an exact sum.
 fn distance(elements: &[f64; 16], rank: usize, exact: Option<f64>) -> Result<f64> {
     let values = Coherency::from_elements(elements).eigen()?.values;
-    let mut kept = values;
-    for value in kept.iter_mut().skip(rank) {
-        *value = f64::NEG_INFINITY;
-    }
-    // What is minus infinity gets nothing of the sum.
-    let kept = match exact {
-        Some(sum) => head_spectrum(&values, rank, sum),
-        None => realizable_spectrum(&kept, None),
-    };
+    let kept = kept_spectrum(&values, rank, exact);
     Ok(4.0
         * values
             .iter()
             .zip(kept)
             .map(|(a, b)| (a - b).powi(2))
             .sum::<f64>())
+}
+
+/// The nearest spectrum with only so many values that are not zero.
+pub(super) fn kept_spectrum(values: &[f64; 4], rank: usize, exact: Option<f64>) -> [f64; 4] {
+    match exact {
+        Some(sum) => head_spectrum(values, rank, sum),
+        None => std::array::from_fn(|k| if k < rank { values[k].max(0.0) } else { 0.0 }),
+    }
 }
 
 /// The nearest spectrum of this sum with only so many values that are not zero.

@@ -113,6 +113,39 @@ impl Model {
         }
     }
 
+    /// Whether its diattenuation may not pass one.
+    pub(super) fn has_bound(self) -> bool {
+        matches!(
+            self,
+            Self::LinearDiattenuator | Self::EllipticalDiattenuator
+        )
+    }
+
+    /// Models that it contains, whose minimum it may not miss.
+    pub(super) fn specials(self) -> &'static [Self] {
+        match self {
+            Self::AlignedDiattenuatingRetarder => &[Self::LinearRetarder, Self::LinearDiattenuator],
+            Self::EllipticalRetarder => &[Self::LinearRetarder],
+            Self::EllipticalDiattenuator => &[Self::LinearDiattenuator],
+            _ => &[],
+        }
+    }
+
+    /// The fitted parameters of one of them as its own.
+    pub(super) fn embedding(self, special: Self, x: &[f64]) -> Option<Vec<f64>> {
+        let &[t, size, azimuth, alpha] = x else {
+            return None;
+        };
+        let (sine, cosine) = (2.0 * azimuth).sin_cos();
+        match (self, special) {
+            (Self::AlignedDiattenuatingRetarder, Self::LinearRetarder) => {
+                Some(vec![t, 0.0, size, azimuth, alpha])
+            }
+            (Self::AlignedDiattenuatingRetarder, _) => Some(vec![t, size, 0.0, azimuth, alpha]),
+            _ => Some(vec![t, size * cosine, size * sine, 0.0, alpha]),
+        }
+    }
+
     /// How many parameters stand at the end for the depolarization.
     pub(super) fn depolarizations(self) -> usize {
         match self {

@@ -137,7 +137,7 @@ impl Fitter<'_> {
                 let Some(minimum) = minimise(&problem, &start) else {
                     break;
                 };
-                start.clone_from(&minimum.parameters);
+                start = problem.model.to_scale(&minimum.parameters);
                 // The row that holds the parameter is not a misfit.
                 let sum = self.misfit(&self.target, shape, &start);
                 points.push((value, ((sum - least) / scale).max(0.0)));

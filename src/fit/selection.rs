@@ -11,6 +11,13 @@ const LEAST_P: f64 = 1e-6;
 /// The share of the squared residuals that names their place.
 const MOST_OF_IT: f64 = 0.6;
 
+/// The α beyond which no parallel mixture is realizable: 4/3.
+const MOST_ALPHA: f64 = 4.0 / 3.0;
+
+const NEGATIVE: &str = "α lies below 0 by more than its error, which no sample has: the gain of the first element is low, or too much background was subtracted.";
+
+const MIRRORED: &str = "α lies beyond 4/3, which no sample has: the polarization that is left is turned over, so one side is counted the other way round.";
+
 /// What decided.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Rule {
@@ -103,6 +110,12 @@ fn sentence(fits: &[Fit], index: usize, rule: Rule) -> Result<String> {
             place_of(&simpler.residuals)
         ));
     }
+    // A recommendation of what can't be says so.
+    for remark in remarks(fit) {
+        if [NEGATIVE, MIRRORED].contains(&remark) {
+            words.push_str(&format!(" But {remark}"));
+        }
+    }
     Ok(words)
 }
 
@@ -117,13 +130,13 @@ pub fn remarks(fit: &Fit) -> Vec<&'static str> {
     if let Some(alpha) = alpha {
         let reach = alpha.se.map_or(0.0, |se| normal_95() * se);
         if alpha.value < -reach && alpha.value < 0.0 {
-            remarks.push("α lies below 0 by more than its error, which no sample has: the gain of the first element is low, or too much background was subtracted.");
+            remarks.push(NEGATIVE);
         } else if alpha.value < 0.0 {
             remarks.push("α lies below 0, within its error: no depolarization is seen.");
+        } else if alpha.value - reach > MOST_ALPHA && fit.side == Some(Side::Parallel) {
+            remarks.push(MIRRORED);
         } else if alpha.value - reach > 1.0 {
             remarks.push("α lies above 1: nearly all polarization is lost and what is left is turned over, as it is where one side is counted the other way round.");
-        } else if (alpha.value - 2.0 / 3.0).abs() < 0.1 && fit.p_value.is_some_and(|p| p < 1e-3) {
-            remarks.push("α near 2/3 with so large a misfit is how one side that is counted the other way round looks.");
         }
         if fit.side == Some(Side::Parallel) {
             remarks.push(

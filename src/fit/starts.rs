@@ -117,8 +117,8 @@ impl Guide {
             Model::EllipticalDiattenuator => {
                 let w = d.try_normalize(1e-12).unwrap_or_else(Vector3::x) * lean;
                 let mut starts = vec![vec![t, w[0], w[1], w[2], alpha]];
-                starts.extend((0..3).map(|k| {
-                    let unit = Vector3::ith(k, 0.4);
+                starts.extend((0..6).map(|k| {
+                    let unit = Vector3::ith(k % 3, if k < 3 { 0.4 } else { -0.4 });
                     vec![t, unit[0], unit[1], unit[2], alpha]
                 }));
                 (starts, simple)
@@ -126,6 +126,9 @@ impl Guide {
             Model::Pure => {
                 let (x, pivots) = triangular(&[column(&self.eigen, 0, self.eigen.values[0])]);
                 (vec![x], pivots)
+            }
+            Model::PureIsotropic if side != Side::Parallel => {
+                self.with_depolarizer(model, side, seed)
             }
             Model::PureIsotropic => {
                 let (mut x, pivots) = triangular(&[self.pure]);
@@ -175,6 +178,7 @@ impl Guide {
         let with = |own: &[f64], d: [f64; 3]| {
             let mut x = own.to_vec();
             match model {
+                Model::PureIsotropic => x.push(1.0 - (d[0] + d[1] + d[2]) / 3.0),
                 Model::PureLinearCircular => x.extend([0.5 * (d[0] + d[1]), d[2]]),
                 _ => x.extend(d),
             }

@@ -1,7 +1,7 @@
 use nalgebra::{DMatrix, DVector, Matrix4, SMatrix, SVector};
 
 use super::least_squares::Problem;
-use super::models::Shape;
+use super::models::{Evaluated, Shape};
 use crate::noise::Measurement;
 
 type Matrix16 = SMatrix<f64, 16, 16>;
@@ -122,6 +122,42 @@ pub(super) struct ModelProblem<'a> {
 }
 
 impl ModelProblem<'_> {
+    /// Residuals and derivatives with the weight of an exact M00 among the others.
+    pub fn weighted(&self, x: &[f64]) -> (DVector<f64>, DMatrix<f64>) {
+        let evaluated = self.evaluated(x);
+        self.target
+            .residuals(&evaluated.matrix, &evaluated.derivatives)
+    }
+
+    fn evaluated(&self, x: &[f64]) -> Evaluated {
+        let mut evaluated = self.shape.evaluate(&self.whole(x));
+        if let Some((place, _)) = self.fixed {
+            evaluated.derivatives.remove(place);
+        }
+        evaluated
+    }
+
+    /// The parameters with which M00 is what it must be where it is exact: the search leaves
+    /// their scale alone.
+    pub fn to_scale(&self, x: &[f64]) -> Vec<f64> {
+        let mut x = x.to_vec();
+        let m00 = self.evaluated(&x).matrix[(0, 0)];
+        let ratio = self.target.elements[0] / m00;
+        if !self.target.m00_is_exact || !ratio.is_finite() || ratio <= 0.0 {
+            return x;
+        }
+        match self.shape.model.rank() {
+            Some(_) => {
+                let own = x.len() - self.shape.model.depolarizations();
+                for value in &mut x[..own] {
+                    *value *= ratio.sqrt();
+                }
+            }
+            None => x[0] *= ratio,
+        }
+        x
+    }
+
     /// All parameters from those that move.
     pub fn whole(&self, x: &[f64]) -> Vec<f64> {
         let mut whole = x.to_vec();
@@ -134,13 +170,24 @@ impl ModelProblem<'_> {
 
 impl Problem for ModelProblem<'_> {
     fn evaluate(&self, x: &[f64]) -> Option<(DVector<f64>, DMatrix<f64>)> {
-        let mut evaluated = self.shape.evaluate(&self.whole(x));
-        if let Some((place, _)) = self.fixed {
-            evaluated.derivatives.remove(place);
+        if !self.target.m00_is_exact {
+            return Some(self.weighted(x));
         }
-        Some(
-            self.target
-                .residuals(&evaluated.matrix, &evaluated.derivatives),
-        )
+        // An exact M00 is met by scaling; its weight would make a narrow, bent valley of the
+        // sum of squares.
+        let Evaluated {
+            matrix,
+            derivatives,
+        } = self.evaluated(x);
+        let m00 = matrix[(0, 0)];
+        let ratio = self.target.elements[0] / m00;
+        if !ratio.is_finite() || ratio <= 0.0 {
+            return None;
+        }
+        let derivatives: Vec<_> = derivatives
+            .into_iter()
+            .map(|derivative| (derivative - matrix * (derivative[(0, 0)] / m00)) * ratio)
+            .collect();
+        Some(self.target.residuals(&(matrix * ratio), &derivatives))
     }
 }

@@ -1,6 +1,8 @@
 //! What several test files share.
 #![allow(dead_code)] // each file uses its own part
 
+pub mod candidates;
+
 use halfshade::examine::{Examination, examine};
 use halfshade::mueller::{Jones, Mueller, elements};
 use halfshade::noise::{Measurement, Noise};

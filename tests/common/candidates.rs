@@ -1,0 +1,209 @@
+//! Random samples of the candidate models, made from the definitions of the elements.
+
+use halfshade::fit::{Fit, Model, Name, Parameter, Side};
+use halfshade::mueller::{Jones, Mueller, elements};
+use halfshade::noise::{Measurement, Noise};
+use halfshade::stats::NormalDraws;
+use num_complex::Complex64;
+
+/// Each model on each side that makes a difference.
+pub fn models_and_sides() -> Vec<(Model, Side)> {
+    let mut all = Vec::new();
+    for model in Model::ALL {
+        let sides: &[Side] = match model.side(Side::Parallel) {
+            None => &[Side::Parallel],
+            Some(Side::Parallel) => &[Side::Parallel, Side::After, Side::Before],
+            Some(_) => &[Side::After, Side::Before],
+        };
+        all.extend(sides.iter().map(|&side| (model, side)));
+    }
+    all
+}
+
+/// A random sample of a model, with its named parameters.
+pub fn truth(model: Model, side: Side, draws: &mut NormalDraws) -> (Mueller, Vec<(Name, f64)>) {
+    let mut uniform = |low: f64, high: f64| {
+        // The normal distribution's own tails, folded.
+        let u = 0.5 * (1.0 + (draws.draw() * 0.8).tanh());
+        low + (high - low) * u
+    };
+    let t = uniform(0.4, 0.9);
+    let (d, delta, theta) = (uniform(0.2, 0.8), uniform(0.4, 2.6), uniform(0.1, 3.0));
+    let alpha = uniform(0.05, 0.5);
+    let scaled = |m: Mueller, t: f64| scale(&m, t);
+    let diattenuator =
+        |d: f64| elements::linear_diattenuator((1.0 + d) / 1.0, 1.0 - d, theta).unwrap();
+    match model {
+        Model::LinearRetarder => {
+            let m = scaled(elements::linear_retarder(delta, theta).unwrap(), t);
+            (
+                depolarized(&m, alpha, side),
+                vec![
+                    (Name::Transmittance, t),
+                    (Name::Retardance, delta),
+                    (Name::Axis, theta),
+                    (Name::Alpha, alpha),
+                ],
+            )
+        }
+        Model::LinearDiattenuator => (
+            depolarized(&scaled(diattenuator(d), t), alpha, side),
+            vec![
+                (Name::Transmittance, t),
+                (Name::Diattenuation, d),
+                (Name::Axis, theta),
+                (Name::Alpha, alpha),
+            ],
+        ),
+        Model::AlignedDiattenuatingRetarder => {
+            let m = diattenuator(d) * elements::linear_retarder(delta, theta).unwrap();
+            (
+                depolarized(&scaled(m, t), alpha, side),
+                vec![
+                    (Name::Transmittance, t),
+                    (Name::Diattenuation, d),
+                    (Name::Retardance, delta),
+                    (Name::Axis, theta),
+                    (Name::Alpha, alpha),
+                ],
+            )
+        }
+        Model::EllipticalRetarder => {
+            let axis = [uniform(-1.0, 1.0), uniform(-1.0, 1.0), uniform(-1.0, 1.0)];
+            let length = axis.iter().map(|a| a * a).sum::<f64>().sqrt();
+            let axis = axis.map(|a| a / length);
+            let m = Jones::retarder(delta, axis).mueller();
+            let mut names = vec![(Name::Transmittance, t)];
+            names.extend((0..3).map(|k| (Name::RetarderVector(k), delta * axis[k])));
+            names.push((Name::Alpha, alpha));
+            (depolarized(&scaled(m, t), alpha, side), names)
+        }
+        Model::EllipticalDiattenuator => {
+            let axis = [uniform(-1.0, 1.0), uniform(-1.0, 1.0), uniform(-1.0, 1.0)];
+            let length = axis.iter().map(|a| a * a).sum::<f64>().sqrt();
+            let vector = axis.map(|a| d * a / length);
+            // exp(κ a·σ): a diattenuator with tanh 2κ = D.
+            let m = elliptical_diattenuator(vector);
+            let mut names = vec![(Name::Transmittance, t)];
+            names.extend((0..3).map(|k| (Name::DiattenuationVector(k), vector[k])));
+            names.push((Name::Alpha, alpha));
+            (depolarized(&scaled(m, t), alpha, side), names)
+        }
+        _ => {
+            let mut pure = || {
+                let mut entry = || Complex64::new(uniform(-1.0, 1.0), uniform(-1.0, 1.0)) * 0.7;
+                Jones::from_rows([[entry(), entry()], [entry(), entry()]])
+                    .unwrap()
+                    .mueller()
+            };
+            let first = pure();
+            let m = first.row_major();
+            let diattenuation = (m[1] * m[1] + m[2] * m[2] + m[3] * m[3]).sqrt() / m[0];
+            let of_jones = vec![
+                (Name::Transmittance, m[0]),
+                (Name::Diattenuation, diattenuation),
+            ];
+            let with = |more: Vec<(Name, f64)>| [of_jones.clone(), more].concat();
+            match model {
+                Model::Pure => (first, of_jones),
+                Model::PureIsotropic => (
+                    depolarized(&first, alpha, side),
+                    with(vec![(Name::Alpha, alpha)]),
+                ),
+                Model::PureLinearCircular | Model::PureDiagonal => {
+                    let d = if model == Model::PureDiagonal {
+                        [1.0 - alpha, 0.9 - alpha, 0.3 + 0.5 * alpha]
+                    } else {
+                        [1.0 - alpha, 1.0 - alpha, 0.5 - 0.5 * alpha]
+                    };
+                    let depolarizer = elements::diagonal_depolarizer(d[0], d[1], d[2]).unwrap();
+                    let m = if side == Side::Before {
+                        first * depolarizer
+                    } else {
+                        depolarizer * first
+                    };
+                    let names = if model == Model::PureDiagonal {
+                        (0..3).map(|k| (Name::Depolarization(k), d[k])).collect()
+                    } else {
+                        vec![
+                            (Name::DepolarizationLinear, d[0]),
+                            (Name::DepolarizationCircular, d[2]),
+                        ]
+                    };
+                    (m, with(names))
+                }
+                _ => {
+                    let rank = model.rank().unwrap();
+                    let mut sum = first.row_major();
+                    for _ in 1..rank {
+                        for (a, b) in sum.iter_mut().zip(pure().row_major()) {
+                            *a += 0.4 * b;
+                        }
+                    }
+                    (Mueller::from_row_major(&sum).unwrap(), Vec::new())
+                }
+            }
+        }
+    }
+}
+
+pub fn scale(m: &Mueller, t: f64) -> Mueller {
+    Mueller::from_row_major(&m.row_major().map(|v| v * t / m.m00())).unwrap()
+}
+
+fn elliptical_diattenuator(d: [f64; 3]) -> Mueller {
+    let length = (d[0] * d[0] + d[1] * d[1] + d[2] * d[2]).sqrt();
+    let kappa = 0.5 * length.atanh();
+    let (s, c) = (kappa.sinh(), kappa.cosh());
+    let a = d.map(|v| v / length * s);
+    let i = Complex64::i();
+    Jones::from_rows([
+        [Complex64::from(c + a[0]), a[1] - i * a[2]],
+        [a[1] + i * a[2], Complex64::from(c - a[0])],
+    ])
+    .unwrap()
+    .mueller()
+}
+
+pub fn depolarized(m: &Mueller, alpha: f64, side: Side) -> Mueller {
+    let depolarizer = elements::isotropic_depolarizer(alpha).unwrap();
+    match side {
+        Side::After => depolarizer * *m,
+        Side::Before => *m * depolarizer,
+        Side::Parallel => {
+            let mut elements = m.row_major().map(|v| v * (1.0 - alpha));
+            elements[0] = m.m00();
+            Mueller::from_row_major(&elements).unwrap()
+        }
+    }
+}
+
+pub fn noisy(m: &Mueller, sigma: f64, draws: &mut NormalDraws) -> Measurement {
+    let errors = draws.draw_matrix();
+    let elements = m.row_major();
+    let moved = std::array::from_fn(|k| elements[k] + sigma * errors[k]);
+    Measurement::new(
+        Mueller::from_row_major(&moved).unwrap(),
+        false,
+        false,
+        Noise::Uniform { sigma },
+    )
+    .unwrap()
+}
+
+pub fn find(fit: &Fit, name: Name) -> Parameter {
+    *fit.parameters
+        .iter()
+        .chain(&fit.derived)
+        .find(|parameter| parameter.name == name)
+        .unwrap_or_else(|| panic!("{name:?} of {:?}", fit.model))
+}
+
+/// The difference in its own period; for a fast axis near half a wave the two orders are one.
+pub fn difference(name: Name, found: f64, expected: f64) -> f64 {
+    let difference = found - expected;
+    match name.period() {
+        Some(period) => difference - period * (difference / period).round(),
+        None => difference,
+    }
+}
