@@ -20,6 +20,9 @@ pub(super) const ROUNDING: f64 = 1e-9;
 /// Gauss-Newton steps after the search.
 const MOST_STEPS: usize = 8;
 
+/// Searches that follow one that ended on its way.
+const RENEWALS: usize = 4;
+
 /// Evaluations for each parameter.
 const PATIENCE: usize = 60;
 
@@ -235,6 +238,20 @@ pub fn minimise_from(problem: &impl Problem, starts: &[Vec<f64>]) -> Option<Mini
         if found.sum_of_squares < limit {
             best = Some(found);
         }
+    }
+    // The best way may be a slow one, along a valley.
+    for _ in 0..RENEWALS {
+        let Some(slow) = best.as_ref().filter(|best| best.stop != Stop::Minimum) else {
+            break;
+        };
+        let Some(found) = minimise(problem, &slow.parameters) else {
+            break;
+        };
+        evaluations += found.evaluations;
+        if found.sum_of_squares > slow.sum_of_squares {
+            break;
+        }
+        best = Some(found);
     }
     best.map(|best| Minimum {
         evaluations,
