@@ -235,3 +235,60 @@ fn small_noise_gives_the_truth_back() {
 fn small_noise_gives_the_truth_back_in_full() {
     recover(200);
 }
+
+/// The largest distance of an empirical distribution from the uniform one, times √n: beyond
+/// 1.95 once in a thousand (Kolmogorov 1933, *from memory*).
+fn kolmogorov(mut values: Vec<f64>) -> f64 {
+    values.sort_by(f64::total_cmp);
+    let n = values.len() as f64;
+    let off = |(k, &v): (usize, &f64)| ((k as f64 + 1.0) / n - v).max(v - k as f64 / n);
+    values.iter().enumerate().map(off).fold(0.0, f64::max) * n.sqrt()
+}
+
+/// *Derived*: normalised errors have the standard deviation one, and p is uniform.
+fn errors_at_usual_noise(count: usize, slack: f64) {
+    for model in &Model::ALL[..9] {
+        let side = model.side(Side::Parallel).unwrap_or_default();
+        let mut draws = NormalDraws::new(21);
+        let (mut squares, mut errors, mut p) = (0.0, 0.0, Vec::new());
+        for _ in 0..count {
+            let (exact, names) = truth(*model, side, &mut draws);
+            // Relative to the transmittance, as a bench has it.
+            let measurement = noisy(&exact, 0.005 * exact.m00(), &mut draws);
+            let fit = Fitter::new(&measurement, 1)
+                .unwrap()
+                .fit(*model, side)
+                .unwrap();
+            for (name, expected) in names {
+                let parameter = find(&fit, name);
+                // A random Jones matrix may be nearly a polarizer, which no depolarizer shows.
+                let Some(se) = parameter.se.filter(|se| *se < 0.05) else {
+                    continue;
+                };
+                errors += 1.0;
+                squares += (difference(name, parameter.value, expected) / se).powi(2);
+            }
+            p.push(fit.p_value.unwrap());
+        }
+        let deviation = if errors > 0.0 {
+            f64::sqrt(squares / errors)
+        } else {
+            1.0
+        };
+        let distance = kolmogorov(p);
+        println!("{model:?}: {deviation:.3}, p {distance:.2}");
+        assert!((deviation - 1.0).abs() < slack, "{model:?}: {deviation}");
+        assert!(distance < 1.95, "{model:?}: {distance}");
+    }
+}
+
+#[test]
+fn errors_are_normal_and_p_is_uniform() {
+    errors_at_usual_noise(150, 0.2);
+}
+
+#[test]
+#[ignore = "a minute, with --release"]
+fn errors_are_normal_and_p_is_uniform_in_full() {
+    errors_at_usual_noise(1000, 0.1);
+}
