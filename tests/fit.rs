@@ -292,3 +292,108 @@ fn errors_are_normal_and_p_is_uniform() {
 fn errors_are_normal_and_p_is_uniform_in_full() {
     errors_at_usual_noise(1000, 0.1);
 }
+
+/// Derived: 60 fits from the definitions by another method, `reference/fitting.py` (SciPy).
+#[test]
+fn the_reference_fits_agree() {
+    let text = std::fs::read_to_string("tests/reference/fitting.json").unwrap();
+    let all: serde_json::Value = serde_json::from_str(&text).unwrap();
+    let numbers = |value: &serde_json::Value| -> Vec<f64> {
+        value
+            .as_array()
+            .unwrap()
+            .iter()
+            .map(|v| v.as_f64().unwrap())
+            .collect()
+    };
+    let cases = all["cases"].as_array().unwrap();
+    assert_eq!(cases.len(), 60);
+    for (place, case) in cases.iter().enumerate() {
+        let model = Model::ALL
+            .into_iter()
+            .find(|model| {
+                let name = format!("{model:?}");
+                case["model"].as_str().unwrap() == name[..1].to_lowercase() + &name[1..]
+            })
+            .unwrap();
+        let side = match case["side"].as_str() {
+            Some("after") => Side::After,
+            Some("before") => Side::Before,
+            _ => Side::Parallel,
+        };
+        let noise = &case["noise"];
+        let noise = match noise["kind"].as_str().unwrap() {
+            "uniform" => Noise::Uniform {
+                sigma: noise["sigma"].as_f64().unwrap(),
+            },
+            "perElement" => Noise::PerElement {
+                sigma: numbers(&noise["sigma"]).try_into().unwrap(),
+            },
+            _ => Noise::Covariance {
+                covariance: Box::new(numbers(&noise["covariance"]).try_into().unwrap()),
+            },
+        };
+        let mueller: [f64; 16] = numbers(&case["mueller"]).try_into().unwrap();
+        let exact = case["normalised"].as_bool().unwrap();
+        let mueller = Mueller::from_row_major(&mueller).unwrap();
+        let measurement = Measurement::new(mueller, exact, false, noise).unwrap();
+        let fit = Fitter::new(&measurement, 1)
+            .unwrap()
+            .fit(model, side)
+            .unwrap();
+        let expected = case["chiSquare"].as_f64().unwrap();
+        let found = fit.chi_square.unwrap();
+        assert!(
+            (found / expected - 1.0).abs() < 1e-8,
+            "{place} {model:?}: {found}, {expected}"
+        );
+        assert_eq!(
+            u64::from(fit.degrees_of_freedom),
+            case["degreesOfFreedom"].as_u64().unwrap()
+        );
+        let errors = numbers(&case["fittedErrors"]);
+        for ((found, expected), error) in fit
+            .mueller
+            .row_major()
+            .iter()
+            .zip(numbers(&case["fitted"]))
+            .zip(errors)
+        {
+            assert!(
+                (found - expected).abs() < 1e-3 * error + 1e-9,
+                "{place} {model:?}"
+            );
+        }
+        for (key, expected) in case["parameters"].as_object().unwrap() {
+            let name = match key.as_str() {
+                "transmittance" | "m00" => Name::Transmittance,
+                "diattenuation" => Name::Diattenuation,
+                "retardance" => Name::Retardance,
+                "axis" => Name::Axis,
+                "alpha" => Name::Alpha,
+                "depolarizationLinear" => Name::DepolarizationLinear,
+                "depolarizationCircular" => Name::DepolarizationCircular,
+                other => {
+                    let k = other[other.len() - 1..].parse().unwrap();
+                    match &other[..other.len() - 1] {
+                        "retarderVector" => Name::RetarderVector(k),
+                        "diattenuationVector" => Name::DiattenuationVector(k),
+                        _ => Name::Depolarization(k),
+                    }
+                }
+            };
+            let parameter = find(&fit, name);
+            let (value, se) = (parameter.value, parameter.se.unwrap());
+            let error = case["standardErrors"][key].as_f64().unwrap();
+            let off = difference(name, value, expected.as_f64().unwrap());
+            assert!(
+                off.abs() < 1e-3 * error,
+                "{place} {model:?} {key}: {off}, {error}"
+            );
+            assert!(
+                (se / error - 1.0).abs() < 0.01,
+                "{place} {model:?} {key}: {se}, {error}"
+            );
+        }
+    }
+}

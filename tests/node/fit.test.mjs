@@ -18,8 +18,8 @@ before(async () => {
   python = await needPython("tests/reference/requirements.txt");
 });
 
-// An invented kelp film with light beside it, σ = 0.004.
-const FILM = [0.952, 0.0186, 0.0287, 0.0078, 0.023, 0.5413, 0.1942, -0.5086, 0.0257, 0.211, 0.5953, 0.4558, 0.0043, 0.5119, -0.4408, 0.3629];
+// An invented kelp film with α = 0.132, σ = 0.004.
+const FILM = [0.9468, -0.0564, 0.0692, 0.0017, -0.0107, 0.6453, 0.2882, -0.4184, 0.0482, 0.0963, 0.5972, 0.5529, -0.0764, 0.5075, -0.4868, 0.4276];
 /** @type {import("../../dist/halfshade.js").Noise} */
 const NOISE = { kind: "uniform", sigma: 0.004 };
 const MODELS = /** @type {const} */ (["linearRetarder", "linearDiattenuator", "alignedDiattenuatingRetarder", "ellipticalRetarder", "ellipticalDiattenuator", "pure", "pureIsotropic", "pureLinearCircular", "pureDiagonal", "rankTwo", "rankThree", "rankFour"]);
@@ -27,6 +27,7 @@ const MODELS = /** @type {const} */ (["linearRetarder", "linearDiattenuator", "a
 test("a text for Python gives the fitted matrix, in every model and convention", () => {
   const conventions = /** @type {const} */ ([{}, { angles: "clockwise", positiveS3: "counterclockwise", zeroAngle: "y", time: "minus" }]);
   const parts = [];
+  /** @type {number[][]} */
   const expected = [];
   for (const convention of conventions) {
     for (const side of /** @type {const} */ (["parallel", "after", "before"])) {
