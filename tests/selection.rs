@@ -366,7 +366,14 @@ fn hard_cases_are_reported() {
 /// the ends of the profile are 1.96 standard errors away; slices of samples join.
 #[test]
 fn profiles_and_samples() {
-    let measurement = measured(&film(0.2), 0.002, false, &mut NormalDraws::new(2));
+    for exact in [false, true] {
+        profile_and_samples(exact);
+    }
+}
+
+fn profile_and_samples(exact: bool) {
+    let truth = film(0.2).normalised().unwrap();
+    let measurement = measured(&truth, 0.002, exact, &mut NormalDraws::new(2));
     let fitter = Fitter::new(&measurement, 5).unwrap();
     let fit = fitter.fit(Model::PureIsotropic, Side::Parallel).unwrap();
     for name in [Name::Alpha, Name::Retardance, Name::Diattenuation] {

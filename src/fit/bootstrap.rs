@@ -72,14 +72,19 @@ impl Fitter<'_> {
                 errors
             };
             let target = self.target.around(mean + SVector::from(errors) / unit);
-            let problem = ModelProblem {
-                target: &target,
-                shape,
-                fixed: None,
-            };
-            let minimum = minimise(&problem, &fit.solved.x).ok_or_else(no_fit)?;
-            let report = reported(&shape, &minimum.parameters, unit);
-            let follows = derived::quantities(&shape, &minimum.parameters[..own], unit)?;
+            let mut x = fit.solved.x.clone();
+            let mut sum = 0.0;
+            for target in &target.stages() {
+                let problem = ModelProblem {
+                    target,
+                    shape,
+                    fixed: None,
+                };
+                let minimum = minimise(&problem, &x).ok_or_else(no_fit)?;
+                (x, sum) = (minimum.parameters, minimum.sum_of_squares);
+            }
+            let report = reported(&shape, &x, unit);
+            let follows = derived::quantities(&shape, &x[..own], unit)?;
             for (place, &(name, centre)) in centres.iter().enumerate() {
                 let value = if place < shift {
                     report.values.get(place).copied()
@@ -94,7 +99,7 @@ impl Fitter<'_> {
                     None => value,
                 }));
             }
-            samples.chi_square.push(minimum.sum_of_squares / scale);
+            samples.chi_square.push(sum / scale);
         }
         Ok(samples)
     }

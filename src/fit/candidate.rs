@@ -3,7 +3,7 @@ use num_complex::Complex64;
 
 use super::derived;
 use super::least_squares::{
-    Determination, Minimum, Problem, Stop, determination, largest_cosine, minimise_from,
+    Determination, Minimum, Problem, Stop, determination, largest_cosine, minimise, minimise_from,
 };
 use super::mixtures;
 use super::models::{Model, Shape, Side, columns_of, triangular};
@@ -210,13 +210,29 @@ impl<'a> Fitter<'a> {
             pivots,
             is_polarizer: false,
         };
+        let stages = target.stages();
         let find = |shape, fixed, starts: &[Vec<f64>]| {
-            let problem = ModelProblem {
-                target,
-                shape,
-                fixed,
-            };
-            minimise_from(&problem, starts).ok_or_else(no_fit)
+            let mut found: Option<Minimum> = None;
+            let mut evaluations = 0;
+            for target in &stages {
+                let problem = ModelProblem {
+                    target,
+                    shape,
+                    fixed,
+                };
+                let minimum = match &found {
+                    None => minimise_from(&problem, starts),
+                    Some(before) => minimise(&problem, &before.parameters),
+                }
+                .ok_or_else(no_fit)?;
+                evaluations += minimum.evaluations;
+                found = Some(minimum);
+            }
+            let found = found.ok_or_else(no_fit)?;
+            Ok::<_, Error>(Minimum {
+                evaluations,
+                ..found
+            })
         };
         let found = find(shape, None, &starts)?;
         // The cosine of a diattenuation's parameter is the root of what the dark axis lets
