@@ -3,7 +3,9 @@
 use std::hint::black_box;
 
 use criterion::{Criterion, criterion_group, criterion_main};
+use halfshade::error::Result;
 use halfshade::examine::{Simulation, examine, examine_with};
+use halfshade::fit::{Fitter, Model, Side};
 use halfshade::mueller::Mueller;
 use halfshade::noise::{Measurement, Noise};
 
@@ -46,5 +48,20 @@ fn examining(criterion: &mut Criterion) {
     );
 }
 
-criterion_group!(benches, examining);
+fn fitting(criterion: &mut Criterion) {
+    let Some(noisy) = film(Noise::Uniform { sigma: 0.004 }) else {
+        return;
+    };
+    criterion.bench_function("fit, all twelve models", |bench| {
+        bench.iter(|| {
+            let fitter = Fitter::new(black_box(&noisy), 1)?;
+            Model::ALL
+                .into_iter()
+                .map(|model| fitter.fit(model, Side::Parallel))
+                .collect::<Result<Vec<_>>>()
+        });
+    });
+}
+
+criterion_group!(benches, examining, fitting);
 criterion_main!(benches);
