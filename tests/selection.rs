@@ -2,9 +2,9 @@
 //! and of sample deviations: *derived*.
 
 use halfshade::coherency::Coherency;
-use halfshade::decompose::isotropic;
+use halfshade::decompose::{isotropic, polar_forward};
 use halfshade::fit::{Fit, Fitter, Model, Name, Rule, Side, recommend};
-use halfshade::mueller::{Mueller, elements};
+use halfshade::mueller::{Jones, Mueller, elements};
 use halfshade::noise::{Measurement, Noise};
 use halfshade::stats::NormalDraws;
 
@@ -300,6 +300,96 @@ fn what_ignoring_a_depolarizer_does() {
             close(find(&found, Name::Diattenuation).0, 0.3, 1e-6);
             close(find(&found, Name::Alpha).0, 1.0 - x, 1e-6);
         }
+    }
+}
+
+/// The same note's rows of the raw trace and of one element, which are formulas of their own,
+/// and of the polar decomposition, whose order must be that of the depolarizer.
+#[test]
+fn what_other_estimators_make_of_it() {
+    let close = |found: f64, expected: f64, tolerance: f64| {
+        assert!(
+            (found - expected).abs() < tolerance,
+            "{found}, not {expected}"
+        );
+    };
+    // cos δ = (tr − 1)/2 of the 3×3 part, and cos δ = M33.
+    for (degrees, traces, elements) in [
+        (10.0_f64, [24.4, 33.3, 46.5], [20.7, 27.6, 38.0]),
+        (30.0, [37.1, 43.2, 53.6], [34.6, 38.8, 46.2]),
+        (90.0, [91.4, 92.9, 95.7], [90.0, 90.0, 90.0]),
+    ] {
+        for (x, (trace, element)) in [0.95, 0.9, 0.8]
+            .into_iter()
+            .zip(traces.into_iter().zip(elements))
+        {
+            let m = elements::isotropic_depolarizer(1.0 - x).unwrap()
+                * elements::linear_retarder(degrees.to_radians(), 0.0).unwrap();
+            let m = m.row_major();
+            let sum = m[5] + m[10] + m[15];
+            close((0.5 * (sum - 1.0)).acos().to_degrees(), trace, 0.06);
+            close(m[15].acos().to_degrees(), element, 0.06);
+            // The closed form of the best Jones matrix has no such bias.
+            let m = Mueller::from_row_major(&m).unwrap();
+            let noise = Noise::Uniform { sigma: 1e-6 };
+            let found = fit(
+                &Measurement::new(m, false, false, noise).unwrap(),
+                Model::Pure,
+            );
+            close(find(&found, Name::Retardance).0.to_degrees(), degrees, 1e-3);
+        }
+    }
+    let pure = elements::linear_retarder(0.5, 0.3).unwrap()
+        * elements::linear_diattenuator(1.0, 0.7 / 1.3, 0.3).unwrap();
+    let depolarizer = elements::isotropic_depolarizer(0.2).unwrap();
+    let polar = |m: Mueller| {
+        let factors = polar_forward(&m.normalised().unwrap(), None).unwrap();
+        let d = factors.diattenuator.row_major();
+        (
+            d[1].hypot(d[2]).hypot(d[3]),
+            1.0 - factors.depolarization_power.unwrap(),
+            factors.parameters.unwrap().retardance,
+        )
+    };
+    let (d, retained, retardance) = polar(depolarizer * pure);
+    close(d, 0.3, 1e-9);
+    close(retained, 0.8, 1e-9);
+    close(retardance, 0.5, 1e-9);
+    let (d, retained, retardance) = polar(pure * depolarizer);
+    close(d, 0.24, 1e-9);
+    close(retained, 0.782, 6e-4);
+    close(retardance, 0.5, 1e-9);
+    // An anisotropic depolarizer diag(1, .9, .9, .7), turned by 25° about the third or the
+    // second axis, in series behind δ = 30°, D = 0.2. The note does not say at which azimuths:
+    // its values hold to what these change.
+    let pure = elements::linear_retarder(30f64.to_radians(), 0.0).unwrap()
+        * elements::linear_diattenuator(1.0, 0.8 / 1.2, 0.0).unwrap();
+    for (axis, d, retardance, x) in [(2, 0.209, 29.92, 0.837), (1, 0.207, 29.91, 0.836)] {
+        let turn = |angle: f64| {
+            let mut direction = [0.0; 3];
+            direction[axis] = 1.0;
+            Jones::retarder(angle, direction).mueller()
+        };
+        let angle = 25f64.to_radians();
+        let depolarizer =
+            turn(angle) * elements::diagonal_depolarizer(0.9, 0.9, 0.7).unwrap() * turn(-angle);
+        let noise = Noise::Uniform { sigma: 0.005 };
+        let measurement = Measurement::new(depolarizer * pure, false, false, noise).unwrap();
+        let found = Fitter::new(&measurement, 1)
+            .unwrap()
+            .fit(Model::PureIsotropic, Side::After)
+            .unwrap();
+        close(find(&found, Name::Diattenuation).0, d, 6e-3);
+        close(
+            find(&found, Name::Retardance).0.to_degrees(),
+            retardance,
+            0.1,
+        );
+        close(1.0 - find(&found, Name::Alpha).0, x, 5e-3);
+        let (d, retained, retardance) = polar(depolarizer * pure);
+        close(d, 0.2, 1e-9);
+        close(retained, 0.8333, 1e-4);
+        close(retardance.to_degrees(), 30.0, 1e-6);
     }
 }
 
