@@ -3,7 +3,9 @@
 use std::hint::black_box;
 
 use criterion::{Criterion, criterion_group, criterion_main};
+use halfshade::error::Result;
 use halfshade::examine::{Simulation, examine, examine_with};
+use halfshade::fit::{Fitter, Model, Side};
 use halfshade::mueller::Mueller;
 use halfshade::noise::{Measurement, Noise};
 
@@ -46,5 +48,43 @@ fn examining(criterion: &mut Criterion) {
     );
 }
 
-criterion_group!(benches, examining);
+/// Errors of neighbouring elements go together, as a drift of the lamp makes them.
+fn covariance() -> Box<[f64; 256]> {
+    Box::new(std::array::from_fn(|k| {
+        let (i, j) = (k / 16, k % 16);
+        let sigma = |k: usize| 0.003 + 0.0002 * k as f64;
+        let distance = i32::try_from(i.abs_diff(j)).unwrap_or(i32::MAX);
+        sigma(i) * sigma(j) * 0.3_f64.powi(distance)
+    }))
+}
+
+fn fitting(criterion: &mut Criterion) {
+    let noises = [
+        ("one σ", Noise::Uniform { sigma: 0.004 }),
+        (
+            "a covariance",
+            Noise::Covariance {
+                covariance: covariance(),
+            },
+        ),
+    ];
+    let mut group = criterion.benchmark_group("fit");
+    group.sample_size(10);
+    for (name, noise) in noises {
+        let Some(film) = film(noise) else {
+            continue;
+        };
+        group.bench_function(format!("all twelve models, {name}"), |bench| {
+            bench.iter(|| {
+                let fitter = Fitter::new(black_box(&film), 1)?;
+                Model::ALL
+                    .into_iter()
+                    .map(|model| fitter.fit(model, Side::Parallel))
+                    .collect::<Result<Vec<_>>>()
+            });
+        });
+    }
+}
+
+criterion_group!(benches, examining, fitting);
 criterion_main!(benches);

@@ -9,9 +9,10 @@ use std::f64::consts::{FRAC_PI_2, TAU};
 use halfshade::convention::{AngleSense, Convention, PositiveS3, ZeroAngle};
 use halfshade::error::Place;
 use halfshade::plot::{
-    EigenvaluePlot, EllipsePair, EllipsesPlot, SpherePlot, Surface, Theme, UNITS, View,
-    eigenvalues_description, eigenvalues_height, eigenvalues_svg, ellipses_description,
-    ellipses_height, ellipses_svg, sphere_description, sphere_height, sphere_marks, sphere_svg,
+    Curve, CurvesPlot, EigenvaluePlot, EllipsePair, EllipsesPlot, Named, SpherePlot, Surface,
+    Theme, UNITS, View, curves_description, curves_height, curves_svg, eigenvalues_description,
+    eigenvalues_height, eigenvalues_svg, ellipses_description, ellipses_height, ellipses_svg,
+    sphere_description, sphere_height, sphere_marks, sphere_svg,
 };
 use roxmltree::{Document, Node};
 
@@ -887,4 +888,103 @@ fn text_and_marks_stand_out() {
             assert!((1.5..3.0).contains(&graticule), "{graticule}");
         }
     }
+}
+
+fn curves(points: Vec<[f64; 2]>) -> CurvesPlot {
+    CurvesPlot {
+        along: "along".to_owned(),
+        upwards: "upwards".to_owned(),
+        curves: vec![Curve {
+            name: String::new(),
+            points,
+            is_dots: false,
+        }],
+        levels: vec![Named {
+            name: "level".to_owned(),
+            value: 3.84,
+        }],
+        places: Vec::new(),
+    }
+}
+
+/// *Derived*: two tick labels of each axis give its scale, and the scale gives every point of
+/// the curve its value back, to a pixel.
+#[test]
+fn curves_lie_where_the_tick_labels_say() {
+    for (shift, stretch) in [(0.0, 1.0), (250.0, 0.01), (-3.0, 40.0)] {
+        let expected: Vec<[f64; 2]> = (-8..=8)
+            .map(|k| {
+                let t = f64::from(k) / 4.0;
+                [shift + stretch * t, t * t]
+            })
+            .collect();
+        let plot = curves(expected.clone());
+        let size = surface(600.0, curves_height(600.0));
+        let svg = curves_svg(&plot, &size, &Theme::print(), "title", "words").unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let labels: Vec<(f64, f64, f64)> = nodes(&document, "text")
+            .filter_map(|node| {
+                let value = value_of(&content(&node))?;
+                Some((
+                    number(&node, "x") / UNITS,
+                    number(&node, "y") / UNITS,
+                    value,
+                ))
+            })
+            .collect();
+        // Those of the lower axis share a height, those of the other its right edge.
+        let lowest = labels.iter().map(|label| label.1).fold(0.0, f64::max);
+        let along: Vec<_> = labels
+            .iter()
+            .filter(|label| lowest - label.1 < 1.0)
+            .collect();
+        let upwards: Vec<_> = labels
+            .iter()
+            .filter(|label| lowest - label.1 > 1.0)
+            .collect();
+        let curve = nodes(&document, "polyline")
+            .map(|node| points(&node))
+            .find(|points| points.len() == expected.len())
+            .unwrap();
+        let scale = |at: [f64; 2], value: [f64; 2], place: f64| {
+            value[0] + (place - at[0]) / (at[1] - at[0]) * (value[1] - value[0])
+        };
+        let (left, right) = (along[0], along[along.len() - 1]);
+        let (low, high) = (upwards[0], upwards[upwards.len() - 1]);
+        for ([x, y], (px, py)) in expected.iter().zip(curve) {
+            // Labels are centred on their tick along, and beside it upwards, half a letter low.
+            let found = scale([left.0, right.0], [left.2, right.2], px);
+            assert!((found - x).abs() < 0.01 * 4.0 * stretch, "{found}, not {x}");
+            let found = scale([low.1, high.1], [low.2, high.2], py);
+            assert!((found - y).abs() < 0.12, "{found}, not {y}");
+        }
+        assert!(svg.contains(">\nlevel\n<"));
+    }
+}
+
+#[test]
+fn curves_refuse_what_cannot_be_drawn_and_say_what_they_show() {
+    let size = surface(400.0, 220.0);
+    let draw = |plot: &CurvesPlot| curves_svg(plot, &size, &Theme::light(), "t", "d");
+    let code = |plot: &CurvesPlot| draw(plot).unwrap_err().code;
+    assert_eq!(code(&curves(Vec::new())), "nothing-to-draw");
+    assert_eq!(code(&curves(vec![[f64::NAN, 0.0]])), "not-finite");
+    assert_eq!(code(&curves(vec![[0.0, f64::INFINITY]])), "not-finite");
+    let mut many = curves(vec![[0.0, 1.0]]);
+    many.curves = vec![many.curves[0].clone(); 9];
+    assert_eq!(code(&many), "too-many");
+    for points in [
+        vec![[0.0, 0.0]],
+        vec![[1e300, -1e300], [-1e300, 1e300]],
+        vec![[1e-300, 0.0], [2e-300, 1e-320]],
+        vec![[5.0, 1e18], [5.0, 1e18]],
+    ] {
+        check_document_of_any_size(&draw(&curves(points)).unwrap());
+    }
+    let words = curves_description(&curves(vec![[1.0, 4.0], [2.0, 0.5], [3.0, 6.0]])).unwrap();
+    assert!(
+        words.contains("least at 2.000 with 0.5000, and largest at 3.000 with 6.000"),
+        "{words}"
+    );
+    assert!(words.contains("level: 3.840"), "{words}");
 }

@@ -10,6 +10,7 @@ const REQUIREMENTS = "tests/reference/requirements.txt";
 const FIXTURES = "tests/reference/fixtures.py";
 const WEIGHTED = "tests/reference/weighted.py";
 const FITTING = "tests/reference/fitting.py";
+const HARMONIC = "tests/reference/harmonic.py";
 
 /** @type {[name: string, what: string, step: () => Promise<void>][]} */
 const STEPS = [
@@ -78,6 +79,7 @@ async function fixtures() {
   await python(FIXTURES, "--check");
   await python(WEIGHTED, "--check");
   await python(FITTING, "--check");
+  await python(HARMONIC, "--check");
 }
 
 async function types() {

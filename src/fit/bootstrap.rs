@@ -72,13 +72,20 @@ impl Fitter<'_> {
                 errors
             };
             let target = self.target.around(mean + SVector::from(errors) / unit);
-            let problem = ModelProblem {
-                target: &target,
-                shape,
-                fixed: None,
-            };
-            let minimum = minimise(&problem, &fit.solved.x).ok_or_else(no_fit)?;
-            let x = problem.to_scale(&minimum.parameters);
+            let mut x = fit.solved.x.clone();
+            let mut sum = 0.0;
+            for target in &target.stages() {
+                let problem = ModelProblem {
+                    target,
+                    shape,
+                    fixed: None,
+                };
+                let minimum = minimise(&problem, &x).ok_or_else(no_fit)?;
+                (x, sum) = (
+                    problem.to_scale(&minimum.parameters),
+                    minimum.sum_of_squares,
+                );
+            }
             let report = reported(&shape, &x, unit);
             let follows = derived::quantities(&shape, &x[..own], unit)?;
             for (place, &(name, centre)) in centres.iter().enumerate() {
@@ -95,7 +102,7 @@ impl Fitter<'_> {
                     None => value,
                 }));
             }
-            samples.chi_square.push(minimum.sum_of_squares / scale);
+            samples.chi_square.push(sum / scale);
         }
         Ok(samples)
     }

@@ -288,15 +288,30 @@ impl<'a> Fitter<'a> {
             pivots,
             is_polarizer: false,
         };
+        let stages = target.stages();
         let find = |shape, fixed, starts: &[Vec<f64>]| {
-            let problem = ModelProblem {
-                target,
-                shape,
-                fixed,
-            };
-            minimise_from(&problem, starts)
+            let mut found: Option<Minimum> = None;
+            let mut evaluations = 0;
+            for target in &stages {
+                let problem = ModelProblem {
+                    target,
+                    shape,
+                    fixed,
+                };
+                let minimum = match &found {
+                    None => minimise_from(&problem, starts),
+                    Some(before) => minimise(&problem, &before.parameters),
+                }
                 .map(|found| finished(&problem, found))
-                .ok_or_else(no_fit)
+                .ok_or_else(no_fit)?;
+                evaluations += minimum.evaluations;
+                found = Some(minimum);
+            }
+            let found = found.ok_or_else(no_fit)?;
+            Ok::<_, Error>(Minimum {
+                evaluations,
+                ..found
+            })
         };
         if model.has_bound() {
             let mut best: Option<Found> = None;

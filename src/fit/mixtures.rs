@@ -127,13 +127,18 @@ pub(super) fn p_value(
                     pivots,
                     is_polarizer: false,
                 };
-                let problem = ModelProblem {
-                    target: &target,
-                    shape,
-                    fixed: None,
-                };
-                minimise_roughly(&problem, &x)
-                    .map_or(f64::INFINITY, |minimum| minimum.sum_of_squares)
+                let mut found = (x, f64::INFINITY);
+                for target in &target.stages() {
+                    let problem = ModelProblem {
+                        target,
+                        shape,
+                        fixed: None,
+                    };
+                    if let Some(minimum) = minimise_roughly(&problem, &found.0) {
+                        found = (minimum.parameters, minimum.sum_of_squares);
+                    }
+                }
+                found.1
             }
         };
         beyond += u32::from(least >= outcome.sum * ratio * ratio);

@@ -115,6 +115,7 @@ impl Fitter<'_> {
         let (shape, unit) = (fit.solved.shape, self.target.unit);
         let scale = self.scale_of(fit).ok_or_else(refuse)?;
         let least = self.misfit(&self.target, shape, &fit.solved.x);
+        let stages = self.target.stages();
         let mut points = vec![(found.value, 0.0)];
         for side in [-1.0, 1.0] {
             let mut start = fit.solved.x.clone();
@@ -123,21 +124,25 @@ impl Fitter<'_> {
                 if !in_range(name, value) {
                     break;
                 }
-                let problem = Held {
-                    model: ModelProblem {
-                        target: &self.target,
-                        shape,
-                        fixed: None,
-                    },
-                    name,
-                    value,
-                    weight: scale.sqrt() / (HOLD * se),
-                    unit,
-                };
-                let Some(minimum) = minimise(&problem, &start) else {
+                let found = stages.iter().try_fold(start.clone(), |start, target| {
+                    let problem = Held {
+                        model: ModelProblem {
+                            target,
+                            shape,
+                            fixed: None,
+                        },
+                        name,
+                        value,
+                        weight: scale.sqrt() / (HOLD * se),
+                        unit,
+                    };
+                    minimise(&problem, &start)
+                        .map(|minimum| problem.model.to_scale(&minimum.parameters))
+                });
+                let Some(found) = found else {
                     break;
                 };
-                start = problem.model.to_scale(&minimum.parameters);
+                start = found;
                 // The row that holds the parameter is not a misfit.
                 let sum = self.misfit(&self.target, shape, &start);
                 points.push((value, ((sum - least) / scale).max(0.0)));

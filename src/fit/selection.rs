@@ -89,6 +89,12 @@ fn sentence(fits: &[Fit], index: usize, rule: Rule) -> Result<String> {
         });
     }
     let count = fit.model.parameter_count();
+    if fit.model == Model::RankFour {
+        return Ok(format!(
+            "No smaller model explains the matrix within its noise. It is realizable, {}, and needs all of its sixteen numbers.",
+            p_text(fit)
+        ));
+    }
     let mut words = format!(
         "{} parameters suffice: {described}, {}.",
         number(count),

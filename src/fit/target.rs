@@ -7,8 +7,9 @@ use crate::noise::Measurement;
 type Matrix16 = SMatrix<f64, 16, 16>;
 
 /// An exact element weighs as if its error were this share of the others': then rounding
-/// and not the fit decides on its last digits.
-const EXACT: f64 = 1e-6;
+/// and not the fit decides on its last digits. A search that began so would creep along the
+/// narrow valley, so that it begins with the first and ends with the last.
+const EXACT: [f64; 3] = [1e-1, 1e-3, 1e-6];
 
 /// A measured matrix with the weights of its elements, in units of its own M00.
 #[derive(Debug, Clone)]
@@ -18,8 +19,12 @@ pub(super) struct Target {
     whitening: Matrix16,
     /// Rows beyond the sixteen, for exact elements of a covariance.
     held: Vec<usize>,
-    /// Of an exact element, over that.
+    /// Of an exact element.
     held_weight: f64,
+    /// The root mean square of the errors that are not zero.
+    typical: f64,
+    /// The exact elements.
+    places: Vec<usize>,
     /// |M00| as given.
     pub unit: f64,
     /// How many elements are exact.
@@ -51,7 +56,7 @@ impl Target {
             None => (
                 Matrix16::from_diagonal(&SVector::from_fn(|k, _| {
                     if sigma[k] == 0.0 {
-                        1.0 / (EXACT * typical)
+                        1.0
                     } else {
                         unit / sigma[k]
                     }
@@ -59,15 +64,39 @@ impl Target {
                 Vec::new(),
             ),
         };
-        Some(Self {
+        let target = Self {
             elements,
             whitening,
             exact: held.len(),
             m00_is_exact: held.first() == Some(&0),
             held: rows,
-            held_weight: 1.0 / (EXACT * typical),
+            held_weight: 1.0,
+            typical,
+            places: held,
             unit,
-        })
+        };
+        Some(target.with_exactness(EXACT[2]))
+    }
+
+    /// The same from soft to hard in its exact elements, for a search that goes through all;
+    /// an exact M00 is met by scaling.
+    pub fn stages(&self) -> Vec<Self> {
+        if self.exact == usize::from(self.m00_is_exact) {
+            return vec![self.clone()];
+        }
+        EXACT.map(|share| self.with_exactness(share)).to_vec()
+    }
+
+    /// With another error of the exact elements, as a share of the others'.
+    fn with_exactness(&self, share: f64) -> Self {
+        let mut target = self.clone();
+        target.held_weight = 1.0 / (share * self.typical);
+        if self.held.is_empty() {
+            for &k in &self.places {
+                target.whitening[(k, k)] = target.held_weight;
+            }
+        }
+        target
     }
 
     /// The same weights around another matrix, in the same unit.

@@ -32,6 +32,7 @@ pub fn known_blocks() -> &'static [&'static str] {
         "series",
         "dataFile",
         "examine",
+        "fit",
         "view",
     ]
 }
@@ -167,6 +168,7 @@ fn check(configuration: &Value) -> Result<()> {
         examine.whole("draws")?;
         examine.whole("seed")?;
     }
+    fit(&blocks)?;
     if let Some(view) = blocks.get("view") {
         let names: Vec<&str> = view
             .as_object()
@@ -196,6 +198,18 @@ fn few(names: &[&str], path: &str) -> Result<()> {
             format!("There are more than {MOST_MEMBERS} names here."),
         )
         .at_field(path));
+    }
+    Ok(())
+}
+
+/// The model that was chosen by hand, and where its depolarization stands.
+fn fit(blocks: &Fields) -> Result<()> {
+    if let Some(fit) = blocks.object("fit", &["model", "side"])? {
+        fit.text("model")?;
+        fit.choice(
+            "side",
+            &["parallel", "after", "before"].map(|side| (side, ())),
+        )?;
     }
     Ok(())
 }

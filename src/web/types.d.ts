@@ -439,6 +439,8 @@ export interface Configuration {
     /** The file that the matrices came from. */
     dataFile?: { name: string; sha256: string };
     examine?: { draws: number; seed: number };
+    /** The model that was chosen by hand, and where its depolarization stands. */
+    fit?: { model?: ModelName; side?: DepolarizationSide };
     view?: Record<string, number>;
     [block: string]: unknown;
 }

@@ -23,7 +23,7 @@ for (const form of FORMS) {
     await page.keyboard.press("Enter");
     assert.equal(await focused(), "help-heading");
     const text = (await page.locator("#help").textContent()) ?? "";
-    for (const part of ["0.123(4)", ".npy", "time dependence", "moment selection", "−0.96 σ", "transposition of the whole matrix", "Stokes condition", "Passivity", "Not determined", "8000", "Ctrl+Z", "laser-safety", "np.linalg.eigvalsh", "hashlib.sha256"]) {
+    for (const part of ["0.123(4)", ".npy", "time dependence", "moment selection", "−0.96 σ", "transposition of the whole matrix", "Stokes condition", "Passivity", "Not determined", "Constant stray light looks the same as α", "8000", "Ctrl+Z", "laser-safety", "np.linalg.eigvalsh", "hashlib.sha256"]) {
       assert.ok(text.includes(part), part);
     }
     // Each entry of the contents leads to its part, which is then in sight and has the keyboard.

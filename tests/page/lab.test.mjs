@@ -45,7 +45,7 @@ async function numbers(page) {
 
 /** @param {Page} page @param {string | RegExp} title */
 async function verdict(page, title) {
-  await page.locator("#task-heading", { hasText: title }).waitFor({ timeout: 5000 });
+  await page.locator("#task-heading", { hasText: title }).waitFor({ timeout: 15000 });
 }
 
 /** @param {Page} page @param {string} selector @param {RegExp} pattern */

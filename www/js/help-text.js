@@ -94,6 +94,18 @@ export const SECTIONS = [
     ],
   },
   {
+    id: "models",
+    title: "Which model explains a matrix",
+    pieces: [
+      "A measured matrix has sixteen numbers; a sample usually has four to eight. Model selection fits twelve models and recommends the one with the fewest parameters that the noise allows (p of 0.05 or more); without a noise statement, or where none passes, the one with the lowest Akaike criterion. Any other can be chosen by hand, and its numbers come with intervals too.",
+      "A retarder or diattenuator has few parameters; a pure element is any Jones matrix (seven numbers, its phase means nothing). α is what is lost of the polarization:",
+      { formula: "M = (1 − α) M_J + α M_J00 diag(1, 0, 0, 0)" },
+      "for light that passes beside the element, or diag(1, 1 − α, 1 − α, 1 − α) in series behind it or in front of it. All three are the same where nothing is diattenuating. α is not kept between 0 and 1: below 0 by more than its error, a gain or a background is wrong; near 2/3 with a large misfit, one side is counted the other way round. Constant stray light looks the same as α.",
+      "The residuals show where a model fails, in standard errors. A mixture of two or three pure elements has a simulated p, because χ² would reject it too often. What nothing determines is said, as are other numbers for the same element: a retardance of 300° with its axis turned by 90° is one of 60°.",
+      "The profile of χ² over a parameter fits all others again at each of its values; its interval is to be preferred where the curve is no parabola. Simulated measurements of the fit (parametric bootstrap) show the scatter of every parameter.",
+    ],
+  },
+  {
     id: "links",
     title: "Links, files and paper",
     pieces: [

@@ -1,4 +1,5 @@
 /** The tasks, in the order of the page: what each is called, what it needs, and its panel. */
+import { ModelPanel } from "./panels/model.js";
 import { PropertiesPanel } from "./panels/properties.js";
 import { RealizabilityPanel } from "./panels/realizability.js";
 
@@ -31,6 +32,7 @@ import { RealizabilityPanel } from "./panels/realizability.js";
 export const TASKS = [
   { name: "realizability", label: "Realizability", needsMatrix: true, blocks: [], panel: (root, actions) => new RealizabilityPanel(root, actions) },
   { name: "properties", label: "Properties", needsMatrix: true, blocks: [], panel: (root, actions) => new PropertiesPanel(root, actions) },
+  { name: "model", label: "Model selection", needsMatrix: true, blocks: ["fit"], panel: (root, actions) => new ModelPanel(root, actions) },
 ];
 
 /**
