@@ -105,7 +105,7 @@ fn errors_are_as_large_as_stated_and_p_is_uniform() {
 }
 
 #[test]
-#[ignore = "a minute with --release; the test above is the same with fewer truths"]
+#[ignore = "minutes with --release; the test above is the same with fewer truths"]
 fn errors_are_as_large_as_stated_and_p_is_uniform_in_full() {
     errors_and_p(2000);
 }
@@ -158,7 +158,7 @@ fn mixtures_that_are_true_are_not_rejected() {
 }
 
 #[test]
-#[ignore = "a minute with --release; the test above is the same with fewer truths"]
+#[ignore = "minutes with --release; the test above is the same with fewer truths"]
 fn mixtures_that_are_true_are_not_rejected_in_full() {
     sizes(2000);
 }
