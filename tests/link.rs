@@ -119,12 +119,30 @@ fn the_golden_link_is_read() {
     assert_eq!(decode(fragment).unwrap(), expected);
 }
 
+/// The choice of a model is read strictly.
+#[test]
+fn a_chosen_model_is_read() {
+    let mut configuration = configuration();
+    configuration["fit"] = json!({ "model": "pureIsotropic", "side": "before" });
+    let back = decode(&encode(&configuration).unwrap()).unwrap();
+    assert_eq!(back.to_string(), configuration.to_string());
+    for (wrong, field) in [
+        (json!({ "model": 3 }), "fit.model"),
+        (json!({ "side": "left" }), "fit.side"),
+        (json!({ "other": 1 }), "fit.other"),
+        (json!([1]), "fit"),
+    ] {
+        configuration["fit"] = wrong;
+        let at = encode(&configuration).unwrap_err().at;
+        assert_eq!(at, Some(Place::Field(field.to_owned())));
+    }
+}
+
 #[test]
 fn blocks_of_later_versions_survive() {
     let mut configuration = configuration();
     for later in [
         "train",
-        "fit",
         "settings",
         "readings",
         "instrument",
