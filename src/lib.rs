@@ -46,6 +46,8 @@ pub mod figures;
 
 pub mod examine;
 
+pub mod train;
+
 pub mod text;
 
 pub mod link;

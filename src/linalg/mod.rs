@@ -4,11 +4,13 @@
 //! unsorted, and report failure as `None`.
 
 mod eigen;
+mod inverse;
 mod logarithm;
 mod svd;
 mod symmetric;
 
 pub use eigen::{HermitianEigen, hermitian_eigen};
+pub use inverse::{Svd4, svd4};
 pub use logarithm::principal_logarithm;
 pub use svd::{Svd3, svd3};
 pub use symmetric::{
