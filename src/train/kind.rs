@@ -1,5 +1,6 @@
 use std::f64::consts::{FRAC_PI_2, FRAC_PI_4};
 
+use crate::convention::{Convention, TimeSign};
 use crate::tolerance;
 
 /// What an element of a train is.
@@ -60,6 +61,21 @@ impl Quantity {
     #[must_use]
     pub fn is_angle(self) -> bool {
         !matches!(self, Self::Number | Self::Power)
+    }
+
+    /// The sign between the canonical convention and this one.
+    #[must_use]
+    pub fn sign(self, convention: &Convention) -> f64 {
+        let time = match convention.time {
+            TimeSign::Plus => 1.0,
+            TimeSign::Minus => -1.0,
+        };
+        match self {
+            Self::Number | Self::Power | Self::Angle => 1.0,
+            Self::Azimuth | Self::Rotation => convention.rotation(1.0),
+            Self::Ellipticity | Self::CircularRetardance => convention.circular(1.0),
+            Self::Phase => time,
+        }
     }
 }
 

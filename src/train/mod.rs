@@ -7,16 +7,23 @@
 
 mod direct;
 mod element;
+mod fit;
 mod follow;
 mod kind;
+mod null;
 mod remove;
 mod sequence;
+mod solver;
 mod symmetry;
+mod weights;
 
 pub use direct::{DirectWeight, direct_weight};
 pub use element::{Element, Parameter, Role};
+pub use fit::{Equivalent, FitOptions, FittedParameter, TrainFit, fit_train};
 pub use follow::{Followed, Step, follow};
 pub use kind::{Definition, Kind, Quantity};
+pub use null::{Combination, NullDirection};
 pub use remove::{Removal, Removed, Sample, remove_optics};
 pub use sequence::{Place as ParameterPlace, Train};
+pub use solver::Stop;
 pub use symmetry::{Symmetry, SymmetryTest, symmetries};

@@ -10,7 +10,7 @@ use super::convert::{NoteTwin, to_js};
 use super::drawing::StateTwin;
 use super::request::{ConventionRead, measurement_of, plain};
 use super::{JsResult, thrown};
-use crate::convention::{AngleSense, Convention, TimeSign, ZeroAngle};
+use crate::convention::{Convention, ZeroAngle};
 use crate::error::{Error, Note, Place, Result};
 use crate::json::Fields;
 use crate::mueller::Mueller;
@@ -76,30 +76,18 @@ pub(super) struct Scale {
 
 impl Scale {
     pub fn of(definition: &Definition, convention: &Convention) -> Self {
-        let sense = match convention.angles {
-            AngleSense::Counterclockwise => 1.0,
-            AngleSense::Clockwise => -1.0,
+        let quantity = definition.quantity;
+        let shift = match convention.zero_angle {
+            ZeroAngle::Y if quantity == Quantity::Azimuth => FRAC_PI_2,
+            _ => 0.0,
         };
-        let (sign, shift) = match definition.quantity {
-            Quantity::Number | Quantity::Power | Quantity::Angle => (1.0, 0.0),
-            Quantity::Azimuth => match convention.zero_angle {
-                ZeroAngle::X => (sense, 0.0),
-                ZeroAngle::Y => (sense, FRAC_PI_2),
-            },
-            Quantity::Rotation => (sense, 0.0),
-            Quantity::Ellipticity | Quantity::CircularRetardance => (convention.circular(1.0), 0.0),
-            Quantity::Phase => match convention.time {
-                TimeSign::Plus => (1.0, 0.0),
-                TimeSign::Minus => (-1.0, 0.0),
-            },
-        };
-        let unit = if definition.quantity.is_angle() {
+        let unit = if quantity.is_angle() {
             1.0_f64.to_radians()
         } else {
             1.0
         };
         Self {
-            slope: sign * unit,
+            slope: quantity.sign(convention) * unit,
             shift,
         }
     }
