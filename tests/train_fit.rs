@@ -221,8 +221,9 @@ fn random_trains(count: usize, seed: u64) -> Outcome {
         if least <= 1e-7 * most {
             outcome.degenerate += 1;
             assert!(!fit.null_directions.is_empty(), "{}", says());
-        } else if least > 300.0 {
-            // Every standard error is below a three-hundredth.
+        } else if least > 1e-2 / sigma {
+            // Every derivative is well above what its own change over seven standard
+            // errors, 1e-4 each, is: first order holds.
             assert!(fit.null_directions.is_empty(), "{}", says());
             let errors: Vec<f64> = fit
                 .parameters
@@ -273,7 +274,7 @@ fn random_trains(count: usize, seed: u64) -> Outcome {
 fn random_trains_come_back_or_are_said_to_be_degenerate() {
     let outcome = random_trains(60, 1);
     assert!(outcome.recovered > 20, "{}", outcome.recovered);
-    assert!(outcome.degenerate > 5, "{}", outcome.degenerate);
+    assert!(outcome.degenerate > 3, "{}", outcome.degenerate);
 }
 
 /// In full; a minute or two.

@@ -29,6 +29,9 @@ const NEARLY_AS_GOOD: f64 = 3.84;
 /// their derivative.
 const PRESSED: f64 = 1e-7;
 
+/// A share of the linear change that its curvature may take away within the interval.
+const BENT: f64 = 0.15;
+
 /// Solutions that are listed beside the best.
 const MOST_EQUIVALENTS: usize = 12;
 
@@ -237,6 +240,9 @@ impl Problem for TrainProblem<'_> {
         self.weights.residuals(&model.row_major())
     }
 }
+
+/// What becomes of a parameter where an element stands with its axes exchanged.
+type Change = (&'static str, fn(f64) -> f64);
 
 struct Search {
     /// The best first.
@@ -454,7 +460,7 @@ impl<'a> TrainProblem<'a> {
                     .iter()
                     .position(|free| free.place.element == k && free.definition.name == name)
             };
-            let changes: &[(&str, fn(f64) -> f64)] = match element.kind() {
+            let changes: &[Change] = match element.kind() {
                 Kind::LinearRetarder => &[("retardance", |x| -x), ("axis", |x| x + FRAC_PI_2)],
                 Kind::EllipticalRetarder => &[
                     ("retardance", |x| -x),
@@ -550,19 +556,38 @@ impl<'a> TrainProblem<'a> {
         };
         // A combination whose error is as large as its whole range is not determined.
         let limit = numeric.max(unit);
-        let determined = |k: usize| k < rank && factors.values[k] > limit;
         let quantile = match (stated, measurement.sigma_freedom()) {
             (true, None) => student_quantile(None),
             (true, freedom) => student_quantile(freedom),
             (false, _) => student_quantile((freedom > 0).then_some(freedom as f64)),
         };
         let known = stated || freedom > 0;
+        let determined: Vec<bool> = (0..inner.len())
+            .map(|k| {
+                let value = factors.values[k];
+                if k >= rank || value <= limit {
+                    return false;
+                }
+                let mut direction = vec![0.0; count];
+                for (i, &a) in inner.iter().enumerate() {
+                    direction[a] = factors.right[(i, k)] * self.free[a].scale;
+                }
+                let reach = quantile * unit / value;
+                !self.turns_back(
+                    &best,
+                    &direction,
+                    &factors.left.column(k).into_owned(),
+                    value,
+                    reach,
+                )
+            })
+            .collect();
         let mut covariance = DMatrix::<f64>::zeros(count, count);
         let mut null = vec![0.0_f64; count];
         let mut vectors: Vec<(Vec<f64>, bool)> = Vec::new();
-        for k in 0..inner.len() {
+        for (k, &is_determined) in determined.iter().enumerate() {
             let direction = factors.right.column(k);
-            if determined(k) {
+            if is_determined {
                 let variance = (unit / factors.values[k]).powi(2);
                 for (i, &a) in inner.iter().enumerate() {
                     for (j, &b) in inner.iter().enumerate() {
@@ -665,6 +690,36 @@ impl<'a> TrainProblem<'a> {
             stop: best.stop,
             evaluations: search.evaluations,
             train,
+        })
+    }
+
+    /// Whether the residuals bend back within the interval of a combination, as they do
+    /// beside a point where two solutions meet: first order would claim too much there.
+    fn turns_back(
+        &self,
+        best: &Minimum,
+        direction: &[f64],
+        along: &DVector<f64>,
+        value: f64,
+        reach: f64,
+    ) -> bool {
+        [reach, -reach].into_iter().any(|step| {
+            let point: Vec<f64> = (0..direction.len())
+                .map(|k| best.point[k] + step * direction[k])
+                .collect();
+            // What lies beyond a bound says nothing.
+            let inside = self
+                .free
+                .iter()
+                .zip(&point)
+                .all(|(free, value)| (free.low..=free.high).contains(value));
+            if !inside {
+                return false;
+            }
+            self.residuals(&point).is_some_and(|residuals| {
+                let moved = along.dot(&(residuals - &best.residuals));
+                (moved - step * value).abs() > BENT * (step * value).abs()
+            })
         })
     }
 

@@ -12,6 +12,7 @@ mod follow;
 mod kind;
 mod null;
 mod remove;
+mod sample;
 mod sequence;
 mod solver;
 mod symmetry;

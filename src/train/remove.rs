@@ -1,12 +1,12 @@
 use nalgebra::{Matrix4, SMatrix, SVector};
 
+use super::sample::pure_isotropic;
 use super::{Element, Train};
 use crate::coherency::{nearest, weighted_nearest};
 use crate::error::{Error, Place, Result};
 use crate::linalg::svd4;
 use crate::mueller::Mueller;
 use crate::noise::{Measurement, Noise};
-use crate::stats::Covariance;
 use crate::tolerance;
 
 type Matrix16 = SMatrix<f64, 16, 16>;
@@ -159,8 +159,8 @@ pub fn remove_optics(request: &Removal) -> Result<Removed> {
         std::array::from_fn(|k| weights[(k, k)].max(0.0).sqrt() * relative)
     })
     .filter(|growth: &[f64; 16]| growth.iter().all(|value| value.is_finite()));
-    let samples = match measurement.as_ref().and_then(Measurement::covariance) {
-        Some(covariance) => realizable(&mueller, covariance, m00_is_exact, noise_is_stated)?,
+    let samples = match &measurement {
+        Some(measurement) => realizable(measurement, noise_is_stated)?,
         None => Vec::new(),
     };
     let measurement = match measurement {
@@ -276,33 +276,35 @@ fn can_be_undone(matrix: &Mueller, element: &Element) -> Result<bool> {
 ///
 /// `(M - Post S Pre)ᵀ Σ⁻¹ (…)` is the same number as the distance of S from the removed
 /// matrix under the covariance of that, so no fit through the optics is needed.
-fn realizable(
-    mueller: &Mueller,
-    covariance: &Covariance,
-    m00_is_exact: bool,
-    noise_is_stated: bool,
-) -> Result<Vec<Sample>> {
-    let elements = mueller.row_major();
-    let Ok(Some(found)) = weighted_nearest(&elements, covariance) else {
-        return Ok(Vec::new());
+fn realizable(measurement: &Measurement, noise_is_stated: bool) -> Result<Vec<Sample>> {
+    let mueller = measurement.mueller();
+    let mut samples = Vec::new();
+    samples.extend(pure_isotropic(measurement, noise_is_stated)?);
+    let Some(covariance) = measurement.covariance() else {
+        return Ok(samples);
     };
-    let Ok(near) = Mueller::from_row_major(&found.elements) else {
-        return Ok(Vec::new());
-    };
-    // What rounding left below zero goes.
-    let Some(exact) = nearest(&near, m00_is_exact)? else {
-        return Ok(Vec::new());
-    };
-    Ok(vec![Sample {
-        model: "realizable",
-        mueller: exact.mueller,
-        chi_square: noise_is_stated.then_some(found.statistic),
-        degrees_of_freedom: None,
-        p_value: None,
-        alpha: None,
-        alpha_se: None,
-        distance: relative_distance(&exact.mueller, mueller),
-    }])
+    let found = weighted_nearest(&mueller.row_major(), covariance)
+        .ok()
+        .flatten();
+    let near = found
+        .as_ref()
+        .and_then(|found| Mueller::from_row_major(&found.elements).ok());
+    if let (Some(found), Some(near)) = (found, near)
+        // What rounding left below zero goes.
+        && let Some(exact) = nearest(&near, measurement.m00_is_exact())?
+    {
+        samples.push(Sample {
+            model: "realizable",
+            distance: relative_distance(&exact.mueller, mueller),
+            mueller: exact.mueller,
+            chi_square: noise_is_stated.then_some(found.statistic),
+            degrees_of_freedom: None,
+            p_value: None,
+            alpha: None,
+            alpha_se: None,
+        });
+    }
+    Ok(samples)
 }
 
 pub(super) fn relative_distance(one: &Mueller, other: &Mueller) -> f64 {

@@ -13,12 +13,13 @@ use super::{JsResult, thrown};
 use crate::convention::{Convention, ZeroAngle};
 use crate::error::{Error, Note, Place, Result};
 use crate::json::Fields;
+use crate::link::name_with_unit;
 use crate::mueller::Mueller;
 use crate::noise::Measurement;
 use crate::state::Stokes;
 use crate::train::{
-    self, Definition, DirectWeight, Element, Followed, Kind, Parameter, Quantity, Removal, Removed,
-    Role, Symmetry, SymmetryTest, Train,
+    self, Definition, DirectWeight, Element, FitOptions, Followed, Kind, Parameter, ParameterPlace,
+    Quantity, Removal, Removed, Role, Stop, Symmetry, SymmetryTest, Train, TrainFit,
 };
 
 /// The members of a measurement.
@@ -49,6 +50,21 @@ pub fn remove_optics(
 ) -> JsResult {
     let request = plain(request).and_then(|request| RemoveRequest::of(&request));
     to_js(&thrown(request.and_then(|request| request.answer()))?)
+}
+
+/// Fits the free parameters of a train to a measured matrix.
+///
+/// # Errors
+/// For a request that is not understood, at its field.
+#[wasm_bindgen(js_name = fitTrain, unchecked_return_type = "TrainFit")]
+pub fn fit_train(
+    #[wasm_bindgen(unchecked_param_type = "FitTrainRequest")] request: &JsValue,
+) -> JsResult {
+    let request = plain(request).and_then(|request| fit_request(&request));
+    let (target, convention, train, options) = thrown(request)?;
+    let found =
+        train::fit_train(&target, &train, options).map_err(|error| placed(error, "train", &train));
+    to_js(&FitTwin::new(&thrown(found)?, &convention))
 }
 
 /// Tests the symmetries that a sample may have.
@@ -95,16 +111,10 @@ impl Scale {
     pub fn inward(&self, value: f64) -> f64 {
         self.slope * value + self.shift
     }
-}
 
-/// The name of a parameter in the interface.
-pub(super) fn outer_name(definition: &Definition) -> String {
-    let unit = if definition.quantity.is_angle() {
-        "Deg"
-    } else {
-        ""
-    };
-    format!("{}{unit}", definition.name)
+    pub fn outward(&self, value: f64) -> f64 {
+        (value - self.shift) / self.slope
+    }
 }
 
 /// The train at a member of a request; none is an empty one.
@@ -169,7 +179,7 @@ fn element_of(
     let fields = Fields::of(item, path, &known)?;
     let choices = Kind::ALL.map(|kind| (kind.name(), kind));
     let kind = fields.required("kind", fields.choice("kind", &choices)?)?;
-    let names: Vec<String> = kind.definitions().iter().map(outer_name).collect();
+    let names: Vec<String> = kind.definitions().iter().map(name_with_unit).collect();
     let names: Vec<&str> = names.iter().map(String::as_str).collect();
     let parameters = fields.object("parameters", &names)?;
     let element = if kind == Kind::Measured {
@@ -248,7 +258,7 @@ fn parameter_of(
             kind.definitions()
                 .iter()
                 .enumerate()
-                .find(|(_, definition)| outer_name(definition) == other)
+                .find(|(_, definition)| name_with_unit(definition) == other)
         })
         .ok_or_else(|| {
             tie.error(
@@ -288,7 +298,7 @@ fn outer_place(error: Error, path: &str, kinds: &[Kind]) -> Error {
         let definition = element
             .and_then(|k| kinds.get(k))
             .and_then(|kind| kind.definitions().iter().find(|one| one.name == name));
-        let outer = definition.map_or_else(|| name.to_owned(), outer_name);
+        let outer = definition.map_or_else(|| name.to_owned(), name_with_unit);
         let dot = if rest.is_empty() { "" } else { "." };
         field = format!("{front}.parameters.{outer}{dot}{rest}");
     }
@@ -378,6 +388,214 @@ fn in_train(note: &Note) -> Note {
         *field = format!("train{field}");
     }
     note
+}
+
+fn fit_request(request: &Value) -> Result<(Measurement, Convention, Train, FitOptions)> {
+    let fields = Fields::of(request, "", &["target", "train", "seed", "starts"])?;
+    let target = fields.required("target", fields.object("target", &MEASUREMENT)?)?;
+    let (measurement, convention) =
+        measurement_of(&target).map_err(|error| below(error, "target"))?;
+    let train = train_of(&fields, "train", &convention)?;
+    let options = FitOptions {
+        seed: fields.whole("seed")?.unwrap_or(1),
+        starts: fields
+            .whole("starts")?
+            .map(|starts| usize::try_from(starts).unwrap_or(usize::MAX)),
+    };
+    Ok((measurement, convention, train, options))
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct FitTwin {
+    parameters: Vec<ParameterTwin>,
+    covariance: Vec<Vec<Option<f64>>>,
+    correlation: Vec<Vec<Option<f64>>>,
+    null_directions: Vec<NullTwin>,
+    equivalents: Vec<EquivalentTwin>,
+    chi_square: Option<f64>,
+    degrees_of_freedom: u32,
+    p_value: Option<f64>,
+    aic: Option<f64>,
+    bic: Option<f64>,
+    mueller: [f64; 16],
+    residuals: Option<[f64; 16]>,
+    stop: &'static str,
+    evaluations: usize,
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct ParameterTwin {
+    element: usize,
+    name: String,
+    title: String,
+    value: f64,
+    se: Option<f64>,
+    low: Option<f64>,
+    high: Option<f64>,
+    unit: &'static str,
+    at_bound: bool,
+    reason: Option<&'static str>,
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct NullTwin {
+    /// Positions in the list of parameters.
+    parameters: Vec<usize>,
+    directions: Vec<Vec<f64>>,
+    within_noise: bool,
+    sentence: String,
+}
+
+#[derive(Serialize)]
+#[serde(rename_all = "camelCase")]
+struct EquivalentTwin {
+    values: Vec<f64>,
+    chi_square_difference: f64,
+    sentence: String,
+}
+
+impl FitTwin {
+    fn new(fit: &TrainFit, convention: &Convention) -> Self {
+        let definitions: Vec<&Definition> = fit
+            .parameters
+            .iter()
+            .filter_map(|one| fit.train.definition(one.place))
+            .collect();
+        let scales: Vec<Scale> = definitions
+            .iter()
+            .map(|definition| Scale::of(definition, convention))
+            .collect();
+        // An azimuth without bounds lies in [0, 180), as everywhere else.
+        let wraps = |k: usize| {
+            let place = fit.parameters[k].place;
+            definitions[k].quantity == Quantity::Azimuth
+                && fit.train.elements()[place.element].parameters()[place.parameter].role
+                    == Role::Free {
+                        low: None,
+                        high: None,
+                    }
+        };
+        let shift = |k: usize, value: f64| {
+            let outer = scales[k].outward(value);
+            if wraps(k) {
+                let wrapped = outer.rem_euclid(180.0);
+                (if wrapped >= 180.0 { 0.0 } else { wrapped }) - outer
+            } else {
+                0.0
+            }
+        };
+        let signs = convention.element_signs();
+        let position =
+            |place: &ParameterPlace| fit.parameters.iter().position(|one| one.place == *place);
+        Self {
+            parameters: fit
+                .parameters
+                .iter()
+                .enumerate()
+                .map(|(k, one)| {
+                    let shift = shift(k, one.value);
+                    let outer = |value: Option<f64>| value.map(|x| scales[k].outward(x) + shift);
+                    let (low, high) = (outer(one.low), outer(one.high));
+                    let (low, high) = if scales[k].slope < 0.0 {
+                        (high, low)
+                    } else {
+                        (low, high)
+                    };
+                    ParameterTwin {
+                        element: one.place.element,
+                        name: name_with_unit(definitions[k]),
+                        title: fit.train.title(one.place),
+                        value: scales[k].outward(one.value) + shift,
+                        se: one.se.map(|se| se / scales[k].slope.abs()),
+                        low,
+                        high,
+                        unit: if definitions[k].quantity.is_angle() {
+                            "deg"
+                        } else {
+                            "1"
+                        },
+                        at_bound: one.at_bound,
+                        reason: one.reason,
+                    }
+                })
+                .collect(),
+            covariance: scaled(&fit.covariance, |i, j| {
+                1.0 / (scales[i].slope * scales[j].slope)
+            }),
+            correlation: scaled(&fit.correlation, |i, j| {
+                (scales[i].slope * scales[j].slope).signum()
+            }),
+            null_directions: fit
+                .null_directions
+                .iter()
+                .map(|one| {
+                    let parameters: Vec<usize> = one.places.iter().filter_map(position).collect();
+                    let outer = |direction: &Vec<f64>| {
+                        direction
+                            .iter()
+                            .zip(&parameters)
+                            .map(|(part, &k)| part / scales[k].slope)
+                            .collect()
+                    };
+                    NullTwin {
+                        directions: one.directions.iter().map(outer).collect(),
+                        within_noise: one.within_noise,
+                        sentence: one.sentence(convention),
+                        parameters,
+                    }
+                })
+                .collect(),
+            equivalents: fit
+                .equivalents
+                .iter()
+                .map(|one| EquivalentTwin {
+                    values: one
+                        .values
+                        .iter()
+                        .enumerate()
+                        .map(|(k, &value)| scales[k].outward(value) + shift(k, value))
+                        .collect(),
+                    chi_square_difference: one.chi_square_difference,
+                    sentence: one.sentence.clone(),
+                })
+                .collect(),
+            chi_square: fit.chi_square,
+            degrees_of_freedom: fit.degrees_of_freedom,
+            p_value: fit.p_value,
+            aic: fit.aic,
+            bic: fit.bic,
+            mueller: convention.mueller(&fit.mueller).row_major(),
+            residuals: fit
+                .residuals
+                .map(|residuals| std::array::from_fn(|k| signs[k] * residuals[k])),
+            stop: match fit.stop {
+                Stop::Gradient => "gradient",
+                Stop::Step => "step",
+                Stop::Decrease => "decrease",
+                Stop::Steps => "steps",
+            },
+            evaluations: fit.evaluations,
+        }
+    }
+}
+
+fn scaled(
+    matrix: &[Vec<Option<f64>>],
+    factor: impl Fn(usize, usize) -> f64,
+) -> Vec<Vec<Option<f64>>> {
+    matrix
+        .iter()
+        .enumerate()
+        .map(|(i, row)| {
+            row.iter()
+                .enumerate()
+                .map(|(j, entry)| entry.map(|entry| entry * factor(i, j)))
+                .collect()
+        })
+        .collect()
 }
 
 struct RemoveRequest {

@@ -350,6 +350,61 @@ export interface RemovedOptics {
     reason: string | null;
 }
 
+export interface FitTrainRequest {
+    target: Measurement;
+    /** In the convention of the target. */
+    train: TrainElement[];
+    /** Of the starting points. Default 1. */
+    seed?: number;
+    /** How many searches, the first from the values of the train. */
+    starts?: number;
+}
+
+/** The free parameters of a train, fitted to a measured matrix. */
+export interface TrainFit {
+    parameters: {
+        /** Position of the element. */
+        element: number;
+        name: string;
+        /** Parameter and element in words. */
+        title: string;
+        value: number;
+        /** Null, with a reason, where it is not determined. */
+        se: number | null;
+        /** Of the 95 % interval. */
+        low: number | null;
+        high: number | null;
+        unit: "1" | "deg";
+        atBound: boolean;
+        reason: string | null;
+    }[];
+    /** Null in rows and columns of parameters without standard error. */
+    covariance: (number | null)[][];
+    correlation: (number | null)[][];
+    /** What can't be told apart. */
+    nullDirections: {
+        /** Positions in `parameters`. */
+        parameters: number[];
+        /** How these can change together. */
+        directions: number[][];
+        /** The matrix changes, but by less than its noise. */
+        withinNoise: boolean;
+        sentence: string;
+    }[];
+    /** Other solutions that are as good, values in the order of `parameters`. */
+    equivalents: { values: number[]; chiSquareDifference: number; sentence: string }[];
+    chiSquare: number | null;
+    degreesOfFreedom: number;
+    pValue: number | null;
+    aic: number | null;
+    bic: number | null;
+    mueller: Matrix16;
+    /** Measured minus fitted in σ, row by row. */
+    residuals: Matrix16 | null;
+    stop: "gradient" | "step" | "decrease" | "steps";
+    evaluations: number;
+}
+
 export interface SymmetryTest {
     symmetry: "reciprocalSameFrame" | "reciprocalMirrored" | "noCircularPart" | "blockDiagonal";
     /** The largest violation, over M00. */
@@ -418,6 +473,13 @@ export interface Configuration {
     /** The file that the matrices came from. */
     dataFile?: { name: string; sha256: string };
     examine?: { draws: number; seed: number };
+    /** A train, its source, and what stands before and behind the sample; a train that is written may lack values. */
+    train?: TrainElement[];
+    source?: [number, number, number, number];
+    pre?: Measurement | TrainElement[];
+    post?: Measurement | TrainElement[];
+    /** How known optics are taken away. */
+    removal?: { reflection?: boolean; direct?: Matrix16 };
     view?: Record<string, number>;
     [block: string]: unknown;
 }
