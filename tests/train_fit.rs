@@ -9,9 +9,10 @@ use halfshade::convention::Convention;
 use halfshade::mueller::{Mueller, elements};
 use halfshade::noise::{Measurement, Noise};
 use halfshade::stats::NormalDraws;
+use halfshade::text::{ReadOptions, parse_matrices};
 use halfshade::train::{
-    Combination, Element, FitOptions, Kind, Parameter, ParameterPlace, Role, Train, TrainFit,
-    fit_train,
+    Combination, Element, FitOptions, Kind, Parameter, ParameterPlace, Removal, Role, Train,
+    TrainFit, fit_train, remove_optics,
 };
 
 const OPTIONS: FitOptions = FitOptions {
@@ -688,4 +689,198 @@ fn finite(fit: &TrainFit) {
     numbers.extend(fit.equivalents.iter().flat_map(|one| one.values.clone()));
     numbers.extend(fit.equivalents.iter().map(|one| one.chi_square_difference));
     assert!(numbers.iter().all(|number| number.is_finite()), "{fit:?}");
+}
+
+/// A file of the demo data, as a measurement of equal errors.
+fn demo(file: &str) -> Measurement {
+    let folder = concat!(env!("CARGO_MANIFEST_DIR"), "/demo-data/train/");
+    let read = |name: &str| std::fs::read_to_string(format!("{folder}{name}")).unwrap();
+    let index: serde_json::Value = serde_json::from_str(&read("index.json")).unwrap();
+    let entry = index
+        .as_array()
+        .unwrap()
+        .iter()
+        .find(|entry| entry["file"] == file)
+        .unwrap();
+    let sigma = entry["noise"]["sigma"].as_f64().unwrap();
+    let parsed = parse_matrices(&read(file), &ReadOptions::default()).unwrap();
+    let matrix = Mueller::from_row_major(&parsed.matrices[0].mueller).unwrap();
+    Measurement::new(matrix, false, true, Noise::Uniform { sigma }).unwrap()
+}
+
+fn film_between(before: Option<Measurement>, after: Option<Measurement>) -> Train {
+    let mut elements: Vec<Element> = before.into_iter().map(Element::measured).collect();
+    elements.push(element(
+        Kind::AlignedDiattenuatingRetarder,
+        &[free(0.8), free(0.1), free(1.0), free(0.5)],
+    ));
+    elements.push(element(Kind::IsotropicDepolarizer, &[free(0.1)]));
+    elements.extend(after.map(Element::measured));
+    Train::new(elements).unwrap()
+}
+
+/// The invented film of `tests/reference/train.py`: truth and bias are NumPy's and SciPy's.
+#[test]
+fn the_film_behind_the_window_comes_back_and_is_biased_without_it() {
+    let expected: serde_json::Value =
+        serde_json::from_str(include_str!("reference/train.json")).unwrap();
+    let list = |name: &str| -> Vec<f64> {
+        let values = expected[name].as_array().unwrap().iter().enumerate();
+        values
+            .map(|(k, value)| {
+                let value = value.as_f64().unwrap();
+                if (2..4).contains(&k) {
+                    value.to_radians()
+                } else {
+                    value
+                }
+            })
+            .collect()
+    };
+    let (truth, bias) = (list("truth"), list("bias"));
+    let (whole, window, mirror) = (
+        demo("film-with-window-and-mirror.txt"),
+        demo("window-alone.txt"),
+        demo("mirror-alone.txt"),
+    );
+    let sides = |before: Option<Measurement>| {
+        let train = |one: Option<Measurement>| {
+            Train::new(one.into_iter().map(Element::measured).collect()).unwrap()
+        };
+        let (pre, post) = (train(before), train(Some(mirror.clone())));
+        let removed = remove_optics(&Removal {
+            measured: &whole,
+            pre: &pre,
+            post: &post,
+            reflection: false,
+        });
+        removed.unwrap().measurement.unwrap()
+    };
+    let after_removal = fit_train(
+        &sides(Some(window.clone())),
+        &film_between(None, None),
+        OPTIONS,
+    )
+    .unwrap();
+    let through = film_between(Some(window.clone()), Some(mirror.clone()));
+    let at_once = fit_train(&whole, &through, OPTIONS).unwrap();
+    for fit in [&after_removal, &at_once] {
+        assert!(fit.p_value.unwrap() > 0.05, "{:?}", fit.p_value);
+        for (parameter, truth) in fit.parameters.iter().zip(&truth) {
+            close(parameter.value, *truth, 2.0 * parameter.se.unwrap());
+        }
+    }
+    // Two ways to one answer: the noise of window and mirror counts in both.
+    for (one, other) in after_removal.parameters.iter().zip(&at_once.parameters) {
+        close(one.value, other.value, 0.1 * one.se.unwrap());
+        close(one.se.unwrap() / other.se.unwrap(), 1.0, 0.02);
+    }
+    // Without the window the fit looks as good, and is wrong by what was computed: the
+    // transmittance and α by dozens of standard errors.
+    let without = fit_train(&sides(None), &film_between(None, None), OPTIONS).unwrap();
+    for ((parameter, truth), bias) in without.parameters.iter().zip(&truth).zip(&bias) {
+        close(parameter.value - truth, *bias, 3.0 * parameter.se.unwrap());
+    }
+    for k in [0, 4] {
+        let parameter = without.parameters[k];
+        assert!((parameter.value - truth[k]).abs() > 24.0 * parameter.se.unwrap());
+    }
+}
+
+/// The noise of a measured element counts in a fit: the scatter of α over draws of it
+/// agrees with the standard error (300 draws know it to 4 %).
+#[test]
+fn noise_of_measured_elements_counts() {
+    let window = elements::isotropic_depolarizer(0.1).unwrap();
+    let haze = elements::isotropic_depolarizer(0.2).unwrap();
+    for exact in [false, true] {
+        let mut draws = NormalDraws::new(30);
+        let (mut squares, mut errors) = (0.0, 0.0);
+        for _ in 0..300 {
+            let mut one = |matrix: Mueller, sigma: f64, exact: bool| {
+                let errors = draws.draw_matrix();
+                let elements = matrix.row_major();
+                let drawn = std::array::from_fn(|k| {
+                    elements[k]
+                        + if k == 0 && exact {
+                            0.0
+                        } else {
+                            sigma * errors[k]
+                        }
+                });
+                measurement(
+                    Mueller::from_row_major(&drawn).unwrap(),
+                    exact,
+                    Noise::Uniform { sigma },
+                )
+            };
+            let measured = one(haze * window, 0.001, exact);
+            let before = one(window, 0.003, false);
+            let train = Train::new(vec![
+                Element::measured(before),
+                element(Kind::IsotropicDepolarizer, &[free(0.15)]),
+            ])
+            .unwrap();
+            let options = FitOptions {
+                seed: 1,
+                starts: Some(2),
+            };
+            let fit = fit_train(&measured, &train, options).unwrap();
+            squares += (fit.parameters[0].value - 0.2).powi(2) / 300.0;
+            errors += fit.parameters[0].se.unwrap() / 300.0;
+        }
+        close(squares.sqrt() / errors, 1.0, 0.16);
+    }
+}
+
+/// The same bench drawn 200 times: each parameter is off by its standard error on average
+/// (root mean square, known to 5 %), after removal and in one fit.
+#[test]
+fn the_film_is_off_by_its_standard_errors() {
+    let window = Mueller::from_row_major(
+        &(elements::isotropic_depolarizer(0.08).unwrap()
+            * elements::linear_retarder(5_f64.to_radians(), 75_f64.to_radians()).unwrap())
+        .row_major()
+        .map(|part| 0.91 * part),
+    )
+    .unwrap();
+    let mirror =
+        elements::isotropic_reflector(43.2_f64.to_radians(), 171_f64.to_radians(), 0.87, 0.0)
+            .unwrap();
+    let truth = [0.83, 0.06, 64_f64.to_radians(), 31_f64.to_radians(), 0.05];
+    let film = elements::isotropic_depolarizer(truth[4]).unwrap()
+        * elements::aligned_diattenuating_retarder(truth[0], truth[1], truth[2], truth[3]).unwrap();
+    let mut draws = NormalDraws::new(40);
+    let mut squares = [[0.0; 5]; 2];
+    let options = FitOptions {
+        seed: 1,
+        starts: Some(2),
+    };
+    for _ in 0..200 {
+        let whole = noisy(&(mirror * film * window), 0.0015, &mut draws);
+        let before = noisy(&window, 0.0008, &mut draws);
+        let after = noisy(&mirror, 0.0008, &mut draws);
+        let side = |one: &Measurement| Train::of_one(Element::measured(one.clone()));
+        let removed = remove_optics(&Removal {
+            measured: &whole,
+            pre: &side(&before),
+            post: &side(&after),
+            reflection: false,
+        })
+        .unwrap();
+        let alone = removed.measurement.unwrap();
+        let fits = [
+            fit_train(&alone, &film_between(None, None), options).unwrap(),
+            fit_train(&whole, &film_between(Some(before), Some(after)), options).unwrap(),
+        ];
+        for (squares, fit) in squares.iter_mut().zip(&fits) {
+            for k in 0..5 {
+                let one = fit.parameters[k];
+                squares[k] += ((one.value - truth[k]) / one.se.unwrap()).powi(2) / 200.0;
+            }
+        }
+    }
+    for square in squares.into_iter().flatten() {
+        close(square.sqrt(), 1.0, 0.2);
+    }
 }

@@ -3,6 +3,7 @@ use std::f64::consts::{FRAC_PI_2, PI};
 use nalgebra::{DMatrix, DVector};
 
 use super::null::{NullDirection, null_directions};
+use super::remove::with_noise_of_elements;
 use super::sequence::Place;
 use super::solver::{Minimum, Problem, Stop, minimise};
 use super::weights::Weights;
@@ -112,7 +113,8 @@ pub struct TrainFit {
 }
 
 /// Fits the free parameters of a train to a measured matrix by weighted least squares,
-/// from several seeded starts, the train's own values first. Among equally good solutions
+/// from several seeded starts, the train's own values first. The noise of measured elements
+/// adds to that of the matrix, to first order. Among equally good solutions
 /// the one nearest to those values is the fit; the others are its equivalents.
 ///
 /// Where M00 is exact, the train is compared after bringing its M00 to that.
@@ -135,10 +137,19 @@ pub fn fit_train(
         ));
     }
     train.mueller()?;
-    let problem = TrainProblem::new(measurement, train, places)?;
+    let problem = TrainProblem::new(measurement, train, places.clone())?;
     let mut search = problem.search(options)?;
     let best = problem.nearest_to_start(&mut search)?;
-    problem.report(measurement, best, search)
+    // The noise of measured elements reaches the whole through the others, as these are.
+    let Some(with_elements) = with_noise_of_elements(measurement, &problem.at(&best.point))? else {
+        return problem.report(measurement, best, search);
+    };
+    let before = search.evaluations;
+    let problem = TrainProblem::new(&with_elements, train, places)?;
+    let mut search = problem.search(options)?;
+    search.evaluations += before;
+    let best = problem.nearest_to_start(&mut search)?;
+    problem.report(&with_elements, best, search)
 }
 
 /// How a parameter is varied: by what its element is smooth in, also at its limits.

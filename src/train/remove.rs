@@ -206,7 +206,6 @@ impl Side {
             _ => error,
         };
         let whole = train.mueller().map_err(at)?;
-        let mut uncertain = Vec::new();
         for (k, element) in train.elements().iter().enumerate() {
             if element.disabled() {
                 continue;
@@ -222,25 +221,6 @@ impl Side {
                 )
                 .at_field(format!("{name}[{k}]")));
             }
-            if let Some(covariance) = element
-                .measurement()
-                .map(covariance_of)
-                .transpose()?
-                .flatten()
-            {
-                let part = |range: std::ops::Range<usize>| -> Result<Matrix4<f64>> {
-                    range
-                        .into_iter()
-                        .try_fold(Matrix4::identity(), |product, i| {
-                            Ok(train.matrix_of(i)?.matrix() * product)
-                        })
-                };
-                let around = Around {
-                    left: part(k + 1..train.elements().len()).map_err(at)?,
-                    right: part(0..k).map_err(at)?,
-                };
-                uncertain.push((around, covariance));
-            }
         }
         let factors = svd4(whole.matrix())?;
         let inverse = factors.inverse(tolerance::SINGULAR).ok_or_else(|| {
@@ -253,7 +233,7 @@ impl Side {
         Ok(Self {
             inverse,
             condition: factors.values[0] / factors.values[3],
-            uncertain,
+            uncertain: uncertain_elements(train).map_err(at)?,
         })
     }
 }
@@ -309,6 +289,68 @@ fn realizable(measurement: &Measurement, noise_is_stated: bool) -> Result<Vec<Sa
 
 pub(super) fn relative_distance(one: &Mueller, other: &Mueller) -> f64 {
     one.distance(other) / other.m00().abs().max(f64::MIN_POSITIVE)
+}
+
+/// The measurement with the noise of a train's measured elements added to its own; `None`
+/// where there is none, or nothing is said of the measurement's own.
+pub(super) fn with_noise_of_elements(
+    measurement: &Measurement,
+    train: &Train,
+) -> Result<Option<Measurement>> {
+    let Some(mut total) = covariance_of(measurement)? else {
+        return Ok(None);
+    };
+    let whole = train.mueller()?;
+    let Some(normalised) = whole.normalised() else {
+        return Ok(None);
+    };
+    let parts = uncertain_elements(train)?;
+    if parts.is_empty() {
+        return Ok(None);
+    }
+    for (around, covariance) in parts {
+        let jacobian = kronecker(&around.left, &around.right.transpose());
+        let part = jacobian * covariance * jacobian.transpose();
+        total += if measurement.m00_is_exact() {
+            // The model is brought to the exact M00.
+            let scale = measurement.mueller().m00();
+            divided(&whole, &normalised, &part) * (scale * scale)
+        } else {
+            part
+        };
+    }
+    let covariance = Box::new(std::array::from_fn(|k| total[(k / 16, k % 16)]));
+    Measurement::new(
+        *measurement.mueller(),
+        measurement.m00_is_exact(),
+        measurement.absolute(),
+        Noise::Covariance { covariance },
+    )
+    .map(Some)
+}
+
+/// The measured elements in the beam whose noise is stated, with what stands around them.
+fn uncertain_elements(train: &Train) -> Result<Vec<(Around, Matrix16)>> {
+    let mut uncertain = Vec::new();
+    for (k, element) in train.elements().iter().enumerate() {
+        let covariance = element.measurement().map(covariance_of).transpose()?;
+        let Some(covariance) = covariance.flatten().filter(|_| !element.disabled()) else {
+            continue;
+        };
+        let part = |range: std::ops::Range<usize>| -> Result<Matrix4<f64>> {
+            range
+                .into_iter()
+                .try_fold(Matrix4::identity(), |product, i| {
+                    Ok(train.matrix_of(i)?.matrix() * product)
+                })
+        };
+        let around = Around {
+            left: part(k + 1..train.elements().len())?,
+            right: part(0..k)?,
+        };
+        uncertain.push((around, covariance));
+    }
+    Ok(uncertain)
 }
 
 /// `J Σ Jᵀ` with `J = (I - m e00ᵀ) / M00`.
