@@ -102,7 +102,7 @@ fn trains(criterion: &mut Criterion) {
         seed: 1,
         starts: None,
     };
-    criterion.bench_function("train fit, six parameters, 96 starts", |bench| {
+    criterion.bench_function("train fit, six parameters, 60 starts", |bench| {
         bench.iter(|| fit_train(black_box(&noisy), black_box(&start), options));
     });
 }

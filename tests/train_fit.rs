@@ -221,7 +221,13 @@ fn random_trains(count: usize, seed: u64) -> Outcome {
         let (most, least) = (known[0], known[known.len() - 1]);
         if least <= 1e-7 * most {
             outcome.degenerate += 1;
-            assert!(!fit.null_directions.is_empty(), "{}", says());
+            // Where two solutions meet, the truth may be beside the fit among the others.
+            let wide = vec![0.003; places.len()];
+            let other = fit
+                .equivalents
+                .iter()
+                .any(|one| is_truth(&truth, &places, &one.values, &wide));
+            assert!(!fit.null_directions.is_empty() || other, "{}", says());
         } else if least > 1e-2 / sigma {
             // Every derivative is well above what its own change over seven standard
             // errors, 1e-4 each, is: first order holds.
@@ -249,7 +255,7 @@ fn random_trains(count: usize, seed: u64) -> Outcome {
         for direction in fit.null_directions.iter().filter(|one| !one.within_noise) {
             for along in &direction.directions {
                 let length = along.iter().map(|part| part * part).sum::<f64>().sqrt();
-                let step = 1e-4;
+                let step = 1e-5;
                 let values: Vec<f64> = direction
                     .places
                     .iter()
@@ -259,11 +265,8 @@ fn random_trains(count: usize, seed: u64) -> Outcome {
                 let moved = fit.train.with_values(&direction.places, &values);
                 if let Ok(moved) = moved.mueller() {
                     let change = moved.distance(&fit.train.mueller().unwrap());
-                    assert!(
-                        change < 100.0 * step * step + 1e-3 * step,
-                        "{change} {}",
-                        says()
-                    );
+                    // The curvature of an index is of order a hundred.
+                    assert!(change < 4e-3 * step, "{change} {}", says());
                 }
             }
         }
@@ -278,7 +281,7 @@ fn random_trains_come_back_or_are_said_to_be_degenerate() {
     assert!(outcome.degenerate > 3, "{}", outcome.degenerate);
 }
 
-/// In full; a minute or two.
+/// In full; a few seconds.
 #[test]
 #[ignore = "slow"]
 fn three_hundred_random_trains() {

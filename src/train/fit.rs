@@ -1,8 +1,9 @@
+use std::cell::RefCell;
 use std::f64::consts::{FRAC_PI_2, PI};
 
 use nalgebra::{DMatrix, DVector};
 
-use super::null::{NullDirection, null_directions};
+use super::null::{NOTHING, NullDirection, null_directions};
 use super::remove::with_noise_of_elements;
 use super::sequence::Place;
 use super::solver::{Minimum, Problem, Stop, minimise};
@@ -32,6 +33,9 @@ const PRESSED: f64 = 1e-7;
 
 /// A share of the linear change that its curvature may take away within the interval.
 const BENT: f64 = 0.15;
+
+/// How often an interval is halved until it fits between bounds.
+const MOST_HALVES: i32 = 6;
 
 /// Solutions that are listed beside the best.
 const MOST_EQUIVALENTS: usize = 12;
@@ -227,14 +231,19 @@ struct Free {
 
 struct TrainProblem<'a> {
     train: &'a Train,
+    places: Vec<Place>,
+    /// The train with the values that are tried: a copy each time would cost more than
+    /// its matrix.
+    tried: RefCell<Train>,
     free: Vec<Free>,
     weights: Weights,
 }
 
 impl Problem for TrainProblem<'_> {
     fn evaluate(&self, point: &[f64]) -> Option<(DVector<f64>, DMatrix<f64>)> {
-        let train = self.at(point);
-        let (model, mut changes) = train.derivatives(&self.places()).ok()?;
+        let (model, mut changes) = self
+            .trying(point, |train| train.derivatives(&self.places))?
+            .ok()?;
         for ((change, free), &inner) in changes.iter_mut().zip(&self.free).zip(point) {
             let slope = free.inner.slope(inner);
             *change = change.map(|part| part * slope);
@@ -247,7 +256,7 @@ impl Problem for TrainProblem<'_> {
     }
 
     fn residuals(&self, point: &[f64]) -> Option<DVector<f64>> {
-        let model = self.at(point).mueller().ok()?;
+        let model = self.trying(point, Train::mueller)?.ok()?;
         self.weights.residuals(&model.row_major())
     }
 }
@@ -266,7 +275,7 @@ struct Search {
 impl<'a> TrainProblem<'a> {
     fn new(measurement: &Measurement, train: &'a Train, places: Vec<Place>) -> Result<Self> {
         let power = measurement.mueller().m00().abs();
-        let free = places
+        let free: Vec<Free> = places
             .into_iter()
             .filter_map(|place| {
                 let definition = train.definition(place)?;
@@ -292,6 +301,7 @@ impl<'a> TrainProblem<'a> {
                             inner.inward(start.abs().max(power).max(f64::MIN_POSITIVE))
                         }
                         _ if definition.name.starts_with("index") => start.abs().max(0.1),
+                        _ if definition.name == "absorption" => start.abs().max(1.0),
                         _ => 1.0,
                     },
                     range: (
@@ -303,13 +313,20 @@ impl<'a> TrainProblem<'a> {
             .collect();
         Ok(Self {
             train,
+            places: free.iter().map(|free| free.place).collect(),
+            tried: RefCell::new(train.clone()),
             free,
             weights: Weights::of(measurement)?,
         })
     }
 
-    fn places(&self) -> Vec<Place> {
-        self.free.iter().map(|free| free.place).collect()
+    /// What the train with these values gives.
+    fn trying<T>(&self, point: &[f64], ask: impl FnOnce(&Train) -> T) -> Option<T> {
+        let mut train = self.tried.try_borrow_mut().ok()?;
+        for (free, &inner) in self.free.iter().zip(point) {
+            train.set_value(free.place, free.inner.outward(inner));
+        }
+        Some(ask(&train))
     }
 
     fn values(&self, point: &[f64]) -> Vec<f64> {
@@ -321,7 +338,7 @@ impl<'a> TrainProblem<'a> {
     }
 
     fn at(&self, point: &[f64]) -> Train {
-        self.train.with_values(&self.places(), &self.values(point))
+        self.train.with_values(&self.places, &self.values(point))
     }
 
     fn bounds(&self) -> (Vec<f64>, Vec<f64>) {
@@ -335,7 +352,7 @@ impl<'a> TrainProblem<'a> {
         let count = self.free.len();
         let starts = options
             .starts
-            .unwrap_or_else(|| (16 * count).clamp(1, 96))
+            .unwrap_or_else(|| (10 * count).clamp(1, 64))
             .max(1);
         let (low, high) = self.bounds();
         let mut draws = NormalDraws::new(options.seed);
@@ -343,8 +360,9 @@ impl<'a> TrainProblem<'a> {
             .map(|_| (draws.draw() * 1e3).rem_euclid(1.0))
             .collect();
         let ratio = golden(count);
+        let reach: Vec<f64> = self.free.iter().map(|free| free.scale).collect();
         let mut minima: Vec<Minimum> = Vec::new();
-        let mut evaluations = 0;
+        let (mut evaluations, mut best) = (0, f64::INFINITY);
         for round in 0..starts {
             let start: Vec<f64> = self
                 .free
@@ -359,10 +377,11 @@ impl<'a> TrainProblem<'a> {
                     free.range.0 + (free.range.1 - free.range.0) * share
                 })
                 .collect();
-            let Some(found) = minimise(self, &start, &low, &high)? else {
+            let Some(found) = minimise(self, &start, &low, &high, &reach, best)? else {
                 continue;
             };
             evaluations += found.evaluations;
+            best = best.min(found.squares);
             minima.push(found);
         }
         minima.sort_by(|a, b| a.squares.total_cmp(&b.squares));
@@ -618,8 +637,7 @@ impl<'a> TrainProblem<'a> {
                 vectors.push((whole, k < rank && factors.values[k] > numeric));
             }
         }
-        // A hundredth of an undetermined combination is what mixes in by rounding.
-        let loose: Vec<bool> = null.iter().map(|part| *part > 1e-2).collect();
+        let loose: Vec<bool> = null.iter().map(|part| *part > NOTHING).collect();
         let slopes: Vec<f64> = (0..count)
             .map(|k| self.free[k].inner.slope(best.point[k]))
             .collect();
@@ -673,7 +691,7 @@ impl<'a> TrainProblem<'a> {
             .weights
             .compared(&mueller.row_major())
             .unwrap_or(mueller.row_major());
-        let directions = null_directions(&train, &self.places(), &vectors, &slopes);
+        let directions = null_directions(&train, &self.places, &vectors, &slopes);
         let equivalents = self.equivalents(&best, &search, &loose, &covariance, stated, unit);
         let chi_square = stated.then_some(best.squares.min(f64::MAX));
         let degrees_of_freedom = u32::try_from(freedom).unwrap_or_default();
@@ -714,19 +732,22 @@ impl<'a> TrainProblem<'a> {
         value: f64,
         reach: f64,
     ) -> bool {
-        [reach, -reach].into_iter().any(|step| {
+        [reach, -reach].into_iter().any(|whole| {
+            // As far as the bounds allow; beyond them lies nothing.
+            let step = (0..MOST_HALVES)
+                .map(|halves| whole * 0.5_f64.powi(halves))
+                .find(|step| {
+                    self.free.iter().enumerate().all(|(k, free)| {
+                        let value = best.point[k] + step * direction[k];
+                        (free.low..=free.high).contains(&value)
+                    })
+                });
+            let Some(step) = step else {
+                return false;
+            };
             let point: Vec<f64> = (0..direction.len())
                 .map(|k| best.point[k] + step * direction[k])
                 .collect();
-            // What lies beyond a bound says nothing.
-            let inside = self
-                .free
-                .iter()
-                .zip(&point)
-                .all(|(free, value)| (free.low..=free.high).contains(value));
-            if !inside {
-                return false;
-            }
             self.residuals(&point).is_some_and(|residuals| {
                 let moved = along.dot(&(residuals - &best.residuals));
                 (moved - step * value).abs() > BENT * (step * value).abs()

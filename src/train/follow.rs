@@ -1,5 +1,4 @@
 use super::{Element, Train};
-use crate::coherency::Coherency;
 use crate::error::{Error, Note, Place, Result, Severity};
 use crate::mueller::Mueller;
 use crate::state::Stokes;
@@ -61,7 +60,7 @@ pub fn follow(source: &Stokes, train: &Train) -> Result<Followed> {
             let after = lit(&matrix.apply(&state), source);
             let title = element.title(k);
             notes.extend(loss(&state, &after, &title, k));
-            if depolarizes(&matrix)? {
+            if depolarizes(&matrix) {
                 notes.push(depolarization(&state, &after, &title, k));
             }
             if let Some((before, other)) = last
@@ -143,10 +142,17 @@ fn loss(before: &Stokes, after: &Stokes, title: &str, k: usize) -> Option<Note> 
     })
 }
 
-/// Whether the matrix is that of no single Jones matrix: H has more than one eigenvalue.
-fn depolarizes(matrix: &Mueller) -> Result<bool> {
-    let eigen = Coherency::from_mueller(matrix).eigen()?;
-    Ok(eigen.values[1].abs() > tolerance::NOT_DETERMINED * eigen.values[0].abs())
+/// Whether the matrix is that of no single Jones matrix: for one, the squares of the
+/// elements add to 4 M00² (Gil & Bernabéu 1985).
+fn depolarizes(matrix: &Mueller) -> bool {
+    let scale = matrix.largest();
+    let squares: f64 = matrix
+        .row_major()
+        .iter()
+        .map(|element| (element / scale).powi(2))
+        .sum();
+    let pure = 4.0 * (matrix.m00() / scale).powi(2);
+    scale > 0.0 && (squares - pure).abs() > tolerance::NOT_DETERMINED
 }
 
 fn depolarization(before: &Stokes, after: &Stokes, title: &str, k: usize) -> Note {

@@ -33,7 +33,7 @@ pub enum Combination {
 }
 
 /// A part below this is rounding.
-const NOTHING: f64 = 2e-2;
+pub(super) const NOTHING: f64 = 1e-3;
 
 /// A weight this near to ±1 is that.
 const EVEN: f64 = 1e-3;

@@ -46,6 +46,13 @@ pub(super) fn pure_isotropic(
     let mut low = vec![-tolerance::LARGEST_NUMBER; COUNT];
     let mut high = vec![tolerance::LARGEST_NUMBER; COUNT];
     (low[8], high[8]) = (0.0, LARGEST_ALPHA);
+    let size = jones
+        .row_major()
+        .iter()
+        .map(|z| z.norm())
+        .fold(0.0, f64::max);
+    let mut reach = vec![size; COUNT];
+    reach[8] = 1.0;
     let mut best = None;
     // The closed form is the best for equal errors; other weights may prefer another one.
     for alpha in [closed.alpha.clamp(0.0, LARGEST_ALPHA), 0.1, 0.7, 1.2] {
@@ -55,7 +62,7 @@ pub(super) fn pure_isotropic(
             .flat_map(|z| [z.re, z.im])
             .collect();
         start.push(alpha);
-        if let Some(found) = minimise(&problem, &start, &low, &high)?
+        if let Some(found) = minimise(&problem, &start, &low, &high, &reach, f64::INFINITY)?
             && best
                 .as_ref()
                 .is_none_or(|other: &super::solver::Minimum| found.squares < other.squares)

@@ -166,12 +166,16 @@ impl Train {
     #[must_use]
     pub fn with_values(&self, places: &[Place], values: &[f64]) -> Self {
         let mut train = self.clone();
-        for (place, &value) in places.iter().zip(values) {
-            if let Some(element) = train.0.get_mut(place.element) {
-                element.set_value(place.parameter, value);
-            }
+        for (&place, &value) in places.iter().zip(values) {
+            train.set_value(place, value);
         }
         train
+    }
+
+    pub(super) fn set_value(&mut self, place: Place, value: f64) {
+        if let Some(element) = self.0.get_mut(place.element) {
+            element.set_value(place.parameter, value);
+        }
     }
 
     /// The matrix of one element; the identity where it is disabled.

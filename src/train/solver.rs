@@ -6,6 +6,16 @@ use crate::linalg::column_svd;
 /// Steps of one search; good ones need about ten.
 const MOST_STEPS: usize = 100;
 
+/// Steps after which a search may be given up: one that falls by less than `CREEPING` of
+/// itself where it is `HOPELESS` times the best.
+const PATIENCE: usize = 12;
+const CREEPING: f64 = 1e-2;
+const HOPELESS: f64 = 100.0;
+
+/// A share of the sum of squares that is not worth another step: a point this near is off by
+/// a millionth of its standard error.
+const SETTLED: f64 = 1e-13;
+
 /// A sum of squares to be made small within bounds.
 pub(super) trait Problem {
     /// Residuals, and their derivatives as columns; `None` where the point means nothing.
@@ -41,7 +51,9 @@ pub(super) struct Minimum {
 
 /// Levenberg and Marquardt's iteration with steps cut at the bounds: a parameter at a
 /// bound that the gradient presses against it stays out of the step (projection of
-/// Bertsekas 1982).
+/// Bertsekas 1982). No step moves a parameter by more than its `reach`: where one hardly
+/// matters it would go so far that an angle has no digits left. A search that creeps far
+/// above the `best` sum of squares that is known is given up.
 ///
 /// `None` where the start means nothing.
 ///
@@ -52,6 +64,8 @@ pub(super) fn minimise(
     start: &[f64],
     low: &[f64],
     high: &[f64],
+    reach: &[f64],
+    best: f64,
 ) -> Result<Option<Minimum>> {
     let count = start.len();
     let mut point: Vec<f64> = (0..count)
@@ -68,7 +82,7 @@ pub(super) fn minimise(
     // Relative to the largest singular value squared.
     let mut damping = 1e-2;
     let mut stop = Stop::Steps;
-    'steps: for _ in 0..MOST_STEPS {
+    'steps: for round in 0..MOST_STEPS {
         let gradient = jacobian.transpose() * &residuals;
         let free: Vec<usize> = (0..count)
             .filter(|&k| {
@@ -101,10 +115,25 @@ pub(super) fn minimise(
         let factors = column_svd(&scaled)?;
         for _ in 0..30 {
             let step = factors.damped_step(&residuals, damping);
+            // What is left to gain is at most this.
+            let gain: f64 = -free
+                .iter()
+                .enumerate()
+                .map(|(i, &k)| gradient[k] * step[i] * scale[i])
+                .sum::<f64>();
+            if gain <= SETTLED * squares {
+                stop = Stop::Decrease;
+                break 'steps;
+            }
+            let far = free
+                .iter()
+                .enumerate()
+                .map(|(i, &k)| (step[i] * scale[i]).abs() / reach[k])
+                .fold(1.0, f64::max);
             let next: Vec<f64> = {
                 let mut next = point.clone();
                 for (i, &k) in free.iter().enumerate() {
-                    next[k] = (point[k] + step[i] * scale[i]).clamp(low[k], high[k]);
+                    next[k] = (point[k] + step[i] * scale[i] / far).clamp(low[k], high[k]);
                 }
                 next
             };
@@ -129,9 +158,12 @@ pub(super) fn minimise(
                 continue;
             };
             let fell = squares - trial;
-            let settled = fell <= 1e-14 * squares;
+            let settled = fell <= SETTLED * squares;
             (point, residuals, jacobian, squares) = (next, new_residuals, new_jacobian, trial);
             damping = (damping * 0.15).max(1e-14);
+            if round >= PATIENCE && fell <= CREEPING * squares && squares > HOPELESS * best {
+                break 'steps;
+            }
             if settled {
                 stop = Stop::Decrease;
                 break 'steps;

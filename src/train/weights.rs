@@ -11,11 +11,30 @@ const HELD: f64 = 1e-4;
 
 /// A measurement as residuals of unit variance.
 pub(super) struct Weights {
-    /// Residuals from differences of the elements, row by row.
-    rows: DMatrix<f64>,
+    rows: Rows,
     measured: [f64; 16],
     /// Of M00 where that is exact: a model is brought to it.
     exact_m00: Option<f64>,
+}
+
+/// Residuals from differences of the elements, row by row.
+enum Rows {
+    /// Independent errors: each element from the first on over its σ.
+    Diagonal(usize, [f64; 16]),
+    Full(DMatrix<f64>),
+}
+
+impl Rows {
+    fn times(&self, differences: &DMatrix<f64>) -> DMatrix<f64> {
+        match self {
+            Self::Full(rows) => rows * differences,
+            Self::Diagonal(first, sigma) => {
+                DMatrix::from_fn(16 - first, differences.ncols(), |row, column| {
+                    differences[(row + first, column)] / sigma[row + first]
+                })
+            }
+        }
+    }
 }
 
 impl Weights {
@@ -32,13 +51,7 @@ impl Weights {
             sigma.map(|sigma| if sigma > 0.0 { sigma } else { typical * HELD })
         });
         let rows = match measurement.covariance() {
-            None => DMatrix::from_fn(16 - first, 16, |row, column| {
-                if row + first == column {
-                    1.0 / sigma[column]
-                } else {
-                    0.0
-                }
-            }),
+            None => Rows::Diagonal(first, sigma),
             Some(covariance) => {
                 let values = covariance.row_major();
                 let correlation = SMatrix::<f64, 16, 16>::from_fn(|i, j| {
@@ -57,7 +70,9 @@ impl Weights {
                 let kept: Vec<usize> = (0..16)
                     .filter(|&row| !(exact && vectors[(0, row)].abs() > 0.5))
                     .collect();
-                DMatrix::from_fn(kept.len(), 16, |row, column| whole[(kept[row], column)])
+                Rows::Full(DMatrix::from_fn(kept.len(), 16, |row, column| {
+                    whole[(kept[row], column)]
+                }))
             }
         };
         Ok(Self {
@@ -68,7 +83,10 @@ impl Weights {
     }
 
     pub fn count(&self) -> usize {
-        self.rows.nrows()
+        match &self.rows {
+            Rows::Diagonal(first, _) => 16 - first,
+            Rows::Full(rows) => rows.nrows(),
+        }
     }
 
     /// The model as it is compared: brought to the exact M00 where there is one.
@@ -82,8 +100,8 @@ impl Weights {
 
     pub fn residuals(&self, model: &[f64; 16]) -> Option<DVector<f64>> {
         let model = self.compared(model)?;
-        let difference = DVector::from_fn(16, |k, _| model[k] - self.measured[k]);
-        Some(&self.rows * difference)
+        let difference = DMatrix::from_fn(16, 1, |k, _| model[k] - self.measured[k]);
+        Some(self.rows.times(&difference).column(0).into_owned())
     }
 
     /// From the derivatives of the model's elements.
@@ -95,6 +113,7 @@ impl Weights {
                 Some(exact) => (change[k] - model[k] * change[0] / model[0]) * exact / model[0],
             }
         });
-        Some(&self.rows * columns).filter(|jacobian| jacobian.iter().all(|entry| entry.is_finite()))
+        Some(self.rows.times(&columns))
+            .filter(|jacobian| jacobian.iter().all(|entry| entry.is_finite()))
     }
 }
