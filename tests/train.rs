@@ -577,6 +577,98 @@ proptest! {
     }
 }
 
+/// A measured matrix of any size, real or not, on the way of the light or around a sample:
+/// an answer without infinities, or an error with its sentence.
+#[test]
+fn hostile_matrices() {
+    let mut draws = NormalDraws::new(44);
+    for round in 0..600 {
+        let scale = 10_f64.powi(30 * (round % 11) - 150);
+        let kind = round / 11 % 4;
+        let errors = draws.draw_matrix();
+        let matrix = Mueller::from_row_major(&std::array::from_fn(|k| match kind {
+            0 => 0.1 * scale * errors[k],
+            1 => 0.1 * scale * f64::from(u8::from(k % 5 == 0)),
+            2 => 0.1 * scale * f64::from(u8::from(k == 0)),
+            _ => 0.1 * scale * (errors[k / 4] * errors[k % 4]),
+        }))
+        .unwrap();
+        let noise = match round % 3 {
+            0 => Noise::None,
+            1 => Noise::Uniform { sigma: 1e-3 },
+            _ => Noise::Relative { fraction: 1e-3 },
+        };
+        let Ok(one) = Measurement::new(matrix, round % 2 == 0, false, noise) else {
+            continue;
+        };
+        let train = Train::new(vec![
+            Element::measured(one.clone()),
+            fixed(Kind::LinearRetarder, &[1.0, 0.3]),
+            Element::measured(one.clone()),
+        ])
+        .unwrap();
+        let mut numbers = vec![];
+        let source = Stokes::new([1.0, 0.2, 0.3, -0.4]).unwrap();
+        match follow(&source, &train) {
+            Ok(found) => {
+                numbers.extend(found.mueller.row_major());
+                numbers.extend(found.steps.iter().flat_map(|step| step.stokes.components()));
+                numbers.extend(found.steps.iter().map(|step| step.power));
+            }
+            Err(error) => assert!(error.message.ends_with('.')),
+        }
+        let air = measurement(
+            Mueller::identity(),
+            round % 2 == 0,
+            Noise::Uniform { sigma: 0.1 },
+        );
+        for (measured, pre) in [(&air, &train), (&one, &Train::new(vec![]).unwrap())] {
+            let removed = remove_optics(&Removal {
+                measured,
+                pre,
+                post: pre,
+                reflection: true,
+            });
+            match removed {
+                Ok(found) => {
+                    numbers.extend(found.mueller.row_major());
+                    numbers.extend(found.covariance.iter().flat_map(|values| values.iter()));
+                    numbers.extend(found.sigma_growth.iter().flatten());
+                    numbers.push(found.condition_number);
+                    for sample in &found.samples {
+                        numbers.extend(sample.mueller.row_major());
+                        numbers.push(sample.distance);
+                        numbers.extend(sample.chi_square);
+                        numbers.extend(sample.alpha_se);
+                    }
+                    if let Some(sample) = &found.measurement {
+                        match direct_weight(sample, &Mueller::identity()) {
+                            Ok(direct) => {
+                                numbers.push(direct.weight);
+                                numbers.extend(direct.se);
+                            }
+                            // Under a covariance of many decades.
+                            Err(error) => assert_eq!(error.code, "no-convergence"),
+                        }
+                    }
+                }
+                Err(error) => assert!(error.message.ends_with('.')),
+            }
+        }
+        for test in symmetries(&one).unwrap() {
+            numbers.extend(
+                [test.chi_square, test.p_value, test.deviation]
+                    .into_iter()
+                    .flatten(),
+            );
+        }
+        assert!(
+            numbers.iter().all(|number| number.is_finite()),
+            "round {round}"
+        );
+    }
+}
+
 /// A tie is a function of the other: its share of the derivative comes by the chain rule.
 #[test]
 fn ties_follow_and_count_in_derivatives() {
