@@ -1077,7 +1077,7 @@ fn weight_of_a_direct_component() {
     // Not in the range at all.
     let sample = measurement(plate, false, Noise::None);
     assert_eq!(direct_weight(&sample, &air).unwrap().weight, 0.0);
-    // In diag(1, 1-α, …) air has the eigenvalue 1 - ¾α (physics of section 8; derived),
+    // In diag(1, 1-α, …) air has the eigenvalue 1 - ¾α (derived),
     // with a standard error by draws.
     let hazy = elements::isotropic_depolarizer(0.4).unwrap();
     let sigma = 1e-3;
