@@ -9,6 +9,7 @@ import { ROOT, StepError, needChromium, needFirefox, needPython, needRust, run, 
 const REQUIREMENTS = "tests/reference/requirements.txt";
 const FIXTURES = "tests/reference/fixtures.py";
 const WEIGHTED = "tests/reference/weighted.py";
+const TRAIN = "tests/reference/train.py";
 
 /** @type {[name: string, what: string, step: () => Promise<void>][]} */
 const STEPS = [
@@ -76,6 +77,7 @@ async function python(...args) {
 async function fixtures() {
   await python(FIXTURES, "--check");
   await python(WEIGHTED, "--check");
+  await python(TRAIN, "--check");
 }
 
 async function types() {

@@ -271,17 +271,18 @@ struct MappedTwin {
     output: StateTwin,
 }
 
+/// A state in the person's convention.
 #[derive(Serialize)]
 #[serde(rename_all = "camelCase")]
-struct StateTwin {
-    stokes: [f64; 4],
-    degree: Option<f64>,
-    azimuth_deg: Option<f64>,
-    ellipticity_deg: Option<f64>,
+pub struct StateTwin {
+    pub stokes: [f64; 4],
+    pub degree: Option<f64>,
+    pub azimuth_deg: Option<f64>,
+    pub ellipticity_deg: Option<f64>,
 }
 
 impl StateTwin {
-    fn new(state: &Stokes, convention: &Convention) -> Self {
+    pub fn new(state: &Stokes, convention: &Convention) -> Self {
         let ellipse = state.ellipse();
         Self {
             stokes: convention.stokes(state).components(),

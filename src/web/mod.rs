@@ -8,6 +8,7 @@ mod convert;
 mod drawing;
 mod examination;
 mod request;
+mod train;
 mod value;
 
 use serde::Serialize;

@@ -150,7 +150,7 @@ impl ExamineRequest {
 }
 
 /// A measured matrix in the canonical convention, and the convention that it came in.
-fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
+pub fn measurement_of(fields: &Fields) -> Result<(Measurement, Convention)> {
     let read = ConventionRead::of(fields)?;
     if let Some(matrices) = replicates(fields, &read)? {
         let measurement = Measurement::of_replicates(
