@@ -65,7 +65,7 @@ export function paintLight(root, { source, followed, train, convention }, tell) 
     copyButton("copy-train-states", "the states", () => exported({ tables: [statesTable(names, states)] }), tell),
     followed.notes.length > 0 ? [make("h3", null, "What happens where"), make("ul", { id: "train-notes", class: "plain" }, followed.notes.map((note) => make("li", null, note.message)))] : null,
     make("h3", null, "The whole train"),
-    matrixTable("train-total", "Matrix of the whole train", followed.mueller, tell),
+    make("div", { class: "matrices" }, matrixTable("train-total", "Matrix of the whole train", followed.mueller, tell)),
   );
 }
 

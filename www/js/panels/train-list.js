@@ -44,7 +44,7 @@ export class TrainList {
       "div",
       null,
       this.list,
-      make("p", { class: "row adder" }, this.kind, " ", make("button", { type: "button", id: "train-add", onclick: () => this.add() }, "Add an element")),
+      make("p", { class: "row adder" }, this.kind, make("button", { type: "button", id: "train-add", onclick: () => this.add() }, "Add an element")),
     );
   }
 
@@ -67,7 +67,8 @@ export class TrainList {
       input.setAttribute("aria-invalid", String(kept !== undefined));
     }
     for (const [place, element] of this.errors) {
-      const [, wrong] = Object.entries(work.typed).find(([key]) => key.startsWith(`${place}.`)) ?? [];
+      // Those of an element's parameters stand beside them, not below all of them again.
+      const [, wrong] = place.includes(".") ? (Object.entries(work.typed).find(([key]) => key.startsWith(`${place}.`)) ?? []) : [];
       const said = wrong !== undefined ? this.wrongText(place, wrong) : refused?.at === place ? refused.message : "";
       element.textContent = said;
       element.hidden = said === "";

@@ -126,7 +126,8 @@ export class FitPanel {
       if (this.work && this.element.isConnected) this.show(this.work, this.request, true);
     }
     if (said) this.actions.tell(said);
-    document.getElementById("train-fit-start")?.focus({ preventScroll: true });
+    // Whoever went on to something else meanwhile keeps the keyboard there.
+    if (document.activeElement === document.body || this.element.contains(document.activeElement)) document.getElementById("train-fit-start")?.focus({ preventScroll: true });
   }
 
   /** @param {TrainFit} fit */
@@ -143,7 +144,7 @@ export class FitPanel {
         make(
           "table",
           { id: "train-fitted", class: "data" },
-          make("thead", null, make("tr", null, ["parameter", "value", "95 %", ""].map((title) => (title ? make("th", { scope: "col" }, title) : make("td", null))))),
+          make("thead", null, make("tr", null, ["parameter", "value", "interval", ""].map((title) => (title ? make("th", { scope: "col" }, title) : make("td", null))))),
           make(
             "tbody",
             null,
@@ -190,7 +191,7 @@ export class FitPanel {
             make("p", { class: "said mute" }, "Blue: measured is larger; orange: smaller."),
           ]
         : null,
-      fold("train-fitted-matrix", "The matrix of the fitted train", matrixTable("train-fitted-total", "Matrix of the fitted train", fit.mueller, this.actions.tell)),
+      fold("train-fitted-matrix", "The matrix of the fitted train", make("div", { class: "matrices" }, matrixTable("train-fitted-total", "Matrix of the fitted train", fit.mueller, this.actions.tell))),
     ];
   }
 }
@@ -307,7 +308,7 @@ export class RemovalPanel {
       make(
         "div",
         { class: "folds" },
-        fold("train-removed-matrix", "The matrix of the sample in numbers", matrixTable("train-removed-matrix-numbers", "The sample alone", mueller, tell)),
+        fold("train-removed-matrix", "The matrix of the sample in numbers", make("div", { class: "matrices" }, matrixTable("train-removed-matrix-numbers", "The sample alone", mueller, tell))),
         sigmaGrowth ? fold("train-growth", "Growth of σ, element by element", make("div", { class: "narrow" }, colouredCells("Growth of σ", sigmaGrowth, { full: Math.max(...sigmaGrowth), write: (value) => fixed(value, 2) })), make("p", { class: "fine" }, `σ over ${elementName(0, 0)} of the sample, over that of the measurement.`)) : null,
         samples.length > 0
           ? fold(
@@ -322,12 +323,12 @@ export class RemovalPanel {
                   sample.alpha !== null ? `, α = ${format({ value: sample.alpha, se: sample.alphaSe }).text}` : "",
                   `. Its distance from the matrix above is ${significant(sample.distance)} of ${elementName(0, 0)}.`,
                 ),
-                matrixTable(`train-sample-${sample.model}`, sample.model === "realizable" ? "Realizable sample" : "Pure sample with depolarization", sample.mueller, tell),
+                make("div", { class: "matrices" }, matrixTable(`train-sample-${sample.model}`, sample.model === "realizable" ? "Realizable sample" : "Pure sample with depolarization", sample.mueller, tell)),
               ]),
             )
           : null,
       ),
-      direct ? make("p", { id: "train-direct" }, "Undisturbed light can be at most ", make("b", { class: "number" }, format({ value: direct.weight, se: direct.se }).text), ` of ${elementName(0, 0)}${direct.reason ? ` (${direct.reason})` : ""}.`) : this.work?.direct ? make("p", { id: "train-direct", class: "mute" }, "How much undisturbed light there can be is not determined.") : null,
+      direct ? make("p", { id: "train-direct-weight" }, "Undisturbed light can be at most ", make("b", { class: "number" }, format({ value: direct.weight, se: direct.se }).text), ` of ${elementName(0, 0)}${direct.reason ? ` (${direct.reason})` : ""}.`) : this.work?.direct ? make("p", { id: "train-direct-weight", class: "mute" }, "How much undisturbed light there can be is not determined.") : null,
     );
   }
 

@@ -78,7 +78,7 @@ export class TrainPanel {
     this.list.show(work, refused);
     repaint(
       this.transfer,
-      isEmpty ? null : [copyButton("train-export", "the train as JSON", () => exportedTrain(work), tell), make("span", { class: "fine" }, "As JSON. Such a text pasted here replaces the train."), make("button", { type: "button", id: "train-example", class: "small", onclick: loadTrainExample }, "Load the invented example")],
+      isEmpty ? null : [make("span", { class: "fine" }, "The train as JSON"), copyButton("train-export", "the train as JSON", () => exportedTrain(work), tell), make("span", { class: "fine" }, "Such a text pasted here replaces it."), make("button", { type: "button", id: "train-example", class: "small", onclick: loadTrainExample }, "Load the invented example")],
     );
     this.lightSection.hidden = isEmpty;
     this.fit.element.hidden = isEmpty;
