@@ -554,6 +554,8 @@ export interface SphereRequest {
     elevationDeg: number;
     /** The label of the state whose marks are ringed. */
     chosen?: string | null;
+    /** States that light goes through, S1, S2 and S3 over S0: drawn in place of what the matrix does. */
+    path?: [number, number, number][];
     frame: Frame;
 }
 

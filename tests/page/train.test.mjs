@@ -148,6 +148,8 @@ test("by keyboard alone: add, set, move, duplicate, take out, delete, undo", asy
   // Without it, 90° and 45°: ½ · ½.
   await page.locator("#train-2-axisDeg-value").fill("45");
   near([(await states(page)).at(-1)?.[0] ?? NaN], [0.25], 1e-12);
+  // Unpolarized light, then V twice, then +45°, on the sphere.
+  await page.locator('#plot-train-path[aria-label*="0 at (0.000, 0.000, 0.000); 1 at (−1.000, "][aria-label*="3 at (0.000, 1.000, 0.000)"]').waitFor({ timeout: 5000 });
   for (const name of ["axis", "out of the beam", "deleting", "duplicating", "moving", "moving"]) {
     assert.match((await page.locator("#undo").getAttribute("title")) ?? "", new RegExp(name));
     await page.locator("#undo").click();

@@ -23,7 +23,7 @@ import { fullText } from "./format.js";
  */
 
 /** Air: leaves everything as it is. */
-const AIR = [1, 0, 0, 0, 0, 1, 0, 0, 0, 0, 1, 0, 0, 0, 0, 1];
+export const AIR = [1, 0, 0, 0, 0, 1, 0, 0, 0, 0, 1, 0, 0, 0, 0, 1];
 
 /** The blocks of a configuration that hold the task; `trainTyped` is the page's own. */
 export const TRAIN_BLOCKS = ["train", "source", "pre", "post", "removal", "trainTyped"];

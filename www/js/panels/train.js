@@ -1,9 +1,10 @@
 /** The Optical train task: follow the light, fit what is unknown, take known optics away. */
 import { choice, make, repaint } from "../dom.js";
 import { quick } from "../engine.js";
-import { fullText, readNumber } from "../format.js";
+import { fixed, fullText, readNumber } from "../format.js";
 import { copyButton } from "../matrix-view.js";
-import { SOURCES, TRAIN_BLOCKS, blocksOf, exportedTrain, isSame, trainIn, trainWorkOf } from "../train.js";
+import { DRAWINGS, Plot } from "../plots.js";
+import { AIR, SOURCES, TRAIN_BLOCKS, blocksOf, exportedTrain, isSame, trainIn, trainWorkOf } from "../train.js";
 import { paintLight } from "./train-light.js";
 import { TrainList } from "./train-list.js";
 import { FitPanel, RemovalPanel, measuredOf } from "./train-results.js";
@@ -40,7 +41,11 @@ export class TrainPanel {
     this.transfer = make("p", { class: "row tools" });
     this.source = this.sourceChoice();
     this.light = make("div", { id: "train-light" });
-    this.lightSection = make("section", { "aria-labelledby": "train-light-heading" }, make("h2", { id: "train-light-heading" }, "Follow the light"), this.source.element, this.light);
+    this.path = new Plot({ name: "train-path", drawing: /** @type {import("../plots.js").Drawing} */ (DRAWINGS["sphere"]), maxWidth: 380, title: "Path on the Poincaré sphere", failed: actions.failed, tell: actions.tell });
+    this.azimuth = this.slider("azimuth", -180, 180, "azimuthDeg");
+    this.elevation = this.slider("elevation", -90, 90, "elevationDeg");
+    this.path.canvas.after(make("div", { class: "turn", role: "group", "aria-label": "Turn the sphere of the path" }, this.azimuth.row, this.elevation.row));
+    this.lightSection = make("section", { "aria-labelledby": "train-light-heading" }, make("h2", { id: "train-light-heading" }, "Follow the light"), this.source.element, this.light, make("h3", null, "The path on the Poincaré sphere"), this.path.element);
     this.fit = new FitPanel(results);
     this.removal = new RemovalPanel(results);
     this.body = make("div", null, this.list.element, this.transfer, this.lightSection, this.fit.element, this.removal.element);
@@ -51,6 +56,7 @@ export class TrainPanel {
     if (!this.shown) return;
     this.shown = null;
     repaint(this.head);
+    this.path.show(null);
     this.fit.stop();
     this.removal.stop();
   }
@@ -85,8 +91,17 @@ export class TrainPanel {
     this.removal.element.hidden = isEmpty;
     if (isEmpty) return;
     this.source.show(work, refused?.at === "source" ? refused.message : "");
-    if (followed && source) paintLight(this.light, { source, followed, train: work.train, convention: all.measurement.convention }, tell);
-    else repaint(this.light, make("p", { class: "wrong" }, `The light cannot be followed. ${refused?.message ?? ""}`));
+    this.azimuth.set(shown.view.azimuthDeg);
+    this.elevation.set(shown.view.elevationDeg);
+    if (followed && source) {
+      paintLight(this.light, { source, followed, train: work.train, convention: all.measurement.convention }, tell);
+      const { azimuthDeg, elevationDeg } = shown.view;
+      const path = pathOf(work.train, [source, ...followed.states]);
+      this.path.show({ mueller: AIR, convention: all.measurement.convention, azimuthDeg, elevationDeg, path });
+    } else {
+      this.path.show(null);
+      repaint(this.light, make("p", { class: "wrong" }, `The light cannot be followed. ${refused?.message ?? ""}`));
+    }
     const measured = stale ? null : request;
     this.fit.show(work, measured, followed !== null);
     this.removal.show(work, followed ? measured : null, all.measurement.label);
@@ -108,6 +123,27 @@ export class TrainPanel {
       const inner = parameter ? `.${parameter}` : /^train\[\d+\]\.measurement/.test(field) ? ".measurement" : "";
       return { followed: null, source: null, refused: { at: element === undefined ? field : `${element}${inner}`, message } };
     }
+  }
+
+  /**
+   * @param {string} word
+   * @param {number} low
+   * @param {number} high
+   * @param {"azimuthDeg" | "elevationDeg"} field
+   */
+  slider(word, low, high, field) {
+    const id = `train-turn-${word}`;
+    const input = make("input", { type: "range", id, min: low, max: high, step: 1 });
+    const output = make("span", { class: "number degrees" });
+    input.addEventListener("input", () => this.actions.view({ [field]: Number(input.value) }));
+    return {
+      row: make("div", { class: "slider" }, make("label", { for: id }, word), input, output),
+      /** @param {number} value */
+      set(value) {
+        input.value = String(Math.round(value));
+        output.textContent = `${fixed(value, 0)}°`;
+      },
+    };
   }
 
   sourceChoice() {
@@ -188,6 +224,18 @@ export class TrainPanel {
   change(name, work, merge) {
     this.actions.change(name, plainBlocks(work), merge);
   }
+}
+
+/**
+ * The states that have light, relative to it, up to where none is left. An element out of
+ * the beam repeats its place, so that the numbers stay those of the list.
+ * @param {import("../train.js").TrainElement[]} train
+ * @param {{ stokes: number[], degree: number | null }[]} states
+ */
+function pathOf(train, states) {
+  const end = states.findIndex(({ degree }) => degree === null);
+  const lit = end < 0 ? states.slice(0, train.length + 1) : states.slice(0, end);
+  return lit.map(({ stokes: [s0 = 1, s1 = 0, s2 = 0, s3 = 0] }) => [s1 / s0, s2 / s0, s3 / s0]);
 }
 
 /**
