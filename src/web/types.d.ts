@@ -379,6 +379,8 @@ export interface BootstrapRequest extends Omit<FitRequest, "models"> {
 export interface BootstrapSamples {
     samples: { name: string; unit: FitParameter["unit"]; values: (number | null)[] }[];
     chiSquare: number[];
+}
+
 export type ElementKind =
     | "linearDiattenuator"
     | "linearRetarder"
