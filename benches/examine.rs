@@ -8,6 +8,8 @@ use halfshade::examine::{Simulation, examine, examine_with};
 use halfshade::fit::{Fitter, Model, Side};
 use halfshade::mueller::Mueller;
 use halfshade::noise::{Measurement, Noise};
+use halfshade::state::Stokes;
+use halfshade::train::{Element, FitOptions, Kind, Parameter, Train, fit_train, follow};
 
 /// An invented kelp film, not realizable but within its noise.
 const FILM: [[f64; 4]; 4] = [
@@ -86,5 +88,62 @@ fn fitting(criterion: &mut Criterion) {
     }
 }
 
-criterion_group!(benches, examining, fitting);
+fn trains(criterion: &mut Criterion) {
+    let part = |kind: Kind, values: &[f64], free: bool| {
+        let parameter = if free {
+            Parameter::free
+        } else {
+            Parameter::fixed
+        };
+        Element::new(kind, values.iter().map(|&value| parameter(value)).collect())
+    };
+    let long: Result<Vec<Element>> = (0..50)
+        .map(|k| {
+            let angle = 0.1 * f64::from(k);
+            match k % 3 {
+                0 => part(Kind::LinearRetarder, &[1.0, angle], false),
+                1 => part(
+                    Kind::EllipticalDiattenuator,
+                    &[0.95, 0.1, angle, 0.2],
+                    false,
+                ),
+                _ => part(Kind::IsotropicDepolarizer, &[0.01], false),
+            }
+        })
+        .collect();
+    // Six free parameters; the film is what they are fitted to.
+    let short = |away: f64| {
+        let film = part(
+            Kind::AlignedDiattenuatingRetarder,
+            &[0.95 - away, 0.03 + away, 1.0 + away, 0.6 - away],
+            true,
+        );
+        let turn = part(Kind::CircularRetarder, &[0.1 + away], true);
+        let haze = part(Kind::IsotropicDepolarizer, &[0.05 + away], true);
+        [film, turn, haze].into_iter().collect::<Result<Vec<_>>>()
+    };
+    let source = Stokes::new([1.0, 0.5, 0.0, 0.0]);
+    let (Ok(source), Ok(long), Ok(start)) = (
+        source,
+        long.and_then(Train::new),
+        short(0.1).and_then(Train::new),
+    ) else {
+        return;
+    };
+    criterion.bench_function("follow, 50 elements", |bench| {
+        bench.iter(|| follow(black_box(&source), black_box(&long)));
+    });
+    let Some(noisy) = film(Noise::Uniform { sigma: 0.004 }) else {
+        return;
+    };
+    let options = FitOptions {
+        seed: 1,
+        starts: None,
+    };
+    criterion.bench_function("train fit, six parameters, 60 starts", |bench| {
+        bench.iter(|| fit_train(black_box(&noisy), black_box(&start), options));
+    });
+}
+
+criterion_group!(benches, examining, fitting, trains);
 criterion_main!(benches);

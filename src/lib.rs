@@ -48,6 +48,8 @@ pub mod fit;
 
 pub mod examine;
 
+pub mod train;
+
 pub mod text;
 
 pub mod link;

@@ -38,3 +38,10 @@ pub const SINGULAR_COVARIANCE: f64 = 1e-12;
 /// Where the weighted nearest matrix has settled: `tr(H Z)` over the larger of one and
 /// the squared distance.
 pub const COMPLEMENTARITY: f64 = 1e-11;
+
+/// Singular values this far below the largest are zero: the matrix has no inverse.
+pub const SINGULAR: f64 = 1e-12;
+
+/// Neighbours whose exchange changes the product by less, relative to the sizes of both,
+/// may stand in either order.
+pub const COMMUTING: f64 = 1e-12;

@@ -123,3 +123,42 @@ fn logarithm_says_why_it_does_not_exist() {
     assert_eq!(code([1.0, 1e-10, 1.0, 1.0]), "singular");
     assert_eq!(code([0.0; 4]), "singular");
 }
+
+proptest! {
+    /// `U S Vᵀ` is the matrix, V is orthogonal, the inverse is one (definitions); also of
+    /// nearly singular matrices.
+    #[test]
+    fn the_decomposition_of_a_square_matrix(entries in prop::array::uniform16(-1.0..1.0_f64), small in -14.0..0.0_f64) {
+        let mut matrix = nalgebra::Matrix4::from_row_slice(&entries);
+        let last = matrix.column(0) * 0.5 + matrix.column(3) * 10_f64.powf(small);
+        matrix.set_column(3, &last);
+        let found = halfshade::linalg::svd4(&matrix).unwrap();
+        let mut sum = nalgebra::Matrix4::zeros();
+        for k in 0..4 {
+            sum += found.left[k] * found.right[k].transpose() * found.values[k];
+            for j in 0..4 {
+                let expected = f64::from(u8::from(j == k));
+                prop_assert!((found.right[k].dot(&found.right[j]) - expected).abs() < 1e-14);
+            }
+        }
+        prop_assert!((sum - matrix).amax() < 1e-14);
+        prop_assert!(found.values.is_sorted_by(|a, b| a >= b));
+        if let Some(inverse) = found.inverse(1e-12) {
+            let condition = found.values[0] / found.values[3];
+            prop_assert!((inverse * matrix - nalgebra::Matrix4::identity()).amax() < 1e-14 * condition + 1e-13);
+        }
+    }
+
+    /// The damped step solves `(AᵀA + λ I) x = -Aᵀ r` (definition), for more rows than
+    /// columns and fewer.
+    #[test]
+    fn the_damped_step(entries in prop::collection::vec(-1.0..1.0_f64, 40), residuals in prop::collection::vec(-1.0..1.0_f64, 8), wide in any::<bool>(), damping in 0.01..1.0_f64) {
+        let (rows, columns) = if wide { (5, 8) } else { (8, 5) };
+        let matrix = nalgebra::DMatrix::from_row_slice(rows, columns, &entries);
+        let right = nalgebra::DVector::from_row_slice(&residuals[..rows]);
+        let found = halfshade::linalg::column_svd(&matrix).unwrap();
+        let step = found.damped_step(&right, damping);
+        let normal = matrix.transpose() * &matrix + nalgebra::DMatrix::identity(columns, columns) * damping;
+        prop_assert!((normal * step + matrix.transpose() * right).amax() < 1e-13);
+    }
+}

@@ -119,22 +119,93 @@ fn the_golden_link_is_read() {
     assert_eq!(decode(fragment).unwrap(), expected);
 }
 
+/// The choice of a model is read strictly.
+#[test]
+fn a_chosen_model_is_read() {
+    let mut configuration = configuration();
+    configuration["fit"] = json!({ "model": "pureIsotropic", "side": "before" });
+    let back = decode(&encode(&configuration).unwrap()).unwrap();
+    assert_eq!(back.to_string(), configuration.to_string());
+    for (wrong, field) in [
+        (json!({ "model": 3 }), "fit.model"),
+        (json!({ "side": "left" }), "fit.side"),
+        (json!({ "other": 1 }), "fit.other"),
+        (json!([1]), "fit"),
+    ] {
+        configuration["fit"] = wrong;
+        let at = encode(&configuration).unwrap_err().at;
+        assert_eq!(at, Some(Place::Field(field.to_owned())));
+    }
+}
+
 #[test]
 fn blocks_of_later_versions_survive() {
     let mut configuration = configuration();
-    for later in [
-        "train",
-        "fit",
-        "settings",
-        "readings",
-        "instrument",
-        "neverHeardOf",
-    ] {
+    for later in ["settings", "readings", "instrument", "neverHeardOf"] {
         assert!(!known_blocks().contains(&later));
         configuration[later] = json!({ "deep": [1, { "er": [null, true, "text", -0.0, 1e-300] }] });
     }
     let back = decode(&encode(&configuration).unwrap()).unwrap();
     assert_eq!(back.to_string(), configuration.to_string());
+}
+
+/// A train that is being written may lack values; names that no element has are refused.
+#[test]
+fn trains_are_read_strictly() {
+    let matrix: Vec<f64> = vec![0.5; 16];
+    let plate = json!({ "kind": "linearRetarder", "label": "plate", "disabled": true, "parameters": {
+        "retardanceDeg": { "value": 90, "free": true, "low": 0, "high": null },
+        "axisDeg": { "tie": { "element": 0, "name": "retardanceDeg", "factor": 0.5, "offset": -0.0 } },
+    } });
+    let window =
+        json!({ "kind": "measured", "measurement": { "mueller": matrix, "normalised": true } });
+    let fine = json!({ "v": 1, "source": [1, 0, 0.5, 0], "train": [plate, window, { "kind": "rotator" }],
+                       "pre": { "mueller": matrix }, "post": [window],
+                       "removal": { "reflection": true, "direct": matrix } });
+    let back = decode(&encode(&fine).unwrap()).unwrap();
+    assert_eq!(back.to_string(), fine.to_string());
+    let refused =
+        |block: &str, value: Value| refused_configuration(&json!({ "v": 1, block: value }));
+    let at = |code, field: &str| (code, Some(field.to_owned()));
+    assert_eq!(refused("train", json!({})), at("bad-request", "train"));
+    assert_eq!(
+        refused("train", json!([{}])),
+        at("missing-field", "train[0].kind")
+    );
+    assert_eq!(
+        refused("train", json!([{ "kind": "lens" }])),
+        at("unknown-choice", "train[0].kind")
+    );
+    assert_eq!(
+        refused(
+            "train",
+            json!([{ "kind": "rotator", "parameters": { "axisDeg": {} } }])
+        ),
+        at("unknown-field", "train[0].parameters.axisDeg")
+    );
+    assert_eq!(
+        refused(
+            "post",
+            json!([{ "kind": "rotator", "parameters": { "angleDeg": { "value": "1" } } }])
+        ),
+        at("bad-request", "post[0].parameters.angleDeg.value")
+    );
+    assert_eq!(
+        refused("pre", json!({ "mueller": [1] })),
+        at("bad-request", "pre.mueller")
+    );
+    assert_eq!(
+        refused("source", json!([1, 0])),
+        at("bad-request", "source")
+    );
+    assert_eq!(
+        refused("removal", json!({ "mirror": true })),
+        at("unknown-field", "removal.mirror")
+    );
+    let long = json!([{ "kind": "rotator", "label": "x".repeat(81) }]);
+    assert_eq!(refused("train", long), at("too-large", "train[0].label"));
+    let many = Value::Array(vec![json!({ "kind": "rotator" }); 501]);
+    assert_eq!(refused("train", many), at("bad-request", "train"));
 }
 
 #[test]

@@ -68,6 +68,7 @@ fn sphere(mueller: [f64; 16], azimuth: f64, elevation: f64) -> SpherePlot {
         view: View { azimuth, elevation },
         labels: labels(),
         chosen: None,
+        path: Vec::new(),
     }
 }
 
@@ -181,6 +182,39 @@ fn check_apart(svg: &str, wanted: impl Fn(&str) -> bool) {
             assert!(!meet, "{a} lies over {b}");
         }
     }
+}
+
+// Source: derived. The view from azimuth 0 and elevation 0 has S2 to the right and S3 up.
+#[test]
+fn a_path_is_drawn_in_place_of_the_standard_states() {
+    let identity = std::array::from_fn(|k| if k % 5 == 0 { 1.0 } else { 0.0 });
+    let mut plot = sphere(identity, 0.0, 0.0);
+    let states = [[0.0, 1.0, 0.0], [0.0, 0.0, 1.0], [0.0, 0.0, 0.5]];
+    plot.path = states.to_vec();
+    let words = sphere_description(&plot).expect("words");
+    assert!(words.contains("0 at (0.000, 1.000, 0.000)"), "{words}");
+    assert!(words.contains("2 at (0.000, 0.000, 0.500)"), "{words}");
+    let size = surface(300.0, sphere_height(300.0));
+    let svg = sphere_svg(&plot, &size, &Theme::light(), "path", &words).expect("a plot");
+    check_document(&svg, "path", &words);
+    let document = Document::parse(&svg).expect("well-formed XML");
+    let names: Vec<String> = nodes(&document, "text").map(|n| content(&n)).collect();
+    for name in ["0", "1", "2"] {
+        assert!(names.iter().any(|text| text == name), "{name} in {names:?}");
+    }
+    assert!(!names.iter().any(|text| text == "output"), "{names:?}");
+    // The ball is 130 pixels in the middle of 300: to the right, up, half way up.
+    let mut drawn = circles(&document, 3.6, false);
+    drawn.extend(circles(&document, 4.0, true));
+    let places = [(280.0, 150.0), (150.0, 20.0), (150.0, 85.0)];
+    assert_eq!(drawn.len(), places.len());
+    for (mark, place) in drawn.iter().zip(places) {
+        let away = (mark.0 - place.0).hypot(mark.1 - place.1);
+        assert!(away < 0.1, "{mark:?}, not {place:?}");
+    }
+    plot.path = vec![[f64::NAN, 0.0, 0.0]];
+    let error = sphere_svg(&plot, &size, &Theme::light(), "path", "").expect_err("NaN");
+    assert_eq!(error.code, "not-finite");
 }
 
 #[test]

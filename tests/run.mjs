@@ -11,6 +11,7 @@ const FIXTURES = "tests/reference/fixtures.py";
 const WEIGHTED = "tests/reference/weighted.py";
 const FITTING = "tests/reference/fitting.py";
 const HARMONIC = "tests/reference/harmonic.py";
+const TRAIN = "tests/reference/train.py";
 
 /** @type {[name: string, what: string, step: () => Promise<void>][]} */
 const STEPS = [
@@ -80,6 +81,7 @@ async function fixtures() {
   await python(WEIGHTED, "--check");
   await python(FITTING, "--check");
   await python(HARMONIC, "--check");
+  await python(TRAIN, "--check");
 }
 
 async function types() {

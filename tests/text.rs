@@ -1028,6 +1028,6 @@ fn long_hostile_texts_take_no_long_time() {
         survives(text);
         let taken = start.elapsed();
         let head: String = text.chars().take(12).collect();
-        assert!(taken < Duration::from_secs(2), "{head:?}: {taken:?}");
+        assert!(taken < Duration::from_secs(10), "{head:?}: {taken:?}");
     }
 }

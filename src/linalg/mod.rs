@@ -3,14 +3,18 @@
 //! Only this folder calls nalgebra's iterations: they do not end on a NaN, come
 //! unsorted, and report failure as `None`.
 
+mod columns;
 mod dynamic;
 mod eigen;
+mod inverse;
 mod logarithm;
 mod svd;
 mod symmetric;
 
+pub use columns::{ColumnSvd, column_svd};
 pub use dynamic::{RightSingular, right_singular};
 pub use eigen::{HermitianEigen, hermitian_eigen};
+pub use inverse::{Svd4, svd4};
 pub use logarithm::principal_logarithm;
 pub use svd::{Svd3, svd3};
 pub use symmetric::{

@@ -3,6 +3,7 @@ use serde_json::Value;
 use super::envelope::{open, seal};
 use crate::error::{Error, Result};
 use crate::json::Fields;
+use crate::train::{Definition, Kind, Train};
 
 /// The version of the configuration that this engine writes: its `v`.
 pub const SCHEMA_VERSION: u32 = 1;
@@ -33,6 +34,11 @@ pub fn known_blocks() -> &'static [&'static str] {
         "dataFile",
         "examine",
         "fit",
+        "train",
+        "source",
+        "pre",
+        "post",
+        "removal",
         "view",
     ]
 }
@@ -169,6 +175,7 @@ fn check(configuration: &Value) -> Result<()> {
         examine.whole("seed")?;
     }
     fit(&blocks)?;
+    optics(&blocks)?;
     if let Some(view) = blocks.get("view") {
         let names: Vec<&str> = view
             .as_object()
@@ -185,6 +192,78 @@ fn check(configuration: &Value) -> Result<()> {
     for name in names {
         if let Some(block) = blocks.get(name) {
             bounded(block, name)?;
+        }
+    }
+    Ok(())
+}
+
+/// Trains, what stands around a sample, and a source.
+fn optics(blocks: &Fields) -> Result<()> {
+    blocks.numbers::<4>("source")?;
+    train(blocks, "train")?;
+    for side in ["pre", "post"] {
+        match blocks.get(side) {
+            Some(Value::Array(_)) => train(blocks, side)?,
+            _ => measurement(blocks, side)?,
+        }
+    }
+    if let Some(removal) = blocks.object("removal", &["reflection", "direct"])? {
+        removal.flag("reflection")?;
+        removal.numbers::<16>("direct")?;
+    }
+    Ok(())
+}
+
+/// A train as it is being written: values may be missing, names may not be foreign.
+fn train(blocks: &Fields, name: &str) -> Result<()> {
+    let Some(block) = blocks.get(name) else {
+        return Ok(());
+    };
+    let wrong = |sentence: &str| Err(blocks.error("bad-request", name, sentence));
+    let Some(elements) = block.as_array() else {
+        return wrong("A train is a list of elements.");
+    };
+    if elements.len() > Train::MOST_ELEMENTS {
+        return wrong("This train has too many elements.");
+    }
+    for (k, element) in elements.iter().enumerate() {
+        let known = ["kind", "label", "disabled", "parameters", "measurement"];
+        let element = Fields::of(element, &format!("{name}[{k}]"), &known)?;
+        let kinds = Kind::ALL.map(|kind| (kind.name(), kind));
+        let kind = element.required("kind", element.choice("kind", &kinds)?)?;
+        element.flag("disabled")?;
+        if element
+            .text("label")?
+            .is_some_and(|text| text.chars().count() > LONGEST_LABEL)
+        {
+            return Err(element.error(
+                "too-large",
+                "label",
+                "This must be a text of at most 80 characters.",
+            ));
+        }
+        measurement(&element, "measurement")?;
+        let names: Vec<String> = kind.definitions().iter().map(name_with_unit).collect();
+        let names: Vec<&str> = names.iter().map(String::as_str).collect();
+        let Some(parameters) = element.object("parameters", &names)? else {
+            continue;
+        };
+        for parameter in names {
+            let known = ["value", "free", "low", "high", "tie"];
+            let Some(fields) = parameters.object(parameter, &known)? else {
+                continue;
+            };
+            for number in ["value", "low", "high"] {
+                fields.number(number)?;
+            }
+            fields.flag("free")?;
+            let tie = ["element", "name", "factor", "offset"];
+            if let Some(tie) = fields.object("tie", &tie)? {
+                tie.whole("element")?;
+                tie.text("name")?;
+                tie.number("factor")?;
+                tie.number("offset")?;
+            }
         }
     }
     Ok(())
@@ -423,4 +502,14 @@ fn bounded(block: &Value, name: &str) -> Result<()> {
         }
     }
     Ok(())
+}
+
+/// The name of a parameter in requests and configurations.
+pub(crate) fn name_with_unit(definition: &Definition) -> String {
+    let unit = if definition.quantity.is_angle() {
+        "Deg"
+    } else {
+        ""
+    };
+    format!("{}{unit}", definition.name)
 }

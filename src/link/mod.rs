@@ -3,5 +3,6 @@
 mod configuration;
 mod envelope;
 
+pub(crate) use configuration::name_with_unit;
 pub use configuration::{SCHEMA_VERSION, decode, encode, known_blocks, read_file, write_file};
 pub use envelope::{open, seal};

@@ -16,6 +16,7 @@ use crate::tolerance;
 pub struct Interface {
     /// Complex index behind it over the index before it, `n - ik`.
     ratio: Complex64,
+    sine: f64,
     cosine: f64,
     /// `n2 cosθt / n1`.
     behind: Complex64,
@@ -60,6 +61,7 @@ impl Interface {
         let root = square.sqrt();
         Ok(Self {
             ratio,
+            sine,
             cosine,
             // A wave behind the interface fades away from it: Im ≤ 0.
             behind: if root.im > 0.0 { root.conj() } else { root },
@@ -101,6 +103,59 @@ impl Interface {
         let along = twice * self.ratio / (self.ratio * self.ratio * self.cosine + self.behind);
         let power = (self.behind / self.cosine).sqrt();
         Ok(diagonal(along * power, across * power))
+    }
+
+    /// How [`Interface::reflection`] changes with the index ratio and the angle of
+    /// incidence, to first order.
+    pub(crate) fn reflection_change(&self, ratio: Complex64, incidence: f64) -> Jones {
+        let (cosine, behind) = self.changes(ratio, incidence);
+        let (along, along_change) = self.along(ratio, cosine);
+        let quotient = |value: Complex64, change: Complex64| {
+            2.0 * (self.behind * change - value * behind) / (value + self.behind).powi(2)
+        };
+        diagonal(
+            quotient(along, along_change),
+            quotient(self.cosine.into(), cosine.into()),
+        )
+    }
+
+    /// How [`Interface::transmission`] changes, to first order.
+    ///
+    /// # Errors
+    /// Those of [`Interface::transmission`].
+    pub(crate) fn transmission_change(&self, ratio: Complex64, incidence: f64) -> Result<Jones> {
+        let [p, _, _, s] = self.transmission()?.row_major();
+        let (cosine, behind) = self.changes(ratio, incidence);
+        let (along, along_change) = self.along(ratio, cosine);
+        let power = 0.5 * (cosine / self.cosine + behind / self.guarded());
+        let relative =
+            |value: Complex64, change: Complex64| power - (change + behind) / (value + self.behind);
+        Ok(diagonal(
+            p * (ratio / self.ratio + relative(along, along_change)),
+            s * relative(self.cosine.into(), cosine.into()),
+        ))
+    }
+
+    /// Of `cosθ` and of [`Interface::behind`].
+    fn changes(&self, ratio: Complex64, incidence: f64) -> (f64, Complex64) {
+        let behind = self.ratio * ratio - self.sine * self.cosine * incidence;
+        (-self.sine * incidence, behind / self.guarded())
+    }
+
+    /// `n² cosθ` and its change.
+    fn along(&self, ratio: Complex64, cosine: f64) -> (Complex64, Complex64) {
+        let square = self.ratio * self.ratio;
+        let change = 2.0 * self.ratio * ratio * self.cosine + square * cosine;
+        (square * self.cosine, change)
+    }
+
+    /// At the critical angle itself the derivative is infinite; a step beside it is not.
+    fn guarded(&self) -> Complex64 {
+        if self.behind.norm() < tolerance::NOT_DETERMINED {
+            Complex64::from(tolerance::NOT_DETERMINED)
+        } else {
+            self.behind
+        }
     }
 }
 

@@ -75,6 +75,14 @@ impl Jones {
         }))
     }
 
+    /// How its Mueller matrix changes with it, to first order.
+    pub(crate) fn mueller_change(&self, change: &Self) -> Matrix4<f64> {
+        Matrix4::from_fn(|i, j| {
+            let product = PAULI[i].matrix() * change.0 * PAULI[j].matrix() * self.0.adjoint();
+            product.trace().re
+        })
+    }
+
     /// The same element with the largest entry real and positive: the global
     /// phase means nothing.
     #[must_use]

@@ -27,6 +27,10 @@ pub struct SpherePlot {
     /// The state that is being read, counted as the labels: both of its marks are
     /// ringed. A number beyond them rings none.
     pub chosen: Option<usize>,
+    /// S1, S2 and S3 over S0 of the states that light goes through, in their order.
+    /// Where there are any, they are drawn in place of the standard states and of the
+    /// image of all inputs.
+    pub path: Vec<[f64; 3]>,
 }
 
 /// Where the marks of one standard state are on a picture, CSS pixels from the upper
@@ -94,6 +98,10 @@ pub fn draw_sphere<DB: DrawingBackend>(
     pen.ground(theme.background)?;
     let scene = Scene::new((pen.width, pen.height), plot.view, &map);
     draw_ball(&pen, &scene, theme)?;
+    if !plot.path.is_empty() {
+        draw_path(&pen, &scene, plot, theme)?;
+        return draw_view(&pen, &scene, theme);
+    }
     draw_image(&pen, &scene, &map, theme)?;
     draw_states(&pen, &scene, plot, &map, theme)?;
     draw_legend(&pen, &scene, theme)
@@ -143,6 +151,9 @@ pub fn sphere_marks(plot: &SpherePlot, surface: &Surface) -> Result<[SphereMark;
 /// `not-finite` and `no-intensity` as [`draw_sphere`].
 pub fn sphere_description(plot: &SpherePlot) -> Result<String> {
     let map = Map::new(plot)?;
+    if !plot.path.is_empty() {
+        return Ok(path_description(&plot.path));
+    }
     let mut smallest = f64::INFINITY;
     let mut largest = f64::NEG_INFINITY;
     let mut parts = Vec::new();
@@ -171,6 +182,21 @@ pub fn sphere_description(plot: &SpherePlot) -> Result<String> {
         "Poincaré sphere, S1, S2 and S3 of the outputs divided by S0. {}.{degrees}",
         parts.join("; ")
     ))
+}
+
+fn path_description(path: &[[f64; 3]]) -> String {
+    let states: Vec<String> = path
+        .iter()
+        .enumerate()
+        .map(|(k, state)| {
+            let [a, b, c] = state.map(readable);
+            format!("{k} at ({a}, {b}, {c})")
+        })
+        .collect();
+    format!(
+        "Path on the Poincaré sphere, S1, S2 and S3 divided by S0, from the source, 0: {}.",
+        states.join("; ")
+    )
 }
 
 /// The six standard inputs, in the order of the labels.
@@ -219,6 +245,9 @@ impl Map {
             if !angle.is_finite() {
                 return Err(not_finite().at_field(field));
             }
+        }
+        if let Some(k) = plot.path.iter().position(|&state| !norm(state).is_finite()) {
+            return Err(not_finite().at_field(format!("path[{k}]")));
         }
         let intensity = plot.mueller[0];
         if intensity <= 0.0 {
@@ -571,6 +600,49 @@ fn draw_states(
     draw_labels(pen, scene, &plot.labels, &inputs, &places, theme)
 }
 
+/// The states that light goes through, joined in their order and counted from the source.
+fn draw_path(pen: &Pen<'_>, scene: &Scene, plot: &SpherePlot, theme: &Theme) -> Result<()> {
+    let axes = STANDARD.map(|state| scene.place(state));
+    let places: Vec<(Point, f64)> = plot.path.iter().map(|&state| scene.place(state)).collect();
+    let points: Vec<Point> = places.iter().map(|place| place.0).collect();
+    draw_labels(pen, scene, &plot.labels, &axes, &points, theme)?;
+    if points.len() > 1 {
+        pen.line(&points, ink(theme.accent), 1.6)?;
+    }
+    for (k, &((x, y), near)) in places.iter().enumerate() {
+        let strength = if near < -1e-9 { 0.62 } else { 1.0 };
+        pen.disc((x, y), 4.6, ink(theme.panel))?;
+        if k == 0 {
+            pen.ring((x, y), 3.6, faint(theme.ink, strength), 1.6)?;
+        } else {
+            pen.disc((x, y), 4.0, faint(theme.accent, strength))?;
+        }
+    }
+    // Where light comes back to a place, the numbers stand beside each other there.
+    let mut named: Vec<(Point, Vec<String>)> = Vec::new();
+    for (k, &(x, y)) in points.iter().enumerate() {
+        match named
+            .iter_mut()
+            .find(|(at, _)| (at.0 - x).hypot(at.1 - y) < LABEL)
+        {
+            Some((_, names)) => names.push(k.to_string()),
+            None => named.push(((x, y), vec![k.to_string()])),
+        }
+    }
+    for ((x, y), names) in &named {
+        let text = names.join(", ");
+        // Towards the middle, where there is room.
+        let shift = if *x > scene.centre.0 {
+            -8.0 - pen.text_width(&text, LABEL)?
+        } else {
+            8.0
+        };
+        let place = (x + shift, y - 9.0);
+        pen.text(&text, place, LABEL, ink(theme.ink), Align::Start)?;
+    }
+    Ok(())
+}
+
 /// A ring about each mark of the state that is being read, and the line between them.
 fn draw_chosen(pen: &Pen<'_>, input: Point, output: Option<Point>, theme: &Theme) -> Result<()> {
     let colour = ink(theme.ink);
@@ -696,6 +768,13 @@ fn draw_legend(pen: &Pen<'_>, scene: &Scene, theme: &Theme) -> Result<()> {
         pen.text(names[k], (x + mark, y), LABEL, mute, Align::Start)?;
         x += mark + widths[k] + gap;
     }
+    draw_view(pen, scene, theme)
+}
+
+/// From where the sphere is seen, in words below it.
+fn draw_view(pen: &Pen<'_>, scene: &Scene, theme: &Theme) -> Result<()> {
+    let y = pen.height - LEGEND + 12.0;
+    let mute = ink(theme.mute);
     let azimuth = scene.view.azimuth.to_degrees().rem_euclid(360.0).round();
     let azimuth = if azimuth > 180.0 {
         azimuth - 360.0

@@ -42,3 +42,13 @@ pub fn f_tail(value: f64, numerator: f64, denominator: f64) -> Option<f64> {
     let distribution = FisherSnedecor::new(numerator, denominator).ok()?;
     Some(distribution.sf(value.max(0.0)).clamp(0.0, 1.0))
 }
+
+/// Half of the width of a 95 % interval in standard errors: Student's t with these degrees
+/// of freedom, the normal one for `None`.
+#[must_use]
+pub fn student_quantile(freedom: Option<f64>) -> f64 {
+    const NORMAL: f64 = 1.959_963_984_540_054;
+    freedom
+        .and_then(|freedom| StudentsT::new(0.0, 1.0, freedom).ok())
+        .map_or(NORMAL, |distribution| distribution.inverse_cdf(0.975))
+}

@@ -65,8 +65,9 @@ impl From<&Place> for PlaceTwin {
     }
 }
 
+/// Something to tell the person.
 #[derive(Serialize)]
-struct NoteTwin {
+pub struct NoteTwin {
     severity: &'static str,
     code: &'static str,
     message: String,

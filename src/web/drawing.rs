@@ -93,6 +93,7 @@ fn sphere_request(request: &JsValue) -> EngineResult<(SpherePlot, Frame)> {
         "azimuthDeg",
         "elevationDeg",
         "chosen",
+        "path",
         "frame",
     ];
     let fields = Fields::of(&request, "", &known)?;
@@ -118,8 +119,27 @@ fn sphere_request(request: &JsValue) -> EngineResult<(SpherePlot, Frame)> {
         },
         labels,
         chosen,
+        path: path_of(&fields)?,
     };
     Ok((plot, Frame::of(&fields, plot::sphere_height)?))
+}
+
+/// States in the person's convention, in which the sphere is shown.
+fn path_of(fields: &Fields) -> EngineResult<Vec<[f64; 3]>> {
+    let states = items(fields, "path")?;
+    let wrong = |k: usize| {
+        let sentence = "A state on the sphere is three numbers.";
+        fields.error("bad-request", &format!("path[{k}]"), sentence)
+    };
+    states
+        .iter()
+        .enumerate()
+        .map(|(k, state)| {
+            let parts = state.as_array().ok_or_else(|| wrong(k))?;
+            let parts: Vec<f64> = parts.iter().filter_map(Value::as_f64).collect();
+            <[f64; 3]>::try_from(parts).map_err(|_| wrong(k))
+        })
+        .collect()
 }
 
 fn ellipses_request(request: &JsValue) -> EngineResult<(EllipsesPlot, Frame)> {
@@ -271,17 +291,18 @@ struct MappedTwin {
     output: StateTwin,
 }
 
+/// A state in the person's convention.
 #[derive(Serialize)]
 #[serde(rename_all = "camelCase")]
-struct StateTwin {
-    stokes: [f64; 4],
-    degree: Option<f64>,
-    azimuth_deg: Option<f64>,
-    ellipticity_deg: Option<f64>,
+pub struct StateTwin {
+    pub stokes: [f64; 4],
+    pub degree: Option<f64>,
+    pub azimuth_deg: Option<f64>,
+    pub ellipticity_deg: Option<f64>,
 }
 
 impl StateTwin {
-    fn new(state: &Stokes, convention: &Convention) -> Self {
+    pub fn new(state: &Stokes, convention: &Convention) -> Self {
         let ellipse = state.ellipse();
         Self {
             stokes: convention.stokes(state).components(),

@@ -9,6 +9,7 @@ mod drawing;
 mod examination;
 mod fitting;
 mod request;
+mod train;
 mod value;
 
 use serde::Serialize;

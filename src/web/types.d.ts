@@ -381,6 +381,178 @@ export interface BootstrapSamples {
     chiSquare: number[];
 }
 
+export type ElementKind =
+    | "linearDiattenuator"
+    | "linearRetarder"
+    | "circularRetarder"
+    | "ellipticalRetarder"
+    | "ellipticalDiattenuator"
+    | "alignedDiattenuatingRetarder"
+    | "rotator"
+    | "isotropicReflector"
+    | "fresnelReflection"
+    | "fresnelTransmission"
+    | "isotropicDepolarizer"
+    | "diagonalDepolarizer"
+    | "measured";
+
+/** Fixed unless it is free or tied. */
+export interface TrainParameter {
+    /** Also the start of a free one; needed unless it is tied. */
+    value?: number;
+    free?: boolean;
+    /** Bounds of a free one. */
+    low?: number | null;
+    high?: number | null;
+    /** It is `factor` times the other one plus `offset`, both as they are written here. */
+    tie?: {
+        /** Position in the train, from 0. */
+        element: number;
+        name: string;
+        /** Default 1. */
+        factor?: number;
+        /** Default 0. */
+        offset?: number;
+    } | null;
+}
+
+/** An element of a train; light meets the elements in list order. */
+export interface TrainElement {
+    kind: ElementKind;
+    label?: string;
+    /** Out of the beam. */
+    disabled?: boolean;
+    /** By the names of the kind; all of them. */
+    parameters?: Record<string, TrainParameter>;
+    /** Of a measured one, in place of parameters. */
+    measurement?: Measurement;
+}
+
+export interface FollowRequest {
+    /** In the convention of the request; may be partly polarized. */
+    source: [number, number, number, number];
+    train: TrainElement[];
+    /** Of source, parameters and result; a measured element has its own. */
+    convention?: Convention;
+}
+
+export interface Followed {
+    /** After every element, disabled ones too. */
+    states: (StateDescription & {
+        /** S0 over that of the source. */
+        power: number;
+    })[];
+    /** Of the whole. */
+    mueller: Matrix16;
+    /** Where light is lost, where it depolarizes, where the order of neighbours matters. */
+    notes: Note[];
+}
+
+export interface RemoveRequest {
+    measured: Measurement;
+    /** What light meets before the sample: a measurement, or a train in the convention of `measured`. Default: nothing. */
+    pre?: Measurement | TrainElement[] | null;
+    /** What it meets after the sample. */
+    post?: Measurement | TrainElement[] | null;
+    /** Take diag(1, 1, -1, -1) out too. */
+    reflection?: boolean;
+    /** The matrix of a component that does not depolarize, such as that of air: how much of it is in the sample? */
+    direct?: Matrix16 | null;
+}
+
+export interface RemovedOptics {
+    /** The sample alone, divided by its M00 where that of the measurement is exact. */
+    mueller: Matrix16;
+    /** 16 × 16, row by row; null without any noise. */
+    covariance: number[] | null;
+    normalised: boolean;
+    /** The worst growth of a relative error. */
+    conditionNumber: number;
+    /** σ over M00 of each element of the sample, over that of the measurement; for equal errors where none are stated. */
+    sigmaGrowth: Matrix16 | null;
+    /** Samples within the physical that explain the measurement best with the optics as they are. */
+    samples: {
+        model: "realizable" | "pureIsotropic";
+        mueller: Matrix16;
+        chiSquare: number | null;
+        degreesOfFreedom: number | null;
+        pValue: number | null;
+        /** Isotropic depolarization of a pure sample. */
+        alpha: number | null;
+        alphaSe: number | null;
+        /** From the matrix above, over its M00. */
+        distance: number;
+    }[];
+    /** The largest share of M00 that the direct component can have. */
+    direct: { weight: number; se: number | null; rank: number; reason: string | null } | null;
+    reason: string | null;
+}
+
+export interface FitTrainRequest {
+    target: Measurement;
+    /** In the convention of the target. */
+    train: TrainElement[];
+    /** Of the starting points. Default 1. */
+    seed?: number;
+    /** How many searches, the first from the values of the train. */
+    starts?: number;
+}
+
+/** The free parameters of a train, fitted to a measured matrix. */
+export interface TrainFit {
+    parameters: {
+        /** Position of the element. */
+        element: number;
+        name: string;
+        /** Parameter and element in words. */
+        title: string;
+        value: number;
+        /** Null, with a reason, where it is not determined. */
+        se: number | null;
+        /** Of the 95 % interval. */
+        low: number | null;
+        high: number | null;
+        unit: "1" | "deg";
+        atBound: boolean;
+        reason: string | null;
+    }[];
+    /** Null in rows and columns of parameters without standard error. */
+    covariance: (number | null)[][];
+    correlation: (number | null)[][];
+    /** What can't be told apart. */
+    nullDirections: {
+        /** Positions in `parameters`. */
+        parameters: number[];
+        /** How these can change together. */
+        directions: number[][];
+        /** The matrix changes, but by less than its noise. */
+        withinNoise: boolean;
+        sentence: string;
+    }[];
+    /** Other solutions that are as good, values in the order of `parameters`. */
+    equivalents: { values: number[]; chiSquareDifference: number; sentence: string }[];
+    chiSquare: number | null;
+    degreesOfFreedom: number;
+    pValue: number | null;
+    aic: number | null;
+    bic: number | null;
+    mueller: Matrix16;
+    /** Measured minus fitted in σ, row by row. */
+    residuals: Matrix16 | null;
+    stop: "gradient" | "step" | "decrease" | "steps";
+    evaluations: number;
+}
+
+export interface SymmetryTest {
+    symmetry: "reciprocalSameFrame" | "reciprocalMirrored" | "noCircularPart" | "blockDiagonal";
+    /** The largest violation, over M00. */
+    deviation: number | null;
+    chiSquare: number | null;
+    degreesOfFreedom: number;
+    pValue: number | null;
+    reason: string | null;
+}
+
 export interface FormatRequest {
     value: number;
     se?: number | null;
@@ -441,6 +613,13 @@ export interface Configuration {
     examine?: { draws: number; seed: number };
     /** The model that was chosen by hand, and where its depolarization stands. */
     fit?: { model?: ModelName; side?: DepolarizationSide };
+    /** A train, its source, and what stands before and behind the sample; a train that is written may lack values. */
+    train?: TrainElement[];
+    source?: [number, number, number, number];
+    pre?: Measurement | TrainElement[];
+    post?: Measurement | TrainElement[];
+    /** How known optics are taken away. */
+    removal?: { reflection?: boolean; direct?: Matrix16 };
     view?: Record<string, number>;
     [block: string]: unknown;
 }
@@ -492,6 +671,8 @@ export interface SphereRequest {
     elevationDeg: number;
     /** The label of the state whose marks are ringed. */
     chosen?: string | null;
+    /** States that light goes through, S1, S2 and S3 over S0: drawn in place of what the matrix does. */
+    path?: [number, number, number][];
     frame: Frame;
 }
 

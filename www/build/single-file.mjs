@@ -83,6 +83,7 @@ function pack(folder, main, worker) {
     `<script type="text/plain" id="halfshade-wasm">${wasm}</script>`,
     `<script type="text/plain" id="halfshade-worker">\n${worker}</script>`,
     `<script type="application/json" id="halfshade-examples">${readExamples(folder)}</script>`,
+    `<script type="application/json" id="halfshade-train">${safeData(readFileSync(join(folder, "demo-data", "train", "kelp-film-behind-a-window.json"), "utf8"))}</script>`,
     `<script type="module">${script}</script>`,
   ].join("\n");
 
@@ -106,7 +107,15 @@ function readExamples(folder) {
   /** @type {{ file: string }[]} */
   const index = JSON.parse(readFileSync(join(place, "index.json"), "utf8"));
   const examples = index.map((entry) => ({ ...entry, text: readFileSync(join(place, entry.file), "utf8") }));
-  return JSON.stringify(examples).replaceAll("<", "\\u003c");
+  return safeData(JSON.stringify(examples));
+}
+
+/**
+ * @param {string} json
+ * @returns {string} JSON that is safe inside a script element
+ */
+function safeData(json) {
+  return json.replaceAll("<", "\\u003c");
 }
 
 /**

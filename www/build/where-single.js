@@ -59,6 +59,14 @@ export async function loadExamples() {
 }
 
 /**
+ * The configuration of the invented train.
+ * @returns {Promise<import("../js/link.js").Configuration>}
+ */
+export async function loadTrainExample() {
+  return JSON.parse(dataOf("halfshade-train"));
+}
+
+/**
  * The only address that the page's Trusted Types policy lets through.
  * @param {string} address
  * @returns {string} at run time a TrustedScriptURL, where the browser knows them

@@ -106,6 +106,23 @@ export const SECTIONS = [
     ],
   },
   {
+    id: "train",
+    title: "Optical train",
+    pieces: [
+      "A train is a list of elements in the order in which light meets them. Each parameter is fixed, free (with bounds, if you like) or tied to another one as factor × that + offset. Its value is also where the search of a fit starts. Angles are in degrees and, like Stokes numbers and phases, in the convention chosen beside the measured matrix. A measured element has sixteen numbers, its σ and a convention of its own.",
+      {
+        rows: [
+          ["Follow the light", "the state after every element, for a source that may be partly polarized; where light is lost, where it depolarizes, where the order of neighbours matters. An element out of the beam leaves the light as it is."],
+          ["Fit", "the free parameters, so that the whole train gives the measured matrix. Several starts are searched, always the same ones. χ² and p say whether the train is enough of an explanation; combinations of parameters that no such matrix can tell apart are named, and so are other solutions that are as good."],
+          ["Take optics away", "the sample alone, from what is known of the elements before and behind it, with the noise of all of them. The condition number says how much errors can grow. “Use as the measured matrix” takes it over with its covariance, for every other task; one undo brings everything back."],
+        ],
+      },
+      { formula: "M = M_n … M_2 M_1;  sample = M_behind⁻¹ M M_before⁻¹" },
+      "A polarizer blocks a state for good: it can stand in a train, but it cannot be taken away. What differs between two places in the beam, or changes while it is measured, is in no train.",
+      "The button beside “The train as JSON” copies list, source and choices; such a text, or a bare list of elements, pasted while this task is shown replaces the train.",
+    ],
+  },
+  {
     id: "links",
     title: "Links, files and paper",
     pieces: [

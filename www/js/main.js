@@ -20,7 +20,7 @@ import { ProvenancePanel } from "./provenance.js";
 import { ReadingPanel } from "./reading.js";
 import { Store, noMeasurement } from "./state.js";
 import { TASKS, TASK_BLOCKS, taskNamed } from "./tasks.js";
-import { isSingleFile, loadExamples, publicAddress } from "./where.js";
+import { isSingleFile, loadExamples, loadTrainExample, publicAddress } from "./where.js";
 import { detectionText, verdictOf } from "./words.js";
 
 /**
@@ -47,6 +47,8 @@ let answer = null;
 let lastReading = { text: "", options: "", outcome: { parsed: null, error: null } };
 /** @type {Example[]} */
 let examples = [];
+/** A train with its measured matrix. @type {import("./link.js").Configuration | null} */
+let trainExample = null;
 let said = "";
 /** The last words that were no verdict. */
 let message = { text: "", at: -Infinity };
@@ -96,6 +98,7 @@ const tasks = TASKS.map((entry) => {
     useNearest,
     use: useMatrix,
     change: changeBlocks,
+    loadTrainExample: takeTrainExample,
     view: (view) => store.setView(view),
     tell: (message) => tell(message),
     failed: fail,
@@ -150,8 +153,9 @@ async function start() {
   render();
   const slow = setTimeout(() => tell("Loading the engine…"), 300);
   try {
-    const [, loaded] = await Promise.all([startEngine(), loadExamples()]);
+    const [, loaded, train] = await Promise.all([startEngine(), loadExamples(), loadTrainExample()]);
     examples = loaded;
+    trainExample = train;
   } finally {
     clearTimeout(slow);
   }
@@ -353,16 +357,27 @@ function takeExample(example) {
   take(example.text, `the example “${example.title}”`, { fresh: true, example });
 }
 
+/** The train of the invented film, with what was measured of all its elements together. */
+function takeTrainExample() {
+  if (!trainExample) return;
+  const { label, measurement, ...rest } = trainExample;
+  const configuration = { ...rest, label: String(label).replace(/^invented: /, ""), measurement: { ...measurement, example: true } };
+  const { work } = fromConfiguration(configuration, store.view, (text, options) => quick.parseMatrices(text, options));
+  hideProblem();
+  store.commit("the example of a train", work, { safe: true });
+}
+
 /**
  * @param {string} name
  * @param {Partial<Measurement>} part
  * @param {{ merge?: string }} [how]
+ * @param {{ [block: string]: unknown }} [blocks]
  */
-function change(name, part, how = {}) {
+function change(name, part, how = {}, blocks = {}) {
   const measurement = { ...store.work.measurement, ...part };
   // Repeats speak of their own mean: with other numbers, their scatter is no statement.
   if (measurement.noise.kind === "replicates" && measurement.many?.use !== "repeats") measurement.noise = noMeasurement().noise;
-  store.commit(name, { ...store.work, measurement }, how);
+  store.commit(name, { ...store.work, measurement, blocks: blocksWith(blocks) }, how);
 }
 
 /**
@@ -371,8 +386,12 @@ function change(name, part, how = {}) {
  * @param {string} [merge]
  */
 function changeBlocks(name, changed, merge) {
-  const blocks = Object.fromEntries(Object.entries({ ...store.work.blocks, ...changed }).filter(([, value]) => value !== undefined));
-  store.commit(name, { ...store.work, blocks }, merge ? { merge } : {});
+  store.commit(name, { ...store.work, blocks: blocksWith(changed) }, merge ? { merge } : {});
+}
+
+/** @param {{ [block: string]: unknown }} changed */
+function blocksWith(changed) {
+  return Object.fromEntries(Object.entries({ ...store.work.blocks, ...changed }).filter(([, value]) => value !== undefined));
 }
 
 function shownTask() {
@@ -452,15 +471,17 @@ function useNearest() {
  * Take a computed matrix over as the measured one.
  * @param {number[]} mueller row by row
  * @param {string} name
+ * @param {Partial<Measurement>} [part] what else is known of it
+ * @param {{ [block: string]: unknown }} [blocks] what changes in the same step
  */
-function useMatrix(mueller, name) {
+function useMatrix(mueller, name, part = {}, blocks = {}) {
   const { order } = store.work.measurement.convention;
   /** @type {string[]} */
   const cells = Array(16).fill("");
   mueller.forEach((value, k) => {
     cells[place(order, Math.floor(k / 4), k % 4)] = fullText(value);
   });
-  change(name, { cells, text: textOf(cells), options: {}, pick: 0, decimals: null, many: null });
+  change(name, { cells, text: textOf(cells), options: {}, pick: 0, decimals: null, many: null, ...part }, {}, blocks);
   byId("task").focus();
 }
 

@@ -2,13 +2,17 @@
 import { ModelPanel } from "./panels/model.js";
 import { PropertiesPanel } from "./panels/properties.js";
 import { RealizabilityPanel } from "./panels/realizability.js";
+import { TrainPanel } from "./panels/train.js";
+import { TRAIN_BLOCKS } from "./train.js";
 
 /**
  * @typedef {object} TaskActions what a panel may do to the rest of the page
  * @property {() => void} useNearest take the nearest realizable matrix over
- * @property {(mueller: number[], name: string) => void} use take a computed matrix over as the measured one, as one step
+ * @property {(mueller: number[], name: string, part?: Partial<import("./types.js").Measurement>, blocks?: { [block: string]: unknown }) => void} use
+ *   take a computed matrix over as the measured one, as one step, with what else is known of it and with other blocks
  * @property {(name: string, blocks: { [block: string]: unknown }, merge?: string) => void} change take new blocks over as
  *   one step; `undefined` removes one
+ * @property {() => void} loadTrainExample
  * @property {(view: Partial<import("./types.js").View>) => void} view
  * @property {(message: string) => void} tell
  * @property {(error: unknown) => void} failed
@@ -33,6 +37,7 @@ export const TASKS = [
   { name: "realizability", label: "Realizability", needsMatrix: true, blocks: [], panel: (root, actions) => new RealizabilityPanel(root, actions) },
   { name: "properties", label: "Properties", needsMatrix: true, blocks: [], panel: (root, actions) => new PropertiesPanel(root, actions) },
   { name: "model", label: "Model selection", needsMatrix: true, blocks: ["fit"], panel: (root, actions) => new ModelPanel(root, actions) },
+  { name: "train", label: "Optical train", needsMatrix: false, blocks: TRAIN_BLOCKS, panel: (root, actions) => new TrainPanel(root, actions) },
 ];
 
 /**

@@ -57,6 +57,14 @@ export async function loadExamples() {
   return Promise.all(index.map(read));
 }
 
+/**
+ * Loads the configuration of the invented train.
+ * @returns {Promise<import("./link.js").Configuration>}
+ */
+export async function loadTrainExample() {
+  return (await get(new URL("train/kelp-film-behind-a-window.json", EXAMPLES))).json();
+}
+
 /** @param {URL} address */
 async function get(address) {
   const response = await fetch(address);
