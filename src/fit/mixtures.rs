@@ -15,7 +15,7 @@ use crate::tolerance;
 const MANY: u32 = 999;
 
 /// Simulated measurements where each takes a fit of its own.
-const FEW: u32 = 199;
+const FEW: u32 = 99;
 
 /// What a fit left.
 pub(super) struct Outcome<'a> {
